@@ -1,0 +1,212 @@
+#pragma once
+
+#include <array>
+#include <filesystem>
+#include <optional>
+#include <string>
+#include <variant>
+#include <vector>
+
+#include "sunbudget/base/time.hpp"
+#include "sunbudget/plan/place.hpp"
+
+namespace sunbudget {
+
+/// A file as the plan names it, and where that is: relative names are relative to the plan's
+/// folder.
+struct PlanPath {
+    std::string given;
+    std::filesystem::path file;
+    friend bool operator==(const PlanPath& a, const PlanPath& b) { return a.file == b.file; }
+};
+
+/// One band of a raster file: PATH, PATH:N or PATH:NAME.
+struct PlanRaster {
+    PlanPath path;
+    std::string band;  ///< a number from 1 or a name; empty: the file's only or first band
+    friend bool operator==(const PlanRaster&, const PlanRaster&) = default;
+};
+
+/// A value for each month, January first; one number in the plan fills all twelve.
+using Monthly = std::array<double, 12>;
+
+/// Hours of the day in the plan's zone, 0 <= begin < end <= 24.
+struct HourWindow {
+    double begin_h = 0;
+    double end_h = 24;
+    friend bool operator==(const HourWindow&, const HourWindow&) = default;
+};
+
+/// Both days inclusive.
+struct NamedPeriod {
+    Given<std::string> name;
+    Given<CivilDate> from;
+    Given<CivilDate> to;
+    friend bool operator==(const NamedPeriod&, const NamedPeriod&) = default;
+};
+
+enum class Totals { whole, day, month, season, year };
+enum class EnergyUnit { w_m2, mj_m2, kwh_m2 };
+enum class FileFormat { cog, geotiff };
+
+enum class LikeInput { surface, elevation };
+
+struct PlanGrid {
+    Maybe<std::variant<LikeInput, PlanPath>> like;
+    Maybe<std::string> crs;
+    Maybe<std::array<double, 4>> bounds;  ///< west, south, east, north in the CRS's unit
+    Maybe<double> cell;                   ///< in the CRS's unit
+    friend bool operator==(const PlanGrid&, const PlanGrid&) = default;
+};
+
+/// The name of a table that ships with the program, or a file of the user's.
+using TableChoice = std::variant<std::string, PlanPath>;
+
+struct PlanCover {
+    Place place;
+    Given<PlanRaster> raster;
+    Given<TableChoice> classes;
+    /// The class that codes without a row get; `default_class: none` is nullopt inside.
+    Maybe<std::optional<int>> default_class;
+    friend bool operator==(const PlanCover& a, const PlanCover& b) {
+        return a.raster == b.raster && a.classes == b.classes && a.default_class == b.default_class;
+    }
+};
+
+/// Exactly one of `raster` and `value`; scale and offset belong to the raster.
+struct PlanAlbedo {
+    Place place;
+    Maybe<PlanRaster> raster;
+    Maybe<double> scale;
+    Maybe<double> offset;
+    Maybe<double> value;
+    friend bool operator==(const PlanAlbedo& a, const PlanAlbedo& b) {
+        return a.raster == b.raster && a.scale == b.scale && a.offset == b.offset &&
+               a.value == b.value;
+    }
+};
+
+/// At most one of the two.
+struct PlanSurface {
+    std::optional<PlanCover> cover;
+    std::optional<PlanAlbedo> albedo;
+    friend bool operator==(const PlanSurface&, const PlanSurface&) = default;
+};
+
+struct PlanHeight {
+    double height_m = 0;
+    friend bool operator==(const PlanHeight&, const PlanHeight&) = default;
+};
+
+struct PlanTerrain {
+    Maybe<std::variant<PlanRaster, PlanHeight>> elevation;
+    friend bool operator==(const PlanTerrain&, const PlanTerrain&) = default;
+};
+
+struct PlanSky {
+    Maybe<std::string> model;
+    Maybe<Monthly> turbidity;
+    friend bool operator==(const PlanSky&, const PlanSky&) = default;
+};
+
+/// Has an offset of its own, or the plan has a zone: never both, never neither.
+struct PlanInstant {
+    WrittenInstant written;
+    friend bool operator==(const PlanInstant& a, const PlanInstant& b) {
+        return a.written.local.date == b.written.local.date &&
+               a.written.local.seconds_of_day == b.written.local.seconds_of_day &&
+               a.written.offset_s == b.written.offset_s;
+    }
+};
+
+struct PlanZone {
+    Zone zone;
+    friend bool operator==(const PlanZone& a, const PlanZone& b) {
+        return a.zone.name() == b.zone.name();
+    }
+};
+
+/// Nothing, or `at`, or `from` and `to` (inclusive) with what belongs to a period.
+struct PlanTime {
+    Maybe<PlanInstant> at;
+    Maybe<CivilDate> from;
+    Maybe<CivilDate> to;
+    Maybe<int> step_s;
+    Maybe<HourWindow> hours;
+    Maybe<PlanZone> zone;
+    Maybe<std::variant<Totals, std::vector<NamedPeriod>>> totals;
+    friend bool operator==(const PlanTime&, const PlanTime&) = default;
+};
+
+struct PlanOutputs {
+    Maybe<PlanPath> directory;
+    std::vector<Given<std::string>> layers;  ///< names of `plan_layers()`, each once, at least one
+    Maybe<EnergyUnit> unit;
+    Maybe<FileFormat> format;
+    friend bool operator==(const PlanOutputs&, const PlanOutputs&) = default;
+};
+
+struct PlanEngine {
+    Maybe<int> tile;
+    friend bool operator==(const PlanEngine&, const PlanEngine&) = default;
+};
+
+/// A plan as written: a key that is absent is absent here. `with_defaults` fills in the defaults.
+struct Plan {
+    std::string file;  ///< as named by the user; empty for a plan made from flags
+    Maybe<std::string> title;
+    PlanGrid grid;
+    PlanSurface surface;
+    PlanTerrain terrain;
+    PlanSky sky;
+    PlanTime time;
+    PlanOutputs outputs;
+    PlanEngine engine;
+
+    /// Same values; where they stand does not matter.
+    friend bool operator==(const Plan& a, const Plan& b) {
+        return a.title == b.title && a.grid == b.grid && a.surface == b.surface &&
+               a.terrain == b.terrain && a.sky == b.sky && a.time == b.time &&
+               a.outputs == b.outputs && a.engine == b.engine;
+    }
+};
+
+/// `key.path=value` as given to --set: lists and quoted texts in YAML's flow style, anything else
+/// taken as it stands.
+using Override = std::string;
+
+struct PlanText {
+    std::string file;  ///< the name in messages; its folder is what relative paths start from
+    std::string text;
+    std::vector<Override> overrides;
+};
+
+/// Reads and checks a plan, every problem at once.
+///
+/// errors  Error(usage) with one problem per mistake, sorted by line, `where` = "FILE:LINE:
+/// key.path"
+[[nodiscard]] Plan parse_plan(const PlanText& plan);
+/// The same from a file. Throws Error(input) when it cannot be read.
+[[nodiscard]] Plan read_plan(const std::filesystem::path& file,
+                             const std::vector<Override>& overrides = {});
+
+/// The plan with every default filled in that applies to it; such values say `place.is_default()`.
+/// Left empty: what follows from the inputs (grid, scale and offset of a raster).
+[[nodiscard]] Plan with_defaults(Plan plan);
+
+/// The plan as YAML, keys in the order of the manual; reads back as an equal plan from any folder
+/// the paths are still right in. What is a default is not written.
+[[nodiscard]] std::string plan_text(const Plan& plan);
+
+/// SHA-256 of everything that shapes the rasters' content and metadata, defaults included; so not
+/// of the output directory, comments, the order of keys or the way numbers are written. Files count
+/// by the name the plan gives them: their content has digests of its own.
+[[nodiscard]] std::string plan_digest(const Plan& plan);
+
+/// JSON Schema (draft 2020-12) of the plan file.
+[[nodiscard]] std::string plan_schema_json();
+
+/// Every key with meaning, unit, choices and default, as a commented plan.
+[[nodiscard]] std::string plan_help();
+
+}  // namespace sunbudget
