@@ -9,6 +9,7 @@
 
 #include "sunbudget/base/time.hpp"
 #include "sunbudget/plan/place.hpp"
+#include "sunbudget/tables/layers.hpp"
 
 namespace sunbudget {
 
@@ -46,7 +47,6 @@ struct NamedPeriod {
 };
 
 enum class Totals { whole, day, month, season, year };
-enum class EnergyUnit { w_m2, mj_m2, kwh_m2 };
 enum class FileFormat { cog, geotiff };
 
 enum class LikeInput { surface, elevation };
@@ -140,8 +140,8 @@ struct PlanTime {
 
 struct PlanOutputs {
     Maybe<PlanPath> directory;
-    std::vector<Given<std::string>> layers;  ///< names of `plan_layers()`, each once, at least one
-    Maybe<EnergyUnit> unit;
+    std::vector<Given<LayerId>> layers;  ///< each once, at least one
+    Maybe<OutputUnit> unit;
     Maybe<FileFormat> format;
     friend bool operator==(const PlanOutputs&, const PlanOutputs&) = default;
 };
