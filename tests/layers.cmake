@@ -1,3 +1,4 @@
+cmake_minimum_required(VERSION 3.25)
 # Fails when a file includes a layer it may not use, or a library that belongs to another layer.
 # What each folder may use; every folder may use itself.
 set(may_base)

@@ -5,7 +5,7 @@ import csv
 import numpy as np
 from osgeo import gdal, ogr, osr
 
-from .classes import CLASSES, WORLDCOVER_COLOURS
+from .classes import CLASSES
 
 EPSG = 32633
 WEST_M, SOUTH_M = 448000.0, 5303000.0  # an arbitrary corner: no real place is meant
