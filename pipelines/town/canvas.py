@@ -73,7 +73,9 @@ class Canvas:
         return bool(mask.any()) and bool(room[win][mask].all())
 
     def paint(self, quad, code, only=None):
+        """Gives the ground there a class; roofs that stand on it stay."""
         win, mask = self.inside(quad)
+        mask &= ~np.isin(self.detail[win], ROOFS)
         if only is not None:
             mask &= only[win]
         self.detail[win][mask] = code
