@@ -1,0 +1,255 @@
+#include "sunbudget/raster/pyramid.hpp"
+
+#include <algorithm>
+#include <cassert>
+#include <cmath>
+#include <limits>
+#include <map>
+#include <mutex>
+#include <type_traits>
+#include <variant>
+
+#include "sunbudget/base/simd.hpp"
+#include "sunbudget/raster/tile_codec.hpp"
+
+namespace sunbudget {
+
+namespace {
+inline double nearest_multiple(double value, double quantum) {
+    return std::nearbyint(value / quantum) * quantum + 0.0;  // + 0.0 turns -0 into 0
+}
+
+/// NaN where no pixel is valid.
+inline double mean_of_valid(float a, float b, float c, float d) {
+    double sum = 0;
+    double valid = 0;
+    for (const float value : {a, b, c, d}) {
+        sum += value == value ? static_cast<double>(value) : 0.0;
+        valid += value == value ? 1.0 : 0.0;
+    }
+    return sum / valid;
+}
+
+SUNBUDGET_CLONES void fold_rows(const float* upper, const float* lower, std::size_t count,
+                                float* out) {
+    for (std::size_t i = 0; i < count; ++i)
+        out[i] = static_cast<float>(
+            mean_of_valid(upper[2 * i], upper[2 * i + 1], lower[2 * i], lower[2 * i + 1]));
+}
+
+SUNBUDGET_CLONES void fold_rows_rounded(const float* upper, const float* lower, std::size_t count,
+                                        double quantum, float* out) {
+    for (std::size_t i = 0; i < count; ++i)
+        out[i] = static_cast<float>(nearest_multiple(
+            mean_of_valid(upper[2 * i], upper[2 * i + 1], lower[2 * i], lower[2 * i + 1]),
+            quantum));
+}
+
+SUNBUDGET_CLONES void round_values(float* row, std::size_t count, double quantum) {
+    for (std::size_t i = 0; i < count; ++i)
+        row[i] = static_cast<float>(nearest_multiple(static_cast<double>(row[i]), quantum));
+}
+
+/// Folds a whole tile into one quarter of its parent.
+void fold(const Plane<float>& child, int left, int top, float quantum, Plane<float>& parent) {
+    const auto half = static_cast<std::size_t>(child.width() / 2);
+    for (int r = 0; r < child.height() / 2; ++r) {
+        const auto upper = child.row(2 * r), lower = child.row(2 * r + 1);
+        float* out = parent.row(top + r).data() + left;
+        if (quantum > 0)
+            fold_rows_rounded(upper.data(), lower.data(), half, static_cast<double>(quantum), out);
+        else
+            fold_rows(upper.data(), lower.data(), half, out);
+    }
+}
+
+void fold(const Plane<std::uint16_t>& child, int left, int top, float,
+          Plane<std::uint16_t>& parent) {
+    for (int r = 0; r < child.height() / 2; ++r) {
+        const auto in = child.row(2 * r);
+        const auto out = parent.row(top + r).subspan(static_cast<std::size_t>(left));
+        for (std::size_t i = 0; i < in.size() / 2; ++i) out[i] = in[2 * i];
+    }
+}
+
+template <typename T>
+constexpr T nothing = std::is_same_v<T, float> ? std::numeric_limits<T>::quiet_NaN() : T{};
+
+TileKey parent_of(const TileKey& key) {
+    return {key.level + 1, key.band, key.column / 2, key.row / 2};
+}
+
+/// How many tiles fold into this one: fewer than four at the raster's right and lower edges.
+int children_of(const Layout& layout, const TileKey& parent) {
+    const auto& below = layout.levels[static_cast<std::size_t>(parent.level - 1)];
+    return std::min(2, below.columns - 2 * parent.column) *
+           std::min(2, below.rows - 2 * parent.row);
+}
+
+/// The pyramid of one sample type.
+template <typename T>
+class Folder {
+  public:
+    Folder(const LayerFile& layer, Spool& spool)
+        : layout_(spool.layout()), quantum_(layer.quantum), spool_(spool) {}
+
+    void put(int band, int column, int row, const Plane<T>& pixels,
+             std::span<const BlockStatistics> blocks);
+    void restore();
+    [[nodiscard]] std::size_t peak_bytes() const;
+
+  private:
+    struct Parent {
+        Plane<T> pixels;
+        int waiting = 0;
+    };
+    [[nodiscard]] Plane<T> squared(const TileKey& key, const Plane<T>& pixels) const;
+    [[nodiscard]] bool inner(const TileKey& key) const;
+    void climb(TileKey key, const Plane<T>& pixels);
+    [[nodiscard]] Plane<T>& parent_pixels(const TileKey& parent);
+    [[nodiscard]] Plane<T> taken_if_whole(const TileKey& parent);
+
+    const Layout layout_;
+    const float quantum_;
+    Spool& spool_;
+    mutable std::mutex lock_;  // of what follows; the pixels of a parent are written without it
+    std::map<std::size_t, Parent> parents_;
+    std::size_t most_parents_ = 0;
+};
+
+/// Is the whole tile inside the raster?
+template <typename T>
+bool Folder<T>::inner(const TileKey& key) const {
+    const auto& level = layout_.levels[static_cast<std::size_t>(key.level)];
+    return (key.column + 1) * static_cast<long>(layout_.tile) <= level.width &&
+           (key.row + 1) * static_cast<long>(layout_.tile) <= level.height;
+}
+
+/// A tile at the edge, with nothing beyond the edge.
+template <typename T>
+Plane<T> Folder<T>::squared(const TileKey& key, const Plane<T>& pixels) const {
+    const int width = std::min(layout_.tile, layout_.width - key.column * layout_.tile);
+    const int height = std::min(layout_.tile, layout_.height - key.row * layout_.tile);
+    assert(pixels.width() >= width && pixels.height() >= height);
+    Plane<T> square(layout_.tile, layout_.tile, nothing<T>);
+    for (int r = 0; r < height; ++r)
+        std::copy_n(pixels.row(r).begin(), width, square.row(r).begin());
+    return square;
+}
+
+template <typename T>
+void Folder<T>::put(int band, int column, int row, const Plane<T>& pixels,
+                    std::span<const BlockStatistics> blocks) {
+    const TileKey key{0, band, column, row};
+    assert(layout_.has(key));
+    if (!inner(key)) {
+        const auto square = squared(key, pixels);
+        spool_.append(key, encode_tile(square), blocks);
+        climb(key, square);
+    } else {
+        assert(pixels.width() == layout_.tile && pixels.height() == layout_.tile);
+        spool_.append(key, encode_tile(pixels), blocks);
+        climb(key, pixels);
+    }
+}
+
+/// Folds a tile into its parent, and the parent into its own if that makes it whole, and so on.
+template <typename T>
+void Folder<T>::climb(TileKey key, const Plane<T>& pixels) {
+    const Plane<T>* child = &pixels;
+    Plane<T> whole;
+    while (key.level + 1 < static_cast<int>(layout_.levels.size())) {
+        const auto parent = parent_of(key);
+        if (spool_.has(parent)) return;  // from an earlier run, made of the same pixels
+        const int half = layout_.tile / 2;
+        fold(*child, key.column % 2 * half, key.row % 2 * half, quantum_, parent_pixels(parent));
+        whole = taken_if_whole(parent);
+        if (whole.empty()) return;
+        spool_.append(parent, encode_tile(whole));
+        child = &whole;
+        key = parent;
+    }
+}
+
+template <typename T>
+Plane<T>& Folder<T>::parent_pixels(const TileKey& parent) {
+    const std::lock_guard guard(lock_);
+    auto& found = parents_[layout_.index(parent)];
+    if (found.waiting == 0) {
+        found.waiting = children_of(layout_, parent);
+        found.pixels = Plane<T>(layout_.tile, layout_.tile, nothing<T>);
+        most_parents_ = std::max(most_parents_, parents_.size());
+    }
+    return found.pixels;
+}
+
+/// Counts one more child; gives the pixels when it was the last.
+template <typename T>
+Plane<T> Folder<T>::taken_if_whole(const TileKey& parent) {
+    const std::lock_guard guard(lock_);
+    const auto found = parents_.find(layout_.index(parent));
+    if (--found->second.waiting > 0) return {};
+    auto pixels = std::move(found->second.pixels);
+    parents_.erase(found);
+    return pixels;
+}
+
+/// Takes in the tiles an earlier run has left in the spool without the overview tile above them.
+/// The list is made before the first is taken: a parent that becomes whole here climbs on by
+/// itself.
+template <typename T>
+void Folder<T>::restore() {
+    std::vector<TileKey> orphans;
+    for (int level = 0; level + 1 < static_cast<int>(layout_.levels.size()); ++level) {
+        const auto& size = layout_.levels[static_cast<std::size_t>(level)];
+        for (int band = 0; band < layout_.bands; ++band)
+            for (int row = 0; row < size.rows; ++row)
+                for (int column = 0; column < size.columns; ++column) {
+                    const TileKey key{level, band, column, row};
+                    if (spool_.has(key) && !spool_.has(parent_of(key))) orphans.push_back(key);
+                }
+    }
+    for (const auto& key : orphans) climb(key, decode_tile<T>(spool_.read(key), layout_.tile));
+}
+
+template <typename T>
+std::size_t Folder<T>::peak_bytes() const {
+    const std::lock_guard guard(lock_);
+    return most_parents_ * layout_.tile_bytes();
+}
+}  // namespace
+
+void round_row(std::span<float> row, float quantum) noexcept {
+    if (quantum > 0) round_values(row.data(), row.size(), static_cast<double>(quantum));
+}
+
+struct Pyramid::State {
+    std::variant<std::monostate, Folder<float>, Folder<std::uint16_t>> folder;
+};
+
+Pyramid::Pyramid(const LayerFile& layer, Spool& spool) : state_(std::make_unique<State>()) {
+    assert(layout_of(layer) == spool.layout());
+    if (layer.sample == Sample::float32)
+        state_->folder.emplace<Folder<float>>(layer, spool).restore();
+    else
+        state_->folder.emplace<Folder<std::uint16_t>>(layer, spool).restore();
+}
+Pyramid::~Pyramid() = default;
+
+void Pyramid::put(int band, int tile_column, int tile_row, const Plane<float>& pixels,
+                  std::span<const BlockStatistics> blocks) {
+    std::get<Folder<float>>(state_->folder).put(band, tile_column, tile_row, pixels, blocks);
+}
+void Pyramid::put(int band, int tile_column, int tile_row, const Plane<std::uint16_t>& pixels,
+                  std::span<const BlockStatistics> blocks) {
+    std::get<Folder<std::uint16_t>>(state_->folder)
+        .put(band, tile_column, tile_row, pixels, blocks);
+}
+
+std::size_t Pyramid::peak_bytes() const {
+    if (const auto* floats = std::get_if<Folder<float>>(&state_->folder))
+        return floats->peak_bytes();
+    return std::get<Folder<std::uint16_t>>(state_->folder).peak_bytes();
+}
+
+}  // namespace sunbudget
