@@ -1,0 +1,163 @@
+#include "sunbudget/tables/layers.hpp"
+
+#include <array>
+#include <cassert>
+#include <cmath>
+#include <utility>
+
+namespace sunbudget {
+
+namespace {
+
+struct UnitRow {
+    OutputUnit unit;
+    std::string_view name;
+    double joules;
+};
+constexpr std::array units{
+    UnitRow{OutputUnit::w_m2, "W/m2", 1.0},
+    UnitRow{OutputUnit::mj_m2, "MJ/m2", 1e6},
+    UnitRow{OutputUnit::kwh_m2, "kWh/m2", 3.6e6},
+};
+
+constexpr double albedo_quantum = 1.0 / 8192;  // 2^-13: 0.00012, far below any albedo's uncertainty
+constexpr double flux_quantum_w_m2 = 1.0 / 16;
+
+const std::vector<Layer>& table() {
+    static const std::vector<Layer> rows{
+        {.id = LayerId::albedo,
+         .name = "albedo",
+         .quantity = Quantity::ratio,
+         .sample = SampleType::float32,
+         .text = "share of the sun's light the surface sends back, broadband",
+         .standard_name = "surface_albedo",
+         .standard_name_sum = {},
+         .needs_sun = false,
+         .needs_albedo = true},
+        {.id = LayerId::insolation,
+         .name = "insolation",
+         .quantity = Quantity::radiation,
+         .sample = SampleType::float32,
+         .text = "sunlight that reaches the surface: direct, diffuse and reflected",
+         .standard_name = "surface_downwelling_shortwave_flux_in_air",
+         .standard_name_sum = "integral_wrt_time_of_surface_downwelling_shortwave_flux_in_air",
+         .needs_sun = true,
+         .needs_albedo = false},
+        {.id = LayerId::direct,
+         .name = "direct",
+         .quantity = Quantity::radiation,
+         .sample = SampleType::float32,
+         .text = "sunlight straight from the sun's disc, on the surface",
+         .standard_name = "surface_direct_downwelling_shortwave_flux_in_air",
+         .standard_name_sum =
+             "integral_wrt_time_of_surface_direct_downwelling_shortwave_flux_in_air",
+         .needs_sun = true,
+         .needs_albedo = false},
+        {.id = LayerId::diffuse,
+         .name = "diffuse",
+         .quantity = Quantity::radiation,
+         .sample = SampleType::float32,
+         .text = "sunlight scattered by the sky, on the surface",
+         .standard_name = "surface_diffuse_downwelling_shortwave_flux_in_air",
+         .standard_name_sum = {},
+         .needs_sun = true,
+         .needs_albedo = false},
+        {.id = LayerId::net_shortwave,
+         .name = "net_shortwave",
+         .quantity = Quantity::radiation,
+         .sample = SampleType::float32,
+         .text = "sunlight the surface keeps: insolation less what the albedo sends back",
+         .standard_name = "surface_net_downward_shortwave_flux",
+         .standard_name_sum = "integral_wrt_time_of_surface_net_downward_shortwave_flux",
+         .needs_sun = true,
+         .needs_albedo = true},
+        {.id = LayerId::quality,
+         .name = "quality",
+         .quantity = Quantity::flags,
+         .sample = SampleType::uint16,
+         .text = "where the albedo came from and what was seen on the way; see the table quality",
+         .standard_name = "quality_flag",
+         .standard_name_sum = {},
+         .needs_sun = false,
+         .needs_albedo = false},
+    };
+    return rows;
+}
+
+/// The largest power of two not above a positive number.
+double power_of_two_below(double value) noexcept {
+    int exponent = 0;
+    std::frexp(value, &exponent);  // value = m 2^exponent, 1/2 <= m < 1
+    return std::ldexp(1.0, exponent - 1);
+}
+
+}  // namespace
+
+std::string_view name_of(OutputUnit unit) noexcept {
+    for (const auto& row : units)
+        if (row.unit == unit) return row.name;
+    return {};
+}
+
+std::optional<OutputUnit> output_unit_named(std::string_view name) noexcept {
+    for (const auto& row : units)
+        if (row.name == name) return row.unit;
+    return std::nullopt;
+}
+
+std::vector<std::string> output_unit_names() {
+    std::vector<std::string> names;
+    for (const auto& row : units) names.emplace_back(row.name);
+    return names;
+}
+
+double joules_of(OutputUnit unit) noexcept {
+    for (const auto& row : units)
+        if (row.unit == unit) return row.joules;
+    return 1.0;
+}
+
+std::string_view name_of(SampleType type) noexcept {
+    return type == SampleType::float32 ? "Float32" : "UInt16";
+}
+
+std::span<const Layer> layers() {
+    return table();
+}
+
+const Layer& layer(LayerId id) noexcept {
+    const auto& row = table()[static_cast<std::size_t>(id)];
+    assert(row.id == id);
+    return row;
+}
+
+const Layer* layer_named(std::string_view name) noexcept {
+    for (const auto& row : table())
+        if (row.name == name) return &row;
+    return nullptr;
+}
+
+std::vector<std::string> layer_names() {
+    std::vector<std::string> names;
+    for (const auto& row : table()) names.push_back(row.name);
+    return names;
+}
+
+std::string_view unit_of(const Layer& layer, OutputUnit unit) noexcept {
+    return layer.quantity == Quantity::radiation ? name_of(unit) : "1";
+}
+
+const std::string& standard_name_of(const Layer& layer, OutputUnit unit) noexcept {
+    const bool sum = layer.quantity == Quantity::radiation && unit != OutputUnit::w_m2;
+    return sum ? layer.standard_name_sum : layer.standard_name;
+}
+
+double quantum_of(const Layer& layer, OutputUnit unit, double period_s) noexcept {
+    if (layer.quantity == Quantity::flags) return 1.0;
+    if (layer.quantity == Quantity::ratio) return albedo_quantum;
+    if (unit == OutputUnit::w_m2) return flux_quantum_w_m2;
+    assert(period_s > 0);
+    return power_of_two_below(flux_quantum_w_m2 * period_s / joules_of(unit));
+}
+
+}  // namespace sunbudget

@@ -1,0 +1,102 @@
+#include "sunbudget/tables/methods.hpp"
+
+#include <algorithm>
+
+#include "sunbudget/base/error.hpp"
+#include "sunbudget/base/text.hpp"
+
+namespace sunbudget {
+
+namespace {
+
+/// The first row of a family is its default.
+const std::vector<Method>& table() {
+    static const std::vector<Method> rows{
+        {.family = "sun_position",
+         .name = "erfa",
+         .text = "apparent place of the sun, topocentric, from the standard astronomy routines",
+         .source = "ERFA, the IAU SOFA routines: precession-nutation IAU 2006/2000A, Earth vector, "
+                   "light time, aberration; parallax 8.794 arc seconds over the distance in au",
+         .parameters = {}},
+        {.family = "air_mass",
+         .name = "kasten-young1989",
+         .text = "relative optical air mass, scaled by pressure",
+         .source = "Kasten & Young, Applied Optics 28, 1989, 4735-4738",
+         .parameters = {}},
+        {.family = "clear_sky",
+         .name = "esra2000",
+         .text = "beam and sky light of a cloudless day from one number for the air's turbidity",
+         .source = "Rigollier, Bauer & Wald, Solar Energy 68, 2000, 33-48; Rayleigh optical depth "
+                   "of Kasten, Solar Energy 56, 1996, 239-244",
+         .parameters = {{.name = "turbidity",
+                         .unit = "1",
+                         .default_value = 3.0,
+                         .usual = {2.0, 7.0},
+                         .allowed = {0.0, 9.0, true},
+                         .text = "Linke turbidity for air mass 2; the published fit fails above "
+                                 "9"}}},
+        {.family = "albedo",
+         .name = "class-table",
+         .text = "the typical albedo of the pixel's land-cover class",
+         .source = "the class table's own sources, row by row",
+         .parameters = {}},
+        {.family = "albedo",
+         .name = "given",
+         .text = "the albedo of a raster or one number for the whole grid",
+         .source = "given by the user",
+         .parameters = {{.name = "value",
+                         .unit = "1",
+                         .default_value = {},
+                         .usual = {0.02, 0.95},
+                         .allowed = {0.0, 1.0},
+                         .text = "broadband albedo; outside the usual range no natural or built "
+                                 "surface is found (Oke 1987, Tables 1.1 and 8.2)"}}},
+    };
+    return rows;
+}
+
+}  // namespace
+
+std::string Range::text() const {
+    if (low_open) return "above " + shortest(low) + " and up to " + shortest(high);
+    return shortest(low) + " to " + shortest(high);
+}
+
+Verdict judge(const Parameter& parameter, double value) noexcept {
+    if (!parameter.allowed.holds(value)) return Verdict::refused;
+    return parameter.usual.holds(value) ? Verdict::fine : Verdict::unusual;
+}
+
+const Parameter* Method::parameter(std::string_view wanted) const noexcept {
+    for (const auto& candidate : parameters)
+        if (candidate.name == wanted) return &candidate;
+    return nullptr;
+}
+
+std::span<const Method> methods() {
+    return table();
+}
+
+std::vector<std::string> method_families() {
+    std::vector<std::string> families;
+    for (const auto& row : table())
+        if (std::find(families.begin(), families.end(), row.family) == families.end())
+            families.push_back(row.family);
+    return families;
+}
+
+std::vector<std::string> method_names(std::string_view family) {
+    std::vector<std::string> names;
+    for (const auto& row : table())
+        if (row.family == family) names.push_back(row.name);
+    return names;
+}
+
+const Method& method(std::string_view family, std::string_view name) {
+    for (const auto& row : table())
+        if (row.family == family && row.name == name) return row;
+    throw Error(Cause::usage, "no method \"" + std::string(name) + "\" for " + std::string(family),
+                {}, suggestion(name, method_names(family)));
+}
+
+}  // namespace sunbudget
