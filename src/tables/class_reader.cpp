@@ -62,20 +62,21 @@ class ClassReader {
     /// False when rows cannot be read for want of columns.
     bool read_header() {
         const auto& header = lines_.front();
-        for (std::size_t i = 0; i < header.cells.size(); ++i) add_column(header, i);
-        for (const auto* required : {"code", "name", "albedo"}) {
-            if (!columns_.contains(required))
-                fault(header.number, std::string("the header has no column ") + required,
-                      separator_hint(header));
+        const auto& first = header.cells.front();
+        if (header.cells.size() == 1 && first.find_first_of(";\t") != std::string::npos) {
+            fault(header.number, "cells are separated by semicolons or tabs",
+                  "separate them by commas and write decimals with a point");
+            return false;
         }
-        return columns_.contains("code") && columns_.contains("name") &&
-               columns_.contains("albedo");
-    }
-
-    static std::string separator_hint(const CsvLine& header) {
-        if (header.cells.size() == 1 && header.cells[0].find_first_of(";\t") != std::string::npos)
-            return "cells are separated by commas, not by semicolons or tabs";
-        return "the first line names the columns: code,name,albedo at least";
+        for (std::size_t i = 0; i < header.cells.size(); ++i) add_column(header, i);
+        bool complete = true;
+        for (const auto* required : {"code", "name", "albedo"}) {
+            if (columns_.contains(required)) continue;
+            complete = false;
+            fault(header.number, std::string("the header has no column ") + required,
+                  "the first line names the columns: code,name,albedo at least");
+        }
+        return complete;
     }
 
     void add_column(const CsvLine& header, std::size_t index) {

@@ -18,9 +18,11 @@ namespace sunbudget {
 
 namespace {
 
+enum class Cell { words, number, note };
+
 struct Column {
     std::string name;
-    bool number = false;
+    Cell cell = Cell::words;  ///< a note is long and often repeated: in text it stands below
 };
 
 /// Any table as cells; an empty cell of a number column means "none".
@@ -40,20 +42,20 @@ Listing class_listing(const ClassTable& table) {
     Listing list{table.name(),
                  "albedo and emissivity by class",
                  table.digest(),
-                 {{"code", true},
+                 {{"code", Cell::number},
                   {"name"},
                   {"kind"},
                   {"scale"},
-                  {"albedo", true},
-                  {"albedo_low", true},
-                  {"albedo_high", true},
-                  {"emissivity", true},
-                  {"source"}},
+                  {"albedo", Cell::number},
+                  {"albedo_low", Cell::number},
+                  {"albedo_high", Cell::number},
+                  {"emissivity", Cell::number},
+                  {"source", Cell::note}},
                  {}};
     for (const auto& row : table.rows())
         list.rows.push_back({std::to_string(row.code), row.name, std::string(name_of(row.kind)),
-                             std::string(name_of(row.scale)), number(row.albedo),
-                             number(row.albedo_low), number(row.albedo_high),
+                             row.is_nodata() ? "" : std::string(name_of(row.scale)),
+                             number(row.albedo), number(row.albedo_low), number(row.albedo_high),
                              number(row.emissivity), row.source});
     return list;
 }
@@ -66,11 +68,11 @@ Listing method_listing() {
                   {"method"},
                   {"parameter"},
                   {"unit"},
-                  {"default", true},
+                  {"default", Cell::number},
                   {"usual"},
                   {"allowed"},
                   {"text"},
-                  {"source"}},
+                  {"source", Cell::note}},
                  {}};
     for (const auto& row : methods()) {
         list.rows.push_back({row.family, row.name, {}, {}, {}, {}, {}, row.text, row.source});
@@ -122,13 +124,13 @@ Listing sensor_listing() {
                  {{"sensor"},
                   {"band"},
                   {"product"},
-                  {"from_um", true},
-                  {"to_um", true},
-                  {"scale", true},
-                  {"offset", true},
-                  {"fill", true},
-                  {"text"},
-                  {"source"}},
+                  {"from_um", Cell::number},
+                  {"to_um", Cell::number},
+                  {"scale", Cell::number},
+                  {"offset", Cell::number},
+                  {"fill", Cell::number},
+                  {"text", Cell::note},
+                  {"source", Cell::note}},
                  {}};
     for (const auto& row : sensors())
         for (const auto& band : row.bands)
@@ -147,12 +149,12 @@ Listing test_listing() {
                   {"test"},
                   {"raster"},
                   {"band"},
-                  {"first_bit", true},
-                  {"bits", true},
-                  {"value", true},
-                  {"flag", true},
+                  {"first_bit", Cell::number},
+                  {"bits", Cell::number},
+                  {"value", Cell::number},
+                  {"flag", Cell::number},
                   {"rejects"},
-                  {"source"}},
+                  {"source", Cell::note}},
                  {}};
     for (const auto& row : sensors())
         for (const auto& test : row.tests)
@@ -170,10 +172,10 @@ Listing weight_listing() {
                  {{"sensor"},
                   {"set"},
                   {"band"},
-                  {"weight", true},
-                  {"fit_error", true},
-                  {"text"},
-                  {"source"}},
+                  {"weight", Cell::number},
+                  {"fit_error", Cell::number},
+                  {"text", Cell::note},
+                  {"source", Cell::note}},
                  {}};
     for (const auto& row : weight_sets()) {
         const auto add = [&](const std::string& band, double weight) {
@@ -190,7 +192,7 @@ Listing quality_listing() {
     Listing list{"quality",
                  "meanings of the layer quality: each holds where (pixel & mask) = value",
                  {},
-                 {{"name"}, {"mask", true}, {"value", true}, {"text"}},
+                 {{"name"}, {"mask", Cell::number}, {"value", Cell::number}, {"text"}},
                  {}};
     for (const auto& row : quality_rows())
         list.rows.push_back(
@@ -234,7 +236,7 @@ std::string as_csv(const Listing& list) {
 }
 
 nlohmann::ordered_json json_of(const Column& column, const std::string& cell) {
-    if (!column.number) return cell;
+    if (column.cell != Cell::number) return cell;
     if (const auto whole = parse_integer(cell)) return *whole;
     if (const auto value = parse_number(cell)) return *value;
     return nullptr;
@@ -273,20 +275,40 @@ std::string aligned(const std::vector<std::string>& cells, const Listing& list,
     std::string line;
     for (std::size_t i = 0; i < cells.size(); ++i) {
         const std::string gap(most[i] - length(cells[i]), ' ');
-        line += (i > 0 ? "  " : "") + (list.columns[i].number ? gap + cells[i] : cells[i] + gap);
+        line += (i > 0 ? "  " : "") +
+                (list.columns[i].cell == Cell::number ? gap + cells[i] : cells[i] + gap);
     }
     line.erase(line.find_last_not_of(' ') + 1);
     return printable(line) + '\n';
 }
 
-std::string as_text(const Listing& list) {
+/// The listing with each note replaced by its number, and the notes in that order.
+std::vector<std::string> take_notes(Listing& list) {
+    std::vector<std::string> notes;
+    for (auto& row : list.rows) {
+        for (std::size_t i = 0; i < row.size(); ++i) {
+            if (list.columns[i].cell != Cell::note || row[i].empty()) continue;
+            const auto found = std::find(notes.begin(), notes.end(), row[i]);
+            const auto index = found - notes.begin();
+            if (found == notes.end()) notes.push_back(row[i]);
+            row[i] = '[' + std::to_string(index + 1) + ']';
+        }
+    }
+    return notes;
+}
+
+std::string as_text(Listing list) {
     std::string text = list.name + ": " + list.text + '\n';
     if (!list.digest.empty()) text += list.digest + '\n';
+    const auto notes = take_notes(list);
     std::vector<std::string> header;
     for (const auto& column : list.columns) header.push_back(column.name);
     const auto most = widths(list);
     text += '\n' + aligned(header, list, most);
     for (const auto& row : list.rows) text += aligned(row, list, most);
+    if (!notes.empty()) text += '\n';
+    for (std::size_t i = 0; i < notes.size(); ++i)
+        text += '[' + std::to_string(i + 1) + "] " + printable(notes[i]) + '\n';
     return text;
 }
 

@@ -128,8 +128,8 @@ TEST_CASE("parse_class_table: a header that does not fit is refused", "[tables][
                Contains("unknown column \"emisivity\" (mine.csv:1): did you mean \"emissivity\"?"));
     CHECK_THAT(problem_of("code,name,albedo,Name\n1,Lawn,0.2,x\n"), Contains("column name twice"));
     CHECK_THAT(problem_of("code,albedo\n1,0.2\n"), Contains("the header has no column name"));
-    CHECK_THAT(text_of(problems_of("code;name;albedo\n1;Lawn;0,2\n").at(1)),
-               Contains("cells are separated by commas, not by semicolons"));
+    CHECK_THAT(problem_of("code;name;albedo\n1;Lawn;0,2\n"),
+               Contains("separated by semicolons or tabs (mine.csv:1): separate them by commas"));
     CHECK_THAT(text_of(problems_of("1,Lawn,0.2\n").back()),
                Contains("the first line names the columns"));
     CHECK_THAT(text_of(problems_of("\xff\xfe"

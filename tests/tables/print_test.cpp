@@ -7,6 +7,7 @@
 #include "sunbudget/base/error.hpp"
 #include "sunbudget/base/text.hpp"
 #include "sunbudget/tables/class_table.hpp"
+#include "sunbudget/tables/sensors.hpp"
 
 using namespace sunbudget;
 using Catch::Matchers::Contains;
@@ -79,6 +80,16 @@ TEST_CASE("printed_table: text columns start one below the other", "[tables][pro
         CHECK(lines[i].at(column) != ' ');
         CHECK(lines[i].at(column - 1) == ' ');
     }
+}
+
+TEST_CASE("printed_table: text gives each source once, by number", "[tables][property]") {
+    const auto text = printed_table("weights", TableFormat::text);
+    const std::string source = weight_sets().front().source;
+    const auto at = text.find("[2] " + source);
+    REQUIRE(at != std::string::npos);
+    CHECK(text.find(source) == at + 4);  // nowhere above
+    CHECK(text.find(source, at + 5) == std::string::npos);
+    CHECK_THAT(text, Contains("0.356"));
 }
 
 TEST_CASE("printed_table: an unknown name comes with a suggestion", "[tables][edge]") {
