@@ -6,6 +6,7 @@
 #include <numbers>
 
 #include "sunbudget/base/error.hpp"
+#include "support/vectors.hpp"
 
 using namespace sunbudget;
 using Catch::Matchers::Contains;
@@ -33,6 +34,15 @@ TEST_CASE("civil_from_days: inverts days_from_civil on every day of 1000 years",
     }
     CHECK(wrong == 0);
     CHECK(days_from_civil({1970, 1, 1}) == 0);
+}
+
+TEST_CASE("parse_instant: agrees with published Julian days", "[base][vector]") {
+    const auto table = test::read_table("vectors/julian_day.csv");
+    for (std::size_t i = 0; i < table.rows.size(); ++i) {
+        CAPTURE(table.cell(i, "time"));
+        // 1970-01-01T00:00Z is Julian day 2440587.5.
+        CHECK(utc(table.cell(i, "time").c_str()) / 86400 + 2440587.5 == table.number(i, "julian_day"));
+    }
 }
 
 TEST_CASE("day_of_year: counts the leap day", "[base]") {
