@@ -39,13 +39,12 @@ class Unfinished {
     bool done_ = false;
 };
 
-/// A classic TIFF counts bytes with 32 bits. What directories take is bounded from above.
-bool needs_big_tiff(const Spool& spool, const TiffTags& tags) {
+/// No file made of these tiles and tags is larger.
+std::uint64_t most_bytes(const Spool& spool, const TiffTags& tags) {
     const auto& layout = spool.layout();
-    const std::uint64_t per_band = 8 * static_cast<std::uint64_t>(layout.bands);
-    const std::uint64_t directories = layout.levels.size() * (4096 + per_band) + tags.bytes() +
-                                      16 * std::uint64_t{layout.tile_count()};
-    return spool.bytes() + directories > 0xffff'0000;
+    const std::uint64_t image_tags = 4096 + 8 * static_cast<std::uint64_t>(layout.bands);
+    const std::uint64_t places = 16 * std::uint64_t{layout.tile_count()};
+    return spool.bytes() + layout.levels.size() * image_tags + tags.bytes() + places;
 }
 
 void set_image_tags(TIFF* tiff, const Layout& layout, int level) {
@@ -176,7 +175,9 @@ void compare_decoded(TIFF* tiff, std::uint32_t number, const Layout& layout,
     if (!equal) on_difference();
 }
 
-void verify(const fs::path& path, const Spool& spool) {
+}  // namespace
+
+void verify_layer(const Spool& spool, const fs::path& path) {
     auto file = OutputFile::open(path, false);
     const auto& layout = spool.layout();
     TiffHandle handle(file, "r");
@@ -196,10 +197,10 @@ void verify(const fs::path& path, const Spool& spool) {
             compare_decoded(tiff, number, layout, bytes, pixels, [&] { damaged(path, key); });
     });
 }
-}  // namespace
 
 void finish_layer(const LayerFile& layer, const Spool& spool,
-                  std::span<const BandStatistics> statistics, const fs::path& temporary_file) {
+                  std::span<const BandStatistics> statistics, const fs::path& temporary_file,
+                  std::uint64_t classic_bytes) {
     assert(layout_of(layer) == spool.layout());
     assert(statistics.empty() || statistics.size() == layer.bands.size());
     if (const auto missing = spool.missing(); missing > 0)
@@ -209,11 +210,11 @@ void finish_layer(const LayerFile& layer, const Spool& spool,
     const auto tags = tiff_tags(layer, statistics);
     auto file = OutputFile::create(temporary_file);
     Unfinished guard(temporary_file);
-    write_directories(file, spool.layout(), tags, needs_big_tiff(spool, tags));
+    write_directories(file, spool.layout(), tags, most_bytes(spool, tags) > classic_bytes);
     write_tiles(file, spool);
     file.sync();
     file.close();
-    verify(temporary_file, spool);
+    verify_layer(spool, temporary_file);
     guard.done();
 }
 

@@ -116,6 +116,7 @@ struct Spool::State {
 
     void keep(const TileKey& key, SpooledTile tile);
     void write_line(const std::string& line);
+    void take_index();
     void take_line(const std::string& line);
     [[nodiscard]] bool intact(const SpooledTile& tile) const;
 
@@ -151,6 +152,21 @@ bool Spool::State::intact(const SpooledTile& tile) const {
     return tile_checksum(buffer) == tile.checksum;
 }
 
+/// Reads the index an earlier run left and makes it ready for more lines.
+void Spool::State::take_index() {
+    const auto text = whole_text(index);
+    const auto head = first_line(layout);
+    const auto end = text.rfind('\n') + 1;  // 0 where not even the first line is whole
+    index.truncate(end);
+    index_end = end;
+    if (end == 0) return write_line(head);
+    if (!text.starts_with(head))
+        throw Error(Cause::output, "the unfinished work there is of another raster",
+                    data.path().string(), "start anew with --fresh, or choose another output");
+    std::istringstream lines(text.substr(head.size(), end - head.size()));
+    for (std::string line; std::getline(lines, line);) take_line(line);
+}
+
 void Spool::State::take_line(const std::string& line) {
     auto found = index_line(line);
     if (found && layout.has(found->key) && intact(found->tile))
@@ -164,25 +180,26 @@ Spool::~Spool() = default;
 
 Spool Spool::create(const fs::path& file, const Layout& layout) {
     auto data = OutputFile::create(file);
-    auto state =
-        std::make_unique<State>(std::move(data), OutputFile::create(index_of(file)), layout);
-    state->write_line(first_line(layout));
-    return Spool(std::move(state));
+    try {
+        auto index = OutputFile::create(index_of(file));
+        auto state = std::make_unique<State>(std::move(data), std::move(index), layout);
+        state->write_line(first_line(layout));
+        return Spool(std::move(state));
+    } catch (...) {
+        std::error_code ignored;
+        fs::remove(file, ignored);
+        throw;
+    }
 }
 
 Spool Spool::reopen(const fs::path& file, const Layout& layout) {
-    auto state = std::make_unique<State>(OutputFile::open(file, true),
-                                         OutputFile::open(index_of(file), true), layout);
-    const auto text = whole_text(state->index);
-    const auto head = first_line(layout);
-    if (!text.starts_with(head))
-        throw Error(Cause::output, "the unfinished work there is of another raster", file.string(),
-                    "start anew with --fresh, or choose another output");
-    const auto end = text.rfind('\n') + 1;
-    std::istringstream lines(text.substr(head.size(), end - head.size()));
-    for (std::string line; std::getline(lines, line);) state->take_line(line);
-    state->index.truncate(end);
-    state->index_end = end;
+    auto data = OutputFile::open(file, true);
+    // A run may have been killed before it had an index.
+    const bool indexed = fs::exists(fs::symlink_status(index_of(file)));
+    auto index =
+        indexed ? OutputFile::open(index_of(file), true) : OutputFile::create(index_of(file));
+    auto state = std::make_unique<State>(std::move(data), std::move(index), layout);
+    state->take_index();
     state->data_end = state->data.size();
     return Spool(std::move(state));
 }

@@ -51,17 +51,14 @@ class MemoryFile {
         name_ = "/vsimem/sunbudget_template_" + std::to_string(number.fetch_add(1)) + ".tif";
     }
     ~MemoryFile() {
+        drop_sidecar();
         VSIUnlink(name_.c_str());
-        VSIUnlink((name_ + ".aux.xml").c_str());
     }
     MemoryFile(const MemoryFile&) = delete;
     MemoryFile& operator=(const MemoryFile&) = delete;
 
     [[nodiscard]] const std::string& name() const { return name_; }
-    [[nodiscard]] bool has_sidecar() const {
-        VSIStatBufL status;
-        return VSIStatL((name_ + ".aux.xml").c_str(), &status) == 0;
-    }
+    void drop_sidecar() const { VSIUnlink((name_ + ".aux.xml").c_str()); }
     [[nodiscard]] std::vector<std::byte> bytes() const {
         vsi_l_offset size = 0;
         const auto* data =
@@ -137,16 +134,25 @@ void fill(GDALDataset& dataset, const LayerFile& layer,
         first.SetNoDataValue(*layer.nodata);
 }
 
-/// GDAL puts what a GeoTIFF cannot say into a file beside it, which we do not write.
+bool same_code(const OGRSpatialReference& a, const OGRSpatialReference& b) {
+    const char* code_a = a.GetAuthorityCode(nullptr);
+    const char* code_b = b.GetAuthorityCode(nullptr);
+    return code_a && code_b && EQUAL(code_a, code_b) &&
+           EQUAL(a.GetAuthorityName(nullptr), b.GetAuthorityName(nullptr));
+}
+
+/// GDAL puts what a GeoTIFF cannot say into a file beside it, which we do not write: what does the
+/// GeoTIFF say without it?
 void require_same_crs(const LayerFile& layer, const OGRSpatialReference& wanted,
                       const MemoryFile& file) {
+    file.drop_sidecar();
     const char* drivers[] = {"GTiff", nullptr};
     const Dataset again(GDALDataset::Open(file.name().c_str(), GDAL_OF_RASTER, drivers));
     const auto* found = again ? again->GetSpatialRef() : nullptr;
     const char* lenient[] = {"IGNORE_DATA_AXIS_TO_SRS_AXIS_MAPPING=YES",
                              "CRITERION=EQUIVALENT_EXCEPT_AXIS_ORDER_GEOGCRS", nullptr};
-    if (file.has_sidecar() || found == nullptr || !found->IsSame(&wanted, lenient))
-        throw Error(Cause::output, "the grid's CRS cannot be said in a GeoTIFF", layer.name,
+    if (found == nullptr || !(same_code(*found, wanted) || found->IsSame(&wanted, lenient)))
+        throw Error(Cause::output, "the grid's CRS cannot be written into a GeoTIFF", layer.name,
                     "give the run a grid in another CRS, one with an EPSG code for choice");
 }
 

@@ -5,10 +5,12 @@
 #include <ogr_spatialref.h>
 
 #include <cmath>
+#include <cstdlib>
 #include <fstream>
 #include <limits>
 #include <memory>
 #include <random>
+#include <sstream>
 #include <stdexcept>
 
 #include "sunbudget/base/parallel.hpp"
@@ -71,6 +73,25 @@ Plane<T> tile_of(const LayerFile& layer, int band, int column, int row) {
     return plane;
 }
 
+std::vector<TileKey> shuffled(const LayerFile& layer, unsigned seed) {
+    const auto layout = layout_of(layer);
+    std::vector<TileKey> keys;
+    for (int band = 0; band < layout.bands; ++band)
+        for (int row = 0; row < layout.levels[0].rows; ++row)
+            for (int column = 0; column < layout.levels[0].columns; ++column)
+                keys.push_back({0, band, column, row});
+    if (seed != 0) std::shuffle(keys.begin(), keys.end(), std::mt19937(seed));
+    return keys;
+}
+
+void put_one(const LayerFile& layer, Pyramid& pyramid, const TileKey& key) {
+    const auto put = [&](const auto& tile) { pyramid.put(key.band, key.column, key.row, tile); };
+    if (layer.sample == Sample::float32)
+        put(tile_of<float>(layer, key.band, key.column, key.row));
+    else
+        put(tile_of<std::uint16_t>(layer, key.band, key.column, key.row));
+}
+
 struct CloseDataset {
     void operator()(GDALDataset* dataset) const { GDALClose(dataset); }
 };
@@ -81,22 +102,20 @@ Plane<float> invented_tile(const LayerFile& layer, int band, int column, int row
 }
 
 void put_all(const LayerFile& layer, Pyramid& pyramid, unsigned seed, int threads) {
-    const auto layout = layout_of(layer);
-    std::vector<TileKey> keys;
-    for (int band = 0; band < layout.bands; ++band)
-        for (int row = 0; row < layout.levels[0].rows; ++row)
-            for (int column = 0; column < layout.levels[0].columns; ++column)
-                keys.push_back({0, band, column, row});
-    if (seed != 0) std::shuffle(keys.begin(), keys.end(), std::mt19937(seed));
-    parallel_for(keys.size(), threads, [&](std::size_t i, int) {
-        const auto& key = keys[i];
-        if (layer.sample == Sample::float32)
-            pyramid.put(key.band, key.column, key.row,
-                        tile_of<float>(layer, key.band, key.column, key.row));
-        else
-            pyramid.put(key.band, key.column, key.row,
-                        tile_of<std::uint16_t>(layer, key.band, key.column, key.row));
-    });
+    const auto keys = shuffled(layer, seed);
+    parallel_for(keys.size(), threads,
+                 [&](std::size_t i, int) { put_one(layer, pyramid, keys[i]); });
+}
+
+void put_some(const LayerFile& layer, Pyramid& pyramid, unsigned seed, int first, int last) {
+    const auto keys = shuffled(layer, seed);
+    for (int i = first; i < last; ++i)
+        put_one(layer, pyramid, keys.at(static_cast<std::size_t>(i)));
+}
+
+void put_missing(const LayerFile& layer, Pyramid& pyramid, const Spool& spool) {
+    for (const auto& key : shuffled(layer, 0))
+        if (!spool.has(key)) put_one(layer, pyramid, key);
 }
 
 std::vector<BandStatistics> statistics_of(const LayerFile& layer) {
@@ -191,6 +210,17 @@ std::vector<float> read_level(const fs::path& file, int band, int level) {
 bool same_pixels(const std::vector<float>& a, const std::vector<float>& b) {
     return std::equal(a.begin(), a.end(), b.begin(), b.end(),
                       [](float x, float y) { return x == y || (std::isnan(x) && std::isnan(y)); });
+}
+
+std::pair<bool, std::string> validated(const fs::path& file) {
+    const auto log = file.string() + ".log";
+    const int status = std::system(("/usr/bin/python3 -m osgeo_utils.samples.validate_cloud_"
+                                    "optimized_geotiff '" +
+                                    file.string() + "' >'" + log + "' 2>&1")
+                                       .c_str());
+    std::ostringstream text;
+    text << std::ifstream(log).rdbuf();
+    return {status == 0, text.str()};
 }
 
 void flip_byte(const fs::path& file, std::uint64_t offset) {

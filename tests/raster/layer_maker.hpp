@@ -3,6 +3,7 @@
 #include <filesystem>
 #include <functional>
 #include <string>
+#include <utility>
 #include <vector>
 
 #include "sunbudget/base/plane.hpp"
@@ -30,6 +31,12 @@ namespace sunbudget::test {
 /// `threads` threads.
 void put_all(const LayerFile& layer, Pyramid& pyramid, unsigned seed, int threads);
 
+/// The same from one thread, places `first` up to `last` of the shuffle only.
+void put_some(const LayerFile& layer, Pyramid& pyramid, unsigned seed, int first, int last);
+
+/// The tiles that the spool does not have.
+void put_missing(const LayerFile& layer, Pyramid& pyramid, const Spool& spool);
+
 /// Statistics of the bands by blocks of 256.
 [[nodiscard]] std::vector<BandStatistics> statistics_of(const LayerFile& layer);
 
@@ -45,6 +52,9 @@ std::filesystem::path made(const LayerFile& layer, const std::filesystem::path& 
 
 /// Same values, NaN at the same places.
 [[nodiscard]] bool same_pixels(const std::vector<float>& a, const std::vector<float>& b);
+
+/// Is the public validator of cloud-optimised GeoTIFFs content, and what does it print?
+[[nodiscard]] std::pair<bool, std::string> validated(const std::filesystem::path& file);
 
 /// Spoils one byte.
 void flip_byte(const std::filesystem::path& file, std::uint64_t offset);

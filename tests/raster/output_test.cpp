@@ -1,7 +1,6 @@
 #include <catch2/catch.hpp>
-#include <cstdlib>
-#include <fstream>
-#include <sstream>
+#include <filesystem>
+#include <string>
 #include <tuple>
 
 #include "layer_maker.hpp"
@@ -22,18 +21,6 @@ void check_every_level(const LayerFile& layer, const std::filesystem::path& file
                               levels[static_cast<std::size_t>(level)]));
         }
     }
-}
-
-/// What the public validator of cloud-optimised GeoTIFFs prints, and whether it is content.
-std::pair<bool, std::string> validated(const std::filesystem::path& file) {
-    const auto log = file.string() + ".log";
-    const int status = std::system(("/usr/bin/python3 -m osgeo_utils.samples.validate_cloud_"
-                                    "optimized_geotiff '" +
-                                    file.string() + "' >'" + log + "' 2>&1")
-                                       .c_str());
-    std::ostringstream text;
-    text << std::ifstream(log).rdbuf();
-    return {status == 0, text.str()};
 }
 
 void check_validated(const std::filesystem::path& file) {

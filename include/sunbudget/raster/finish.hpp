@@ -1,5 +1,6 @@
 #pragma once
 
+#include <cstdint>
 #include <filesystem>
 #include <span>
 
@@ -17,14 +18,20 @@ namespace sunbudget {
 /// in      spool            of the layer's layout, complete
 ///         statistics       one a band, or none at all
 ///         temporary_file   must not exist; giving it its final name is the caller's affair
+///         classic_bytes    a larger file becomes a BigTIFF; a classic TIFF counts with 32 bits
 /// errors  Error(partial) when tiles are missing, Error(output) when the file cannot be written or
 ///         does not verify, Error(temporary) after a stop signal: no file is left then
 void finish_layer(const LayerFile& layer, const Spool& spool,
                   std::span<const BandStatistics> statistics,
-                  const std::filesystem::path& temporary_file);
+                  const std::filesystem::path& temporary_file,
+                  std::uint64_t classic_bytes = 0xffff'0000);
 
-/// Throws Error(output) when the layer's CRS would not survive in a GeoTIFF: to be asked before a
-/// long run, not after it.
+/// Compares a finished file with the spool it was made of, as finish_layer does at its end.
+/// Throws Error(output) at the first tile that differs.
+void verify_layer(const Spool& spool, const std::filesystem::path& file);
+
+/// Throws Error(output) when the layer's CRS cannot be written into a GeoTIFF: to be asked before
+/// a long run, not after it.
 void check_layer(const LayerFile& layer);
 
 }  // namespace sunbudget
