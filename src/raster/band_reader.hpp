@@ -1,0 +1,58 @@
+#pragma once
+
+#include <cstdint>
+#include <vector>
+
+#include "dataset.hpp"
+#include "sunbudget/base/plane.hpp"
+#include "sunbudget/raster/source.hpp"
+
+namespace sunbudget {
+
+/// Reads one band in pixels of its upright grid, at full resolution, through handles of its own.
+/// Everything outside the raster has no value; with a period (columns of a full turn in longitude)
+/// the columns go round the globe.
+class BandReader {
+  public:
+    BandReader(const RasterInfo& info, std::optional<double> nodata, Scaling scaling, long period);
+
+    /// Physical values, NaN for none. `out` becomes window.width x window.height.
+    void read(const Window& window, Plane<float>& out);
+    /// Codes, `no_code` for none.
+    void read_codes(const Window& window, Plane<std::int32_t>& out);
+
+    [[nodiscard]] const RasterInfo& info() const noexcept { return info_; }
+    [[nodiscard]] std::uint64_t infinities() const noexcept { return infinities_; }
+
+  private:
+    template <typename Stored, typename Value>
+    void read_pieces(const Window& window, Plane<Value>& out);
+    template <typename Stored, typename Value>
+    void read_inside(const Window& inside, int to_column, int to_row, Plane<Value>& out);
+    template <typename Stored>
+    void fetch(GDALRasterBand& band, const Window& stored, std::vector<Stored>& values);
+    template <typename Stored>
+    [[nodiscard]] bool is_nodata(Stored value) const noexcept;
+    template <typename Stored>
+    void convert(Stored value, float& out) noexcept;
+    template <typename Stored>
+    void convert(Stored value, std::int32_t& out) const;
+    [[nodiscard]] Window stored_window(const Window& inside) const noexcept;
+
+    RasterInfo info_;
+    DatasetPtr dataset_;
+    GDALRasterBand* band_ = nullptr;
+    GDALRasterBand* mask_ = nullptr;
+    std::optional<double> nodata_;
+    Scaling scaling_;
+    long period_;
+    bool south_up_;
+    bool mirrored_;
+    std::uint64_t infinities_ = 0;
+    std::vector<float> floats_;
+    std::vector<double> doubles_;
+    std::vector<std::int32_t> integers_;
+    std::vector<std::uint8_t> mask_values_;
+};
+
+}  // namespace sunbudget
