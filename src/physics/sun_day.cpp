@@ -98,20 +98,21 @@ std::vector<TimeSpan> spans_above_zero(const Height& height, UtcSeconds begin, U
 
 namespace {
 
-/// The first instant from `begin` on at which the sun is on the meridian.
-UtcSeconds next_transit(const SunTrack& track, UtcSeconds begin, double longitude_rad) {
+/// The first instant in [begin, end) at which the sun is on the meridian.
+std::optional<UtcSeconds> first_transit(const SunTrack& track, UtcSeconds begin, UtcSeconds end,
+                                        double longitude_rad) {
     constexpr double two_pi = 2 * std::numbers::pi;
+    constexpr double margin_s = 60;
     const auto hour_angle_rad = [&](UtcSeconds utc) {
         return track.at(utc).greenwich_hour_angle_rad + longitude_rad;
     };
-    double to_go_rad = std::fmod(-hour_angle_rad(begin), two_pi);
-    if (to_go_rad < 0) to_go_rad += two_pi;
-    UtcSeconds utc = begin + to_go_rad / two_pi * seconds_per_day;
-    // The true sun's day differs from the mean one by up to 30 s: what is left shrinks 3000-fold a
-    // round.
-    for (int round = 0; round < 3; ++round)
+    const double to_go_turns = -hour_angle_rad(begin) / two_pi;
+    UtcSeconds utc = begin + (to_go_turns - std::floor(to_go_turns)) * seconds_per_day;
+    // The true sun's day differs from the mean one by up to 30 s: what is left shrinks 3000-fold a round.
+    for (int round = 0; round < 3 && utc < end + margin_s; ++round)
         utc -= std::remainder(hour_angle_rad(utc), two_pi) / two_pi * seconds_per_day;
-    return utc;
+    if (utc < begin) utc += seconds_per_day;
+    return utc < end ? std::optional(utc) : std::nullopt;
 }
 
 }  // namespace
@@ -131,8 +132,7 @@ SunDay sun_day(const SunTrack& track, UtcSeconds begin, UtcSeconds end, double l
     }
     day.always_down = spans.empty();
     day.always_up = !spans.empty() && !day.sunrise && !day.sunset;
-    const UtcSeconds transit = next_transit(track, begin, longitude_rad);
-    if (transit >= begin && transit < end) day.transit = transit;
+    day.transit = first_transit(track, begin, end, longitude_rad);
     return day;
 }
 

@@ -71,6 +71,24 @@ TEST_CASE("sun_day: polar day, polar night and a sunset before sunrise are told 
     CHECK(split.day_length_s == Approx(12.2 * 3600).margin(600));
 }
 
+TEST_CASE("sun_day: spans shorter or longer than a day keep their own transit", "[physics][edge]") {
+    const double begin = utc("2025-06-01T02:00Z");
+    const SunTrack track(begin, begin + 90000);
+    const auto transit_within = [&](double hours) {
+        return sun_day(track, begin, begin + hours * 3600, rad_from_deg(50), 0).transit;
+    };
+    CHECK_FALSE(transit_within(6));
+    CHECK_FALSE(transit_within(9.5));
+    REQUIRE(transit_within(25));
+    CHECK(*transit_within(25) == *transit_within(11));
+    // A span that starts just after a transit has the next one, up to 30 s off a mean day later.
+    const double after = *transit_within(25) + 0.5;
+    const SunTrack next(after, after + 86460);
+    const auto second = sun_day(next, after, after + 86460, rad_from_deg(50), 0).transit;
+    REQUIRE(second);
+    CHECK(*second - after == Approx(86400).margin(31));
+}
+
 TEST_CASE("sun_day: day and night are twelve hours everywhere at an equinox",
           "[physics][property]") {
     const double latitude_deg = GENERATE(range(-85.0, 86.0, 10.0));
