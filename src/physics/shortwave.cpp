@@ -9,8 +9,8 @@ namespace sunbudget {
 
 namespace {
 
-// `absorbed` may be one of the inputs: each pixel is read before it is written. The compiler checks for
-// overlap once a row and takes a plain loop then, with the same result.
+// `absorbed` may be one of the inputs: each pixel is read before it is written. The compiler checks
+// for overlap once a row and takes a plain loop then, with the same result.
 SUNBUDGET_CLONES void absorb(std::size_t count, const float* albedo_direct, const float* direct,
                              const float* albedo_diffuse, const float* diffuse,
                              float* absorbed) noexcept {

@@ -108,7 +108,7 @@ std::optional<UtcSeconds> first_transit(const SunTrack& track, UtcSeconds begin,
     };
     const double to_go_turns = -hour_angle_rad(begin) / two_pi;
     UtcSeconds utc = begin + (to_go_turns - std::floor(to_go_turns)) * seconds_per_day;
-    // The true sun's day differs from the mean one by up to 30 s: what is left shrinks 3000-fold a round.
+    // The true day differs from the mean one by up to 30 s: what is left shrinks 3000-fold a round.
     for (int round = 0; round < 3 && utc < end + margin_s; ++round)
         utc -= std::remainder(hour_angle_rad(utc), two_pi) / two_pi * seconds_per_day;
     if (utc < begin) utc += seconds_per_day;

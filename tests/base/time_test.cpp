@@ -41,7 +41,8 @@ TEST_CASE("parse_instant: agrees with published Julian days", "[base][vector]") 
     for (std::size_t i = 0; i < table.rows.size(); ++i) {
         CAPTURE(table.cell(i, "time"));
         // 1970-01-01T00:00Z is Julian day 2440587.5.
-        CHECK(utc(table.cell(i, "time").c_str()) / 86400 + 2440587.5 == table.number(i, "julian_day"));
+        CHECK(utc(table.cell(i, "time").c_str()) / 86400 + 2440587.5 ==
+              table.number(i, "julian_day"));
     }
 }
 

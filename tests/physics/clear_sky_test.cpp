@@ -77,7 +77,7 @@ TEST_CASE("esra2000: stays between darkness and the light outside the air", "[ph
             esra2000(1361, rad_from_deg(elevation_deg), turbidity, pressure_ratio(height_m));
         CAPTURE(turbidity, height_m, elevation_deg, sky.diffuse_horizontal_w_m2);
         CHECK(sky.diffuse_horizontal_w_m2 > 0);
-        // Near the horizon the fit's diffuse light is too much (common practice: judge above 10 deg).
+        // Near the horizon the fit has too much diffuse light (common practice: judge above 10 deg).
         if (elevation_deg >= 10)
             CHECK(sky.beam_normal_w_m2 * sine + sky.diffuse_horizontal_w_m2 < 1361 * sine);
     }
