@@ -5,15 +5,13 @@
 
 namespace sunbudget {
 
-/// Where a value of a plan stands. In a file: its name and line. From `--set`: no line. A default:
-/// neither file nor line.
+/// Where a value of a plan stands.
 struct Place {
-    std::string file;
-    int line = 0;     ///< counted from 1; 0 when the value is not in a file
-    std::string key;  ///< "surface.cover.raster", "outputs.layers[2]"; empty for the whole plan
+    std::string file;  ///< as named by the user; "--set" or another flag for a value from there
+    int line = 0;      ///< counted from 1; 0 when the value is not in a file
+    std::string key;   ///< "surface.cover.raster", "outputs.layers[2]"; empty for the whole plan
+    bool is_default = false;  ///< nobody wrote the value: it is the key's default
 
-    /// Nobody wrote the value: it is the key's default.
-    [[nodiscard]] bool is_default() const { return file.empty(); }
     /// "town.yaml:12: surface.cover.raster", "--set surface.cover.raster", "default of sky.model".
     [[nodiscard]] std::string text() const;
 };

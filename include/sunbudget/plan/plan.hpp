@@ -190,13 +190,14 @@ struct PlanText {
 [[nodiscard]] Plan read_plan(const std::filesystem::path& file,
                              const std::vector<Override>& overrides = {});
 
-/// The plan with every default filled in that applies to it; such values say `place.is_default()`.
+/// The plan with every default filled in that applies to it; such values say `place.is_default`.
 /// Left empty: what follows from the inputs (grid, scale and offset of a raster).
 [[nodiscard]] Plan with_defaults(Plan plan);
 
-/// The plan as YAML, keys in the order of the manual; reads back as an equal plan from any folder
-/// the paths are still right in. What is a default is not written.
-[[nodiscard]] std::string plan_text(const Plan& plan);
+/// The plan as YAML, keys in the order of the manual, without defaults that nobody wrote. Relative
+/// paths stay as given, which is right in the plan's own folder; with a `folder` they are written
+/// from there. Reads back as an equal plan.
+[[nodiscard]] std::string plan_text(const Plan& plan, const std::filesystem::path& folder = {});
 
 /// SHA-256 of everything that shapes the rasters' content and metadata, defaults included; so not
 /// of the output directory, comments, the order of keys or the way numbers are written. Files count

@@ -1,0 +1,54 @@
+#pragma once
+
+#include "sunbudget/plan/plan.hpp"
+
+namespace sunbudget {
+
+/// Names every member of a Plan by its key, once for reading, writing and filling in defaults.
+/// A visitor has `value(name, member)`, `duration(name, member)` and `map(name, visit_inside)`.
+template <class P, class Visitor>
+void visit_plan(P& plan, Visitor& v) {
+    v.value("title", plan.title);
+    v.map("grid", [&] {
+        v.value("like", plan.grid.like);
+        v.value("crs", plan.grid.crs);
+        v.value("bounds", plan.grid.bounds);
+        v.value("cell", plan.grid.cell);
+    });
+    v.map("surface", [&] {
+        v.map("cover", plan.surface.cover, [&](auto& cover) {
+            v.value("raster", cover.raster);
+            v.value("classes", cover.classes);
+            v.value("default_class", cover.default_class);
+        });
+        v.map("albedo", plan.surface.albedo, [&](auto& albedo) {
+            v.value("raster", albedo.raster);
+            v.value("scale", albedo.scale);
+            v.value("offset", albedo.offset);
+            v.value("value", albedo.value);
+        });
+    });
+    v.map("terrain", [&] { v.value("elevation", plan.terrain.elevation); });
+    v.map("sky", [&] {
+        v.value("model", plan.sky.model);
+        v.value("turbidity", plan.sky.turbidity);
+    });
+    v.map("time", [&] {
+        v.value("at", plan.time.at);
+        v.value("from", plan.time.from);
+        v.value("to", plan.time.to);
+        v.duration("step", plan.time.step_s);
+        v.value("hours", plan.time.hours);
+        v.value("zone", plan.time.zone);
+        v.value("totals", plan.time.totals);
+    });
+    v.map("outputs", [&] {
+        v.value("directory", plan.outputs.directory);
+        v.value("layers", plan.outputs.layers);
+        v.value("unit", plan.outputs.unit);
+        v.value("format", plan.outputs.format);
+    });
+    v.map("engine", [&] { v.value("tile", plan.engine.tile); });
+}
+
+}  // namespace sunbudget

@@ -1,0 +1,211 @@
+#include "fill.hpp"
+
+#include <algorithm>
+#include <cmath>
+#include <utility>
+
+#include "fields.hpp"
+#include "keys.hpp"
+#include "names.hpp"
+#include "scalars.hpp"
+
+namespace sunbudget {
+
+namespace {
+
+using Folder = std::filesystem::path;
+
+Folder folder_of(const std::string& file) {
+    return Folder(file).parent_path();
+}
+
+/// Values from nodes, one overload a type. The nodes are valid: `validate` has seen to that.
+class Typed {
+  public:
+    explicit Typed(Folder folder) : folder_(std::move(folder)) {}
+
+    template <class T>
+    [[nodiscard]] Given<T> given(const Node& node) const {
+        Given<T> value{{}, node.place};
+        get(node, value.value);
+        return value;
+    }
+    template <class T>
+    void get(const Node& node, std::vector<Given<T>>& value) const {
+        for (const auto& item : node.children) value.push_back(given<T>(item));
+    }
+    [[nodiscard]] static Given<int> duration_s(const Node& node) {
+        const double seconds = *read_quantity(node, ValueKind::duration);
+        return {static_cast<int>(std::lround(seconds)), node.place};
+    }
+
+  private:
+    static void get(const Node& node, std::string& value) { value = node.text; }
+    static void get(const Node& node, double& value) { value = *read_number(node); }
+    static void get(const Node& node, int& value) { value = static_cast<int>(*read_integer(node)); }
+    static void get(const Node& node, CivilDate& value) { value = *parse_date(node.text); }
+    static void get(const Node& node, HourWindow& value) { value = *read_hours(node); }
+    static void get(const Node& node, OutputUnit& value) { value = *output_unit_named(node.text); }
+    static void get(const Node& node, LayerId& value) { value = layer_named(node.text)->id; }
+    static void get(const Node& node, PlanZone& value) { value.zone = Zone::parse(node.text); }
+    static void get(const Node& node, PlanInstant& value) {
+        value.written = parse_instant(node.text);
+    }
+    static void get(const Node& node, std::optional<int>& value) {
+        if (const auto code = read_integer(node)) value = static_cast<int>(*code);
+    }
+    template <class Enum>
+    requires requires(Enum e) { names_for(e); }
+    static void get(const Node& node, Enum& value) {
+        const auto& names = names_for(value);
+        value = static_cast<Enum>(std::ranges::find(names, node.text) - names.begin());
+    }
+    template <std::size_t N>
+    static void get(const Node& node, std::array<double, N>& value) {
+        if (node.shape == Node::Shape::scalar) return value.fill(*read_number(node));
+        std::ranges::transform(node.children, value.begin(),
+                               [](const Node& item) { return *read_number(item); });
+    }
+    void get(const Node& node, PlanPath& value) const { value = path_of(node.text); }
+    void get(const Node& node, PlanRaster& value) const {
+        value = *read_raster(node);
+        value.path = path_of(value.path.given);
+    }
+    void get(const Node& node, NamedPeriod& value) const {
+        value = {given<std::string>(*node.find("name")), given<CivilDate>(*node.find("from")),
+                 given<CivilDate>(*node.find("to"))};
+    }
+    void get(const Node& node, std::variant<Totals, std::vector<NamedPeriod>>& value) const {
+        if (node.shape == Node::Shape::scalar) return get(node, value.emplace<Totals>());
+        auto& periods = value.emplace<std::vector<NamedPeriod>>();
+        for (const auto& item : node.children) get(item, periods.emplace_back());
+    }
+    void get(const Node& node, std::variant<LikeInput, PlanPath>& value) const {
+        if (is_choice(node, "grid.like")) return get(node, value.emplace<LikeInput>());
+        get(node, value.emplace<PlanPath>());
+    }
+    void get(const Node& node, TableChoice& value) const {
+        if (is_choice(node, "surface.cover.classes"))
+            value = node.text;
+        else
+            get(node, value.emplace<PlanPath>());
+    }
+    void get(const Node& node, std::variant<PlanRaster, PlanHeight>& value) const {
+        if (const auto height_m = read_quantity(node, ValueKind::length))
+            value = PlanHeight{*height_m};
+        else
+            get(node, value.emplace<PlanRaster>());
+    }
+
+    static bool is_choice(const Node& node, const std::string& key) {
+        const auto& choices = plan_key(key).forms.front().choices;
+        return std::ranges::find(choices, node.text) != choices.end();
+    }
+    [[nodiscard]] PlanPath path_of(const std::string& given) const {
+        // Left alone, so that whoever opens it can say why it is refused.
+        if (given.find("://") != std::string::npos) return {given, given};
+        return {given, (folder_ / given).lexically_normal()};
+    }
+
+    Folder folder_;
+};
+
+class Filler {
+  public:
+    Filler(const Node& root, Folder folder) : node_(&root), typed_(std::move(folder)) {}
+
+    template <class T>
+    void value(const char* name, Given<T>& member) {
+        if (node_->has(name)) member = typed_.given<T>(*node_->find(name));
+    }
+    template <class T>
+    void value(const char* name, Maybe<T>& member) {
+        if (node_->has(name)) member = typed_.given<T>(*node_->find(name));
+    }
+    template <class T>
+    void value(const char* name, std::vector<Given<T>>& member) {
+        if (node_->has(name)) typed_.get(*node_->find(name), member);
+    }
+    void duration(const char* name, Maybe<int>& member) {
+        if (node_->has(name)) member = Typed::duration_s(*node_->find(name));
+    }
+    template <class Inside>
+    void map(const char* name, const Inside& visit_inside) {
+        if (!node_->has(name)) return;
+        const Node* outside = std::exchange(node_, node_->find(name));
+        visit_inside();
+        node_ = outside;
+    }
+    template <class Section, class Inside>
+    void map(const char* name, std::optional<Section>& section, const Inside& visit_inside) {
+        map(name, [&] {
+            section.emplace().place = node_->place;
+            visit_inside(*section);
+        });
+    }
+
+  private:
+    const Node* node_;
+    Typed typed_;
+};
+
+/// Reads the default of each absent key as if it had been written.
+class DefaultFiller {
+  public:
+    explicit DefaultFiller(Folder folder) : typed_(std::move(folder)) {}
+
+    template <class T>
+    void value(const char* name, Maybe<T>& member) {
+        if (const auto node = default_of(name); node && !member) member = typed_.given<T>(*node);
+    }
+    template <class Member>
+    void value(const char*, Member&) {}  // required: has no default
+    void duration(const char* name, Maybe<int>& member) {
+        if (const auto node = default_of(name); node && !member) member = Typed::duration_s(*node);
+    }
+    template <class Inside>
+    void map(const std::string& name, const Inside& visit_inside) {
+        const auto outside = std::exchange(prefix_, prefix_ + name + ".");
+        visit_inside();
+        prefix_ = outside;
+    }
+    template <class Section, class Inside>
+    void map(const char* name, std::optional<Section>& section, const Inside& visit_inside) {
+        if (section) map(name, [&] { visit_inside(*section); });
+    }
+
+  private:
+    [[nodiscard]] std::optional<Node> default_of(const char* name) const {
+        const auto& key = plan_key(prefix_ + name);
+        if (key.default_text.empty()) return std::nullopt;
+        Node node;
+        node.shape = Node::Shape::scalar;
+        node.text = key.default_text;
+        node.place = {{}, 0, prefix_ + name, true};
+        return node;
+    }
+
+    std::string prefix_;
+    Typed typed_;
+};
+
+}  // namespace
+
+Plan fill_plan(const std::string& file, const Node& root) {
+    Plan plan;
+    plan.file = file;
+    Filler filler(root, folder_of(file));
+    visit_plan(plan, filler);
+    return plan;
+}
+
+Plan with_defaults(Plan plan) {
+    const PlanTime written = plan.time;
+    DefaultFiller filler(folder_of(plan.file));
+    visit_plan(plan, filler);
+    // Steps, days and totals belong to a period.
+    if (!written.from) plan.time = written;
+    return plan;
+}
+
+}  // namespace sunbudget

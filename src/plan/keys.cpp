@@ -1,0 +1,207 @@
+#include "keys.hpp"
+
+#include <algorithm>
+#include <cassert>
+
+#include "names.hpp"
+#include "sunbudget/base/text.hpp"
+#include "sunbudget/tables/class_table.hpp"
+#include "sunbudget/tables/layers.hpp"
+#include "sunbudget/tables/methods.hpp"
+
+namespace sunbudget {
+
+namespace {
+
+Form of(ValueKind kind) {
+    return {.kind = kind};
+}
+Form number() {
+    return of(ValueKind::number);
+}
+Form number(double min, double max) {
+    return {.kind = ValueKind::number, .min = min, .max = max};
+}
+Form number_above(double min) {
+    return {.kind = ValueKind::number, .min = min, .above_min = true};
+}
+Form integer(double min, double max) {
+    return {.kind = ValueKind::integer, .min = min, .max = max};
+}
+Form length(double min_m, double max_m) {
+    return {.kind = ValueKind::length, .min = min_m, .max = max_m};
+}
+Form duration(double min_s, double max_s) {
+    return {.kind = ValueKind::duration, .min = min_s, .max = max_s};
+}
+Form path_beside_names() {
+    return {.kind = ValueKind::path, .beside_names = true};
+}
+Form choice(std::vector<std::string> choices) {
+    return {.kind = ValueKind::choice, .choices = std::move(choices)};
+}
+template <std::size_t N>
+Form choice(const std::array<std::string_view, N>& names) {
+    return choice(std::vector<std::string>(names.begin(), names.end()));
+}
+Form map(std::vector<Key> keys, std::vector<Rule> rules = {}) {
+    return {.kind = ValueKind::map, .keys = std::move(keys), .rules = std::move(rules)};
+}
+Form list(Form item, double min, std::optional<double> max = {}, bool distinct = false) {
+    return {.kind = ValueKind::list, .min = min, .max = max, .distinct = distinct, .items = {item}};
+}
+
+Rule exactly_one(std::vector<std::string> keys) {
+    return {Rule::Type::exactly_one, std::move(keys)};
+}
+Rule at_most_one(std::vector<std::string> keys) {
+    return {Rule::Type::at_most_one, std::move(keys)};
+}
+Rule needs(std::string key, std::vector<std::string> others) {
+    others.insert(others.begin(), std::move(key));
+    return {Rule::Type::needs, std::move(others)};
+}
+
+Form grid_form() {
+    return map(
+        {{"like",
+          {choice(like_names), path_beside_names()},
+          "the raster whose grid the outputs take; bounds and cell beside it crop or coarsen it"},
+         {"crs", {of(ValueKind::text)}, "coordinate reference system, such as EPSG:32633"},
+         {"bounds", {list(number(), 4, 4)}, "[west, south, east, north] in the CRS's unit"},
+         {"cell", {number_above(0)}, "side of a pixel in the CRS's unit"}},
+        {at_most_one({"like", "crs"}), needs("crs", {"bounds", "cell"})});
+}
+
+Form cover_form() {
+    // Class codes are stored as 16-bit numbers.
+    return map({{"raster", {of(ValueKind::raster)}, "land-cover classes", {}, true},
+                {"classes",
+                 {choice(shipped_class_table_names()), path_beside_names()},
+                 "the table of albedo by class: one of ours or a CSV file",
+                 {},
+                 true},
+                {"default_class",
+                 {integer(0, 65535), choice({"none"})},
+                 "the class that stands in for a code without a row; none: such codes stop the run",
+                 "none"}});
+}
+
+Form albedo_form() {
+    return map({{"raster", {of(ValueKind::raster)}, "broadband albedo"},
+                {"scale",
+                 {number_above(0)},
+                 "albedo = stored value * scale + offset; default: the file's own"},
+                {"offset", {number()}, "see scale; default: the file's own"},
+                {"value", {number(0, 1)}, "one albedo everywhere"}},
+               {exactly_one({"raster", "value"}), needs("scale", {"raster"}),
+                needs("offset", {"raster"})});
+}
+
+Form surface_form() {
+    return map({{"cover", {cover_form()}, "albedo from land cover"},
+                {"albedo", {albedo_form()}, "albedo as given"}},
+               {at_most_one({"cover", "albedo"})});
+}
+
+Form terrain_form() {
+    // From below the shore of the Dead Sea to above Everest.
+    return map({{"elevation",
+                 {length(-500, 9000), of(ValueKind::raster)},
+                 "heights above sea level, unit from the file; or one height everywhere"}});
+}
+
+// Range and default come from the model's own row.
+Form sky_form() {
+    const auto models = method_names("clear_sky");
+    const auto& turbidity = *method("clear_sky", models.front()).parameter("turbidity");
+    const auto& [low, high, low_open] = turbidity.allowed;
+    const Form one{.kind = ValueKind::number, .min = low, .max = high, .above_min = low_open};
+    return map({{"model", {choice(models)}, "clear-sky model", models.front()},
+                {"turbidity",
+                 {one, list(one, 12, 12)},
+                 turbidity.text + "; one number or one per month",
+                 shortest(turbidity.default_value.value())}});
+}
+
+Form period_form() {
+    return map({{"name", {of(ValueKind::text)}, "becomes the band's description", {}, true},
+                {"from", {of(ValueKind::date)}, "first day", {}, true},
+                {"to", {of(ValueKind::date)}, "last day, inclusive", {}, true}});
+}
+
+Form time_form() {
+    return map(
+        {{"at", {of(ValueKind::instant)}, "one instant, with its offset from UTC or in the zone"},
+         {"from", {of(ValueKind::date)}, "first day"},
+         {"to", {of(ValueKind::date)}, "last day, inclusive"},
+         {"step", {duration(60, 3600)}, "between two positions of the sun", "10 min"},
+         {"hours", {of(ValueKind::hours)}, "only this part of each day; default: the whole day"},
+         {"zone",
+          {of(ValueKind::zone)},
+          "what days and hours mean: UTC, an offset, an IANA name, solar-mean or solar-true",
+          "solar-mean"},
+         {"totals",
+          {choice(totals_names), list(period_form(), 1)},
+          "one band for each of these periods",
+          "whole"}},
+        {exactly_one({"at", "from"}), needs("from", {"to"}), needs("to", {"from"}),
+         needs("step", {"from"}), needs("hours", {"from"}), needs("totals", {"from"})});
+}
+
+Form outputs_form() {
+    return map({{"directory", {of(ValueKind::path)}, "folder of all outputs", "out"},
+                {"layers",
+                 {list(choice(layer_names()), 1, {}, true)},
+                 "what to write, one file each",
+                 {},
+                 true},
+                {"unit",
+                 {choice(output_unit_names())},
+                 "of radiation: the period's mean (W/m2) or its sum (MJ/m2, kWh/m2)",
+                 "W/m2"},
+                {"format", {choice(format_names)}, "cloud-optimised or plain GeoTIFF", "cog"}});
+}
+
+Form engine_form() {
+    return map({{"tile",
+                 {{.kind = ValueKind::integer, .choices = {"128", "256", "512", "1024"}}},
+                 "side of a file's tile in pixels",
+                 "512"}});
+}
+
+}  // namespace
+
+const Form& plan_form() {
+    static const Form form =
+        map({{"sunbudget", {integer(1, 1)}, "version of the plan's format", {}, true},
+             {"title", {of(ValueKind::text)}, "for reports and metadata"},
+             {"grid", {grid_form()}, "default: the surface raster's grid, else the elevation's"},
+             {"surface", {surface_form()}, "where albedo comes from"},
+             {"terrain", {terrain_form()}, "default: flat ground at 0 m"},
+             {"sky", {sky_form()}, "the cloudless atmosphere"},
+             {"time", {time_form()}, "needed by every layer of radiation"},
+             {"outputs", {outputs_form()}, "what to write", {}, true},
+             {"engine", {engine_form()}, "rarely needed"}});
+    return form;
+}
+
+const Key& plan_key(std::string_view path) {
+    const std::vector<Key>* keys = &plan_form().keys;
+    const Key* key = nullptr;
+    for (const auto& name : split(path, '.')) {
+        const auto found = std::ranges::find(*keys, name, &Key::name);
+        assert(found != keys->end());
+        key = &*found;
+        keys = &key->forms.front().keys;
+    }
+    return *key;
+}
+
+std::vector<std::string> names_of(const std::vector<Key>& keys) {
+    std::vector<std::string> names;
+    for (const auto& key : keys) names.push_back(key.name);
+    return names;
+}
+
+}  // namespace sunbudget

@@ -1,0 +1,26 @@
+#pragma once
+
+#include <array>
+#include <string_view>
+
+#include "sunbudget/plan/plan.hpp"
+
+namespace sunbudget {
+
+// The words of the plan file for our enumerations, in their order.
+inline constexpr std::array<std::string_view, 2> like_names{"surface", "elevation"};
+inline constexpr std::array<std::string_view, 5> totals_names{"whole", "day", "month", "season",
+                                                              "year"};
+inline constexpr std::array<std::string_view, 2> format_names{"cog", "geotiff"};
+
+constexpr const auto& names_for(LikeInput) {
+    return like_names;
+}
+constexpr const auto& names_for(Totals) {
+    return totals_names;
+}
+constexpr const auto& names_for(FileFormat) {
+    return format_names;
+}
+
+}  // namespace sunbudget

@@ -1,0 +1,161 @@
+#include <algorithm>
+
+#include "fill.hpp"
+#include "sunbudget/base/text.hpp"
+
+namespace sunbudget {
+
+namespace {
+
+class CrossCheck {
+  public:
+    CrossCheck(const Plan& plan, const Node& root, Problems& problems)
+        : plan_(plan), root_(root), problems_(problems) {}
+
+    void all() const {
+        bounds();
+        grid_source();
+        instant_zone();
+        dates();
+        named_periods();
+        layers();
+        unit();
+    }
+
+  private:
+    // Whether the key is written at all, right or wrong: a wrong one has its own problem already.
+    [[nodiscard]] bool written(std::string_view path) const {
+        const Node* node = &root_;
+        for (const auto& name : split(path, '.'))
+            if (node = node->find(name); node == nullptr) return false;
+        return true;
+    }
+    [[nodiscard]] Place place_of(const char* section, const char* key) const {
+        return root_.find(section)->find(key)->place;
+    }
+    [[nodiscard]] bool has_surface_raster() const {
+        return written("surface.cover") || written("surface.albedo.raster");
+    }
+    [[nodiscard]] bool has_elevation_raster() const {
+        const auto& elevation = plan_.terrain.elevation;
+        if (!elevation) return written("terrain.elevation");
+        return std::holds_alternative<PlanRaster>(**elevation);
+    }
+
+    void bounds() const;
+    void grid_source() const;
+    void instant_zone() const;
+    void dates() const;
+    void named_periods() const;
+    void named_period(const NamedPeriod& period) const;
+    void layers() const;
+    void unit() const;
+    void layers_without(bool Layer::*need, const std::string& what, const std::string& todo) const;
+
+    const Plan& plan_;
+    const Node& root_;
+    Problems& problems_;
+};
+
+void CrossCheck::bounds() const {
+    if (!plan_.grid.bounds) return;
+    const auto& [west, south, east, north] = **plan_.grid.bounds;
+    if (west >= east || south >= north)
+        problems_.add(plan_.grid.bounds->place, "the bounds enclose nothing",
+                      "write them as [west, south, east, north]");
+}
+
+void CrossCheck::grid_source() const {
+    const auto& like = plan_.grid.like;
+    const auto* input = like ? std::get_if<LikeInput>(&**like) : nullptr;
+    if (input != nullptr && *input == LikeInput::surface && !has_surface_raster())
+        problems_.add(like->place, "the plan has no surface raster to take the grid from",
+                      "add surface.cover or surface.albedo.raster, or name a raster here");
+    if (input != nullptr && *input == LikeInput::elevation && !has_elevation_raster())
+        problems_.add(like->place, "the plan has no elevation raster to take the grid from",
+                      "add terrain.elevation, or name a raster here");
+    if (!written("grid.like") && !written("grid.crs") && !has_surface_raster() &&
+        !has_elevation_raster())
+        problems_.add(root_.place, "nothing says which grid the outputs have",
+                      "add grid with crs, bounds and cell, or an input raster");
+}
+
+void CrossCheck::instant_zone() const {
+    if (!plan_.time.at) return;
+    const bool has_offset = plan_.time.at->value.written.offset_s.has_value();
+    if (!has_offset && !written("time.zone"))
+        problems_.add(plan_.time.at->place, "the instant has neither an offset nor a zone",
+                      "add its offset from UTC (2025-06-21T12:00-07:00, or Z), or time.zone");
+    if (has_offset && plan_.time.zone)
+        problems_.add(plan_.time.zone->place, "the instant has an offset, so the zone says nothing",
+                      "remove the zone or the offset");
+}
+
+void CrossCheck::dates() const {
+    const auto& [from, to] = std::tie(plan_.time.from, plan_.time.to);
+    if (from && to && **to < **from)
+        problems_.add(to->place, format_date(**to) + " lies before from, " + format_date(**from),
+                      "both days belong to the period: to is the last");
+}
+
+void CrossCheck::named_periods() const {
+    if (!plan_.time.totals) return;
+    const auto* periods = std::get_if<std::vector<NamedPeriod>>(&**plan_.time.totals);
+    if (periods == nullptr) return;
+    for (const auto& period : *periods) {
+        const auto first = std::ranges::find(*periods, period.name, &NamedPeriod::name);
+        if (&*first != &period)
+            problems_.add(period.name.place, "two periods are named \"" + *period.name + "\"",
+                          "give each its own name");
+        named_period(period);
+    }
+}
+
+void CrossCheck::named_period(const NamedPeriod& period) const {
+    if (*period.to < *period.from)
+        problems_.add(period.to.place,
+                      format_date(*period.to) + " lies before from, " + format_date(*period.from),
+                      "both days belong to the period: to is the last");
+    const auto& [from, to] = std::tie(plan_.time.from, plan_.time.to);
+    if (from && *period.from < **from)
+        problems_.add(period.from.place,
+                      "the period starts before time.from, " + format_date(**from),
+                      "named periods lie inside the plan's own");
+    if (to && *period.to > **to)
+        problems_.add(period.to.place, "the period ends after time.to, " + format_date(**to),
+                      "named periods lie inside the plan's own");
+}
+
+void CrossCheck::layers_without(bool Layer::*need, const std::string& what,
+                                const std::string& todo) const {
+    std::vector<std::string> names;
+    for (const auto& id : plan_.outputs.layers)
+        if (layer(*id).*need) names.push_back(layer(*id).name);
+    if (names.empty()) return;
+    problems_.add(place_of("outputs", "layers"),
+                  joined(names, ", ") + (names.size() == 1 ? " needs " : " need ") + what, todo);
+}
+
+void CrossCheck::layers() const {
+    if (!written("time"))
+        layers_without(&Layer::needs_sun, "the sun, and the plan has no time",
+                       "add time with at, or with from and to");
+    if (!written("surface.cover") && !written("surface.albedo"))
+        layers_without(&Layer::needs_albedo, "an albedo, and the plan has none",
+                       "add surface with cover or albedo");
+}
+
+void CrossCheck::unit() const {
+    const auto& unit = plan_.outputs.unit;
+    if (unit && **unit != OutputUnit::w_m2 && !written("time.from") && !written("time.to"))
+        problems_.add(unit->place, std::string(name_of(**unit)) + " is a sum and needs a period",
+                      "add time.from and time.to, or write unit: W/m2");
+}
+
+}  // namespace
+
+void cross_check(const Plan& plan, const Node& root, Problems& problems) {
+    CrossCheck(plan, root, problems).all();
+}
+
+}  // namespace sunbudget

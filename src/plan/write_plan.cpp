@@ -1,0 +1,281 @@
+#include <fmt/format.h>
+
+#include <algorithm>
+#include <array>
+#include <cmath>
+#include <utility>
+
+#include "fields.hpp"
+#include "names.hpp"
+#include "sunbudget/base/digest.hpp"
+#include "sunbudget/base/text.hpp"
+#include "tree.hpp"
+
+namespace sunbudget {
+
+namespace {
+
+// ---- scalars ----
+
+// Only what no YAML reader, old or new, could take for anything but this text goes without quotes.
+bool is_plain(std::string_view text) {
+    constexpr std::array<std::string_view, 10> words{"null", "true", "false", "yes", "no",
+                                                     "on",   "off",  "y",     "n",   "~"};
+    const auto is_safe = [](char c) {
+        return std::isalnum(static_cast<unsigned char>(c)) != 0 ||
+               static_cast<unsigned char>(c) >= 0x80 ||
+               std::string_view(" _./+-:").find(c) != std::string_view::npos;
+    };
+    if (text.empty() || !std::ranges::all_of(text, is_safe)) return false;
+    if (std::string_view(" +-:").find(text.front()) != text.npos) return false;
+    if (text.back() == ' ' || text.back() == ':' || text.find(": ") != text.npos) return false;
+    return plain_kind(text) == Plain::text &&
+           std::ranges::find(words, lower_case(text)) == words.end();
+}
+
+std::string double_quoted(std::string_view text) {
+    std::string quoted = "\"";
+    for (const char c : text) {
+        if (c == '"' || c == '\\') quoted += '\\';
+        quoted += c;
+    }
+    return quoted + "\"";
+}
+
+Node scalar(std::string text, bool quoted) {
+    Node node;
+    node.shape = Node::Shape::scalar;
+    node.text = std::move(text);
+    node.quoted = quoted;
+    return node;
+}
+Node text_node(std::string text) {
+    const bool quoted = !is_plain(text);
+    return scalar(std::move(text), quoted);
+}
+Node number_node(double value) {
+    return scalar(shortest(value), false);
+}
+
+std::string clock_text(double seconds_of_day) {
+    const auto minutes = static_cast<int>(seconds_of_day / 60);
+    const double rest_s = seconds_of_day - minutes * 60.0;
+    auto text = fmt::format("{:02}:{:02}", minutes / 60, minutes % 60);
+    if (rest_s == 0) return text;
+    // Microseconds are finer than any clock; zeros at the end are dropped.
+    auto seconds = fmt::format("{:09.6f}", rest_s);
+    seconds.erase(seconds.find_last_not_of('0') + 1);
+    if (seconds.back() == '.') seconds.pop_back();
+    return text + ":" + seconds;
+}
+
+std::string offset_text(double offset_s) {
+    if (offset_s == 0) return "Z";
+    const auto minutes = static_cast<int>(std::lround(std::abs(offset_s) / 60));
+    return fmt::format("{}{:02}:{:02}", offset_s < 0 ? '-' : '+', minutes / 60, minutes % 60);
+}
+
+std::string hour_text(double hour) {
+    const auto minutes = static_cast<int>(std::lround(hour * 60));
+    if (minutes % 60 == 0) return std::to_string(minutes / 60);
+    return fmt::format("{}:{:02}", minutes / 60, minutes % 60);
+}
+
+std::string duration_text(int duration_s) {
+    if (duration_s % 3600 == 0) return std::to_string(duration_s / 3600) + " h";
+    if (duration_s % 60 == 0) return std::to_string(duration_s / 60) + " min";
+    return std::to_string(duration_s) + " s";
+}
+
+// ---- the visitor ----
+
+struct Style {
+    std::filesystem::path folder;  ///< paths are written from here; empty: as given
+    bool with_defaults = false;
+};
+
+/// Builds the tree that `read_tree` would have made of the plan's text.
+class Writer {
+  public:
+    explicit Writer(Style style) : style_(std::move(style)) { root_.shape = Node::Shape::map; }
+
+    template <class T>
+    void value(const char* name, const Maybe<T>& member) {
+        if (member) value(name, *member);
+    }
+    template <class T>
+    void value(const char* name, const Given<T>& member) {
+        if (!member.place.is_default || style_.with_defaults) add(name, node_of(member.value));
+    }
+    template <class T>
+    void value(const char* name, const std::vector<Given<T>>& member) {
+        if (!member.empty()) add(name, list_of(member));
+    }
+    void duration(const char* name, const Maybe<int>& member) {
+        if (member && (!member->place.is_default || style_.with_defaults))
+            add(name, text_node(duration_text(**member)));
+    }
+    template <class Inside>
+    void map(const char* name, const Inside& visit_inside) {
+        Node outside = std::exchange(root_, {});
+        root_.shape = Node::Shape::map;
+        visit_inside();
+        std::swap(outside, root_);
+        if (!outside.children.empty()) add(name, std::move(outside));
+    }
+    template <class Section, class Inside>
+    void map(const char* name, const std::optional<Section>& section, const Inside& visit_inside) {
+        if (section) map(name, [&] { visit_inside(*section); });
+    }
+    void add(const char* name, Node node) {
+        node.key = name;
+        root_.children.push_back(std::move(node));
+    }
+    [[nodiscard]] Node& root() { return root_; }
+
+  private:
+    [[nodiscard]] std::string path_text(const PlanPath& path) const;
+
+    [[nodiscard]] Node node_of(const std::string& text) const { return text_node(text); }
+    [[nodiscard]] Node node_of(double number) const { return number_node(number); }
+    [[nodiscard]] Node node_of(int number) const { return number_node(number); }
+    [[nodiscard]] Node node_of(const CivilDate& date) const { return text_node(format_date(date)); }
+    [[nodiscard]] Node node_of(const PlanZone& zone) const { return text_node(zone.zone.name()); }
+    [[nodiscard]] Node node_of(OutputUnit unit) const {
+        return text_node(std::string(name_of(unit)));
+    }
+    [[nodiscard]] Node node_of(LayerId id) const { return text_node(layer(id).name); }
+    template <class Enum>
+    requires requires(Enum e) { names_for(e); }
+    [[nodiscard]] Node node_of(Enum value) const {
+        return text_node(std::string(names_for(value).at(static_cast<std::size_t>(value))));
+    }
+    [[nodiscard]] Node node_of(const PlanPath& path) const { return text_node(path_text(path)); }
+    [[nodiscard]] Node node_of(const PlanRaster& raster) const;
+    [[nodiscard]] Node node_of(const PlanHeight& height) const {
+        return text_node(shortest(height.height_m) + " m");
+    }
+    [[nodiscard]] Node node_of(const HourWindow& hours) const {
+        return text_node(hour_text(hours.begin_h) + "-" + hour_text(hours.end_h));
+    }
+    [[nodiscard]] Node node_of(const PlanInstant& instant) const;
+    [[nodiscard]] Node node_of(const std::optional<int>& code) const {
+        return code ? number_node(*code) : text_node("none");
+    }
+    [[nodiscard]] Node node_of(const Monthly& months) const;
+    [[nodiscard]] Node node_of(const NamedPeriod& period) const;
+    template <class... T>
+    [[nodiscard]] Node node_of(const std::variant<T...>& value) const {
+        return std::visit([&](const auto& one) { return node_of(one); }, value);
+    }
+    [[nodiscard]] Node node_of(const std::vector<NamedPeriod>& periods) const {
+        return list_of(periods);
+    }
+    [[nodiscard]] Node node_of(const std::array<double, 4>& bounds) const {
+        return list_of(bounds);
+    }
+    template <class T>
+    [[nodiscard]] Node node_of(const Given<T>& given) const {
+        return node_of(given.value);
+    }
+    template <class List>
+    [[nodiscard]] Node list_of(const List& list) const {
+        Node node;
+        node.shape = Node::Shape::list;
+        for (const auto& item : list) node.children.push_back(node_of(item));
+        return node;
+    }
+
+    Style style_;
+    Node root_;
+};
+
+std::string Writer::path_text(const PlanPath& path) const {
+    if (style_.folder.empty() || path.given.find("://") != std::string::npos) return path.given;
+    if (std::filesystem::path(path.given).is_absolute()) return path.given;
+    const auto from = std::filesystem::absolute(style_.folder).lexically_normal();
+    return std::filesystem::absolute(path.file).lexically_proximate(from).generic_string();
+}
+
+Node Writer::node_of(const PlanRaster& raster) const {
+    const auto path = path_text(raster.path);
+    if (!raster.band.empty()) return text_node(path + ":" + raster.band);
+    // Without a band the end of such a name would be read as one.
+    const auto colon = path.rfind(':');
+    const bool ends_like_band = colon != path.npos && path.find('/', colon) == path.npos;
+    return text_node(ends_like_band ? path + ":1" : path);
+}
+
+Node Writer::node_of(const PlanInstant& instant) const {
+    const auto& [local, offset_s] = instant.written;
+    return text_node(format_date(local.date) + "T" + clock_text(local.seconds_of_day) +
+                     (offset_s ? offset_text(*offset_s) : ""));
+}
+
+Node Writer::node_of(const Monthly& months) const {
+    if (std::ranges::count(months, months[0]) == 12) return number_node(months[0]);
+    return list_of(months);
+}
+
+Node Writer::node_of(const NamedPeriod& period) const {
+    Node node;
+    node.shape = Node::Shape::map;
+    const auto put = [&](const char* name, Node value) {
+        value.key = name;
+        node.children.push_back(std::move(value));
+    };
+    put("name", node_of(period.name));
+    put("from", node_of(period.from));
+    put("to", node_of(period.to));
+    return node;
+}
+
+// ---- the text ----
+
+std::string flow(const Node& node) {
+    if (node.shape == Node::Shape::scalar)
+        return node.quoted ? double_quoted(node.text) : node.text;
+    std::vector<std::string> parts;
+    for (const auto& child : node.children)
+        parts.push_back((child.key.empty() ? "" : child.key + ": ") + flow(child));
+    const auto inside = joined(parts, ", ");
+    return node.shape == Node::Shape::list ? "[" + inside + "]" : "{" + inside + "}";
+}
+
+void print(const Node& map, const std::string& indent, std::string& text) {
+    for (const auto& child : map.children) {
+        text += indent + child.key + ":";
+        if (child.shape == Node::Shape::map) {
+            text += "\n";
+            print(child, indent + "  ", text);
+        } else if (!child.children.empty() && child.children[0].shape == Node::Shape::map) {
+            text += "\n";
+            for (const auto& item : child.children) text += indent + "  - " + flow(item) + "\n";
+        } else {
+            text += " " + flow(child) + "\n";
+        }
+    }
+}
+
+std::string written(const Plan& plan, Style style) {
+    Writer writer(std::move(style));
+    writer.add("sunbudget", number_node(1));
+    visit_plan(plan, writer);
+    std::string text;
+    print(writer.root(), "", text);
+    return text;
+}
+
+}  // namespace
+
+std::string plan_text(const Plan& plan, const std::filesystem::path& folder) {
+    return written(plan, {folder, false});
+}
+
+std::string plan_digest(const Plan& plan) {
+    Plan whole = with_defaults(plan);
+    whole.outputs.directory.reset();
+    return sha256_of(written(whole, {{}, true}));
+}
+
+}  // namespace sunbudget
