@@ -1,6 +1,6 @@
 #pragma once
 
-#include "problems.hpp"
+#include "mistakes.hpp"
 #include "sunbudget/plan/plan.hpp"
 #include "tree.hpp"
 
@@ -10,6 +10,6 @@ namespace sunbudget {
 [[nodiscard]] Plan fill_plan(const std::string& file, const Node& root);
 
 /// What no single value shows: the order of dates, layers without what they need.
-void cross_check(const Plan& plan, const Node& root, Problems& problems);
+void cross_check(const Plan& plan, const Node& root, Mistakes& mistakes);
 
 }  // namespace sunbudget

@@ -32,9 +32,9 @@ void place_below(Node& node, const std::string& path) {
 
 // A colon, a hash or a leading word must not change what a value on the command line means: only
 // lists, maps and quoted texts are YAML, everything else stands for itself.
-Node value_of(std::string_view text, Problems& problems) {
+Node value_of(std::string_view text, Mistakes& mistakes) {
     const bool is_yaml = !text.empty() && std::string_view("[{\"'").find(text.front()) != text.npos;
-    Node node = read_tree(option, is_yaml ? std::string(text) : single_quoted(text), problems);
+    Node node = read_tree(option, is_yaml ? std::string(text) : single_quoted(text), mistakes);
     if (is_yaml) return node;
     node.quoted = false;
     if (means_nothing(text)) node.shape = Node::Shape::nothing;
@@ -52,22 +52,22 @@ Node& child_of(Node& map, const std::string& name) {
 
 }  // namespace
 
-void apply_override(Node& root, const Override& change, Problems& problems) {
+void apply_override(Node& root, const Override& change, Mistakes& mistakes) {
     const auto equals = change.find('=');
     const std::string path(trimmed(std::string_view(change).substr(0, equals)));
     const Place place{option, 0, path};
     const auto names = split(path, '.');
     if (equals == change.npos || std::ranges::find(names, "") != names.end())
-        return problems.add({option, 0, change}, "this names no key and value",
+        return mistakes.add({option, 0, change}, "this names no key and value",
                             "write --set key.path=value, such as --set sky.turbidity=3.5");
     try {
-        Node value = value_of(trimmed(std::string_view(change).substr(equals + 1)), problems);
+        Node value = value_of(trimmed(std::string_view(change).substr(equals + 1)), mistakes);
         place_below(value, path);
         Node* node = &root;
         for (const auto& name : names) {
             if (node->shape == Node::Shape::nothing) node->shape = Node::Shape::map;
             if (node->shape != Node::Shape::map)
-                return problems.add(place,
+                return mistakes.add(place,
                                     "there is " + described(*node) + " on the way to this key",
                                     "set it as a whole with --set " + node->place.key + "=...");
             node = &child_of(*node, name);
@@ -75,7 +75,7 @@ void apply_override(Node& root, const Override& change, Problems& problems) {
         value.key = names.back();
         *node = std::move(value);
     } catch (const Error& error) {
-        problems.add(place, error.problems().front().what, error.problems().front().todo);
+        mistakes.add(place, error.problems().front().what, error.problems().front().todo);
     }
 }
 

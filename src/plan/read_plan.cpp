@@ -8,13 +8,13 @@
 namespace sunbudget {
 
 Plan parse_plan(const PlanText& plan) {
-    Problems problems;
-    Node root = read_tree(plan.file, plan.text, problems);
-    for (const auto& change : plan.overrides) apply_override(root, change, problems);
-    validate(root, problems);
+    Mistakes mistakes;
+    Node root = read_tree(plan.file, plan.text, mistakes);
+    for (const auto& change : plan.overrides) apply_override(root, change, mistakes);
+    validate(root, mistakes);
     Plan filled = fill_plan(plan.file, root);
-    if (root.shape == Node::Shape::map) cross_check(filled, root, problems);
-    problems.throw_if_any();
+    if (root.shape == Node::Shape::map) cross_check(filled, root, mistakes);
+    mistakes.throw_if_any();
     return filled;
 }
 

@@ -69,8 +69,8 @@ bool is_closed(std::string_view quoted) {
 /// Builds the tree from the parser's events, so that what is refused is never built.
 class Builder : public YAML::EventHandler {
   public:
-    Builder(const std::string& file, std::string_view text, Problems& problems)
-        : file_(file), text_(text), problems_(problems) {}
+    Builder(const std::string& file, std::string_view text, Mistakes& mistakes)
+        : file_(file), text_(text), mistakes_(mistakes) {}
 
     void OnDocumentStart(const YAML::Mark& mark) override {
         if (++documents_ > 1)
@@ -127,7 +127,7 @@ class Builder : public YAML::EventHandler {
 
     const std::string& file_;
     std::string_view text_;
-    Problems& problems_;
+    Mistakes& mistakes_;
     std::vector<Level> open_;
     Node root_;
     std::size_t nodes_ = 0;
@@ -183,7 +183,7 @@ void Builder::attach(Node node) {
     if (in_map && level.node.children.size() >= most_keys)
         stop(file_, node.place.line, "one map of the plan has more than 1,000 keys");
     if (const Node* first = level.node.find(node.key); first != nullptr && !node.key.empty()) {
-        problems_.add(
+        mistakes_.add(
             node.place,
             "the key is written twice, first in line " + std::to_string(first->place.line),
             "keep one of the two");
@@ -223,7 +223,7 @@ void Builder::OnScalar(const YAML::Mark& mark, const std::string& tag, YAML::anc
 
 void Builder::refuse(const YAML::Mark& mark, const std::string& what, const std::string& todo) {
     const auto key = wants_key() ? open_.back().node.place.key : next_place(mark).key;
-    problems_.add({file_, mark.line + 1, key}, "plans have no room for " + what, todo);
+    mistakes_.add({file_, mark.line + 1, key}, "plans have no room for " + what, todo);
 }
 
 void Builder::refuse_anchor(const YAML::Mark& mark, YAML::anchor_t anchor) {
@@ -232,11 +232,11 @@ void Builder::refuse_anchor(const YAML::Mark& mark, YAML::anchor_t anchor) {
 
 }  // namespace
 
-Node read_tree(const std::string& file, std::string text, Problems& problems) {
+Node read_tree(const std::string& file, std::string text, Mistakes& mistakes) {
     if (text.size() > most_bytes) stop(file, 1, "the plan is larger than 1 MiB");
     if (text.starts_with("\xef\xbb\xbf")) text.erase(0, 3);
     check_bytes(file, text);
-    Builder builder(file, text, problems);
+    Builder builder(file, text, mistakes);
     std::istringstream stream(text);
     try {
         YAML::Parser parser(stream);

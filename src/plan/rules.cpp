@@ -9,8 +9,8 @@ namespace {
 
 class CrossCheck {
   public:
-    CrossCheck(const Plan& plan, const Node& root, Problems& problems)
-        : plan_(plan), root_(root), problems_(problems) {}
+    CrossCheck(const Plan& plan, const Node& root, Mistakes& mistakes)
+        : plan_(plan), root_(root), mistakes_(mistakes) {}
 
     void all() const {
         bounds();
@@ -54,14 +54,14 @@ class CrossCheck {
 
     const Plan& plan_;
     const Node& root_;
-    Problems& problems_;
+    Mistakes& mistakes_;
 };
 
 void CrossCheck::bounds() const {
     if (!plan_.grid.bounds) return;
     const auto& [west, south, east, north] = **plan_.grid.bounds;
     if (west >= east || south >= north)
-        problems_.add(plan_.grid.bounds->place, "the bounds enclose nothing",
+        mistakes_.add(plan_.grid.bounds->place, "the bounds enclose nothing",
                       "write them as [west, south, east, north]");
 }
 
@@ -69,14 +69,14 @@ void CrossCheck::grid_source() const {
     const auto& like = plan_.grid.like;
     const auto* input = like ? std::get_if<LikeInput>(&**like) : nullptr;
     if (input != nullptr && *input == LikeInput::surface && !has_surface_raster())
-        problems_.add(like->place, "the plan has no surface raster to take the grid from",
+        mistakes_.add(like->place, "the plan has no surface raster to take the grid from",
                       "add surface.cover or surface.albedo.raster, or name a raster here");
     if (input != nullptr && *input == LikeInput::elevation && !has_elevation_raster())
-        problems_.add(like->place, "the plan has no elevation raster to take the grid from",
+        mistakes_.add(like->place, "the plan has no elevation raster to take the grid from",
                       "add terrain.elevation, or name a raster here");
     if (!written("grid.like") && !written("grid.crs") && !has_surface_raster() &&
         !has_elevation_raster())
-        problems_.add(root_.place, "nothing says which grid the outputs have",
+        mistakes_.add(root_.place, "nothing says which grid the outputs have",
                       "add grid with crs, bounds and cell, or an input raster");
 }
 
@@ -84,17 +84,17 @@ void CrossCheck::instant_zone() const {
     if (!plan_.time.at) return;
     const bool has_offset = plan_.time.at->value.written.offset_s.has_value();
     if (!has_offset && !written("time.zone"))
-        problems_.add(plan_.time.at->place, "the instant has neither an offset nor a zone",
+        mistakes_.add(plan_.time.at->place, "the instant has neither an offset nor a zone",
                       "add its offset from UTC (2025-06-21T12:00-07:00, or Z), or time.zone");
     if (has_offset && plan_.time.zone)
-        problems_.add(plan_.time.zone->place, "the instant has an offset, so the zone says nothing",
+        mistakes_.add(plan_.time.zone->place, "the instant has an offset, so the zone says nothing",
                       "remove the zone or the offset");
 }
 
 void CrossCheck::dates() const {
     const auto& [from, to] = std::tie(plan_.time.from, plan_.time.to);
     if (from && to && **to < **from)
-        problems_.add(to->place, format_date(**to) + " lies before from, " + format_date(**from),
+        mistakes_.add(to->place, format_date(**to) + " lies before from, " + format_date(**from),
                       "both days belong to the period: to is the last");
 }
 
@@ -105,7 +105,7 @@ void CrossCheck::named_periods() const {
     for (const auto& period : *periods) {
         const auto first = std::ranges::find(*periods, period.name, &NamedPeriod::name);
         if (&*first != &period)
-            problems_.add(period.name.place, "two periods are named \"" + *period.name + "\"",
+            mistakes_.add(period.name.place, "two periods are named \"" + *period.name + "\"",
                           "give each its own name");
         named_period(period);
     }
@@ -113,16 +113,16 @@ void CrossCheck::named_periods() const {
 
 void CrossCheck::named_period(const NamedPeriod& period) const {
     if (*period.to < *period.from)
-        problems_.add(period.to.place,
+        mistakes_.add(period.to.place,
                       format_date(*period.to) + " lies before from, " + format_date(*period.from),
                       "both days belong to the period: to is the last");
     const auto& [from, to] = std::tie(plan_.time.from, plan_.time.to);
     if (from && *period.from < **from)
-        problems_.add(period.from.place,
+        mistakes_.add(period.from.place,
                       "the period starts before time.from, " + format_date(**from),
                       "named periods lie inside the plan's own");
     if (to && *period.to > **to)
-        problems_.add(period.to.place, "the period ends after time.to, " + format_date(**to),
+        mistakes_.add(period.to.place, "the period ends after time.to, " + format_date(**to),
                       "named periods lie inside the plan's own");
 }
 
@@ -132,7 +132,7 @@ void CrossCheck::layers_without(bool Layer::*need, const std::string& what,
     for (const auto& id : plan_.outputs.layers)
         if (layer(*id).*need) names.push_back(layer(*id).name);
     if (names.empty()) return;
-    problems_.add(place_of("outputs", "layers"),
+    mistakes_.add(place_of("outputs", "layers"),
                   joined(names, ", ") + (names.size() == 1 ? " needs " : " need ") + what, todo);
 }
 
@@ -148,14 +148,14 @@ void CrossCheck::layers() const {
 void CrossCheck::unit() const {
     const auto& unit = plan_.outputs.unit;
     if (unit && **unit != OutputUnit::w_m2 && !written("time.from") && !written("time.to"))
-        problems_.add(unit->place, std::string(name_of(**unit)) + " is a sum and needs a period",
+        mistakes_.add(unit->place, std::string(name_of(**unit)) + " is a sum and needs a period",
                       "add time.from and time.to, or write unit: W/m2");
 }
 
 }  // namespace
 
-void cross_check(const Plan& plan, const Node& root, Problems& problems) {
-    CrossCheck(plan, root, problems).all();
+void cross_check(const Plan& plan, const Node& root, Mistakes& mistakes) {
+    CrossCheck(plan, root, mistakes).all();
 }
 
 }  // namespace sunbudget

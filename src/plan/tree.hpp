@@ -4,7 +4,7 @@
 #include <string_view>
 #include <vector>
 
-#include "problems.hpp"
+#include "mistakes.hpp"
 #include "sunbudget/plan/plan.hpp"
 
 namespace sunbudget {
@@ -36,9 +36,9 @@ struct Node {
 /// Reads the one document of a plan. Reports duplicate keys, anchors, aliases and tags; throws at
 /// once when the text is no YAML, no UTF-8, has two documents, or goes beyond the caps of
 /// 1 MiB, 100,000 values, 1,000 keys in a map and 32 levels.
-[[nodiscard]] Node read_tree(const std::string& file, std::string text, Problems& problems);
+[[nodiscard]] Node read_tree(const std::string& file, std::string text, Mistakes& mistakes);
 
 /// Puts `key.path=value` into the tree; maps on the way are made where they are missing.
-void apply_override(Node& root, const Override& change, Problems& problems);
+void apply_override(Node& root, const Override& change, Mistakes& mistakes);
 
 }  // namespace sunbudget

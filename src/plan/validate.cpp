@@ -17,7 +17,7 @@ bool fits_shape(const Form& form, Node::Shape shape) {
 
 class Validator {
   public:
-    explicit Validator(Problems& problems) : problems_(problems) {}
+    explicit Validator(Mistakes& mistakes) : mistakes_(mistakes) {}
     void value(Node& node, const std::vector<Form>& forms);
 
   private:
@@ -29,10 +29,10 @@ class Validator {
     bool needs(const Node& node, const std::vector<std::string>& keys);
     void refuse(Node& node, const std::string& what, const std::string& todo = {}) {
         node.bad = true;
-        problems_.add(node.place, what, todo);
+        mistakes_.add(node.place, what, todo);
     }
 
-    Problems& problems_;
+    Mistakes& mistakes_;
 };
 
 void Validator::value(Node& node, const std::vector<Form>& forms) {
@@ -78,7 +78,7 @@ void Validator::map(Node& node, const Form& form) {
 void Validator::required_keys(const Node& node, const Form& form) {
     for (const auto& key : form.keys)
         if (key.required && node.find(key.name) == nullptr)
-            problems_.add(node.place, "the key \"" + key.name + "\" is missing",
+            mistakes_.add(node.place, "the key \"" + key.name + "\" is missing",
                           "add " + key.name + ": " + expected(key.forms));
 }
 
@@ -91,11 +91,11 @@ void Validator::rules(const Node& node, const Form& form) {
         const auto count = std::ranges::count_if(
             keys, [&](const std::string& name) { return node.find(name) != nullptr; });
         if (count > 1)
-            problems_.add(node.place, joined(keys, " and ") + " exclude each other",
+            mistakes_.add(node.place, joined(keys, " and ") + " exclude each other",
                           "keep one of them");
         // Whoever wrote "to" meant "from": one problem is enough.
         if (count == 0 && type == Rule::Type::exactly_one && !lacks)
-            problems_.add(node.place, "neither " + joined(keys, " nor ") + " is given",
+            mistakes_.add(node.place, "neither " + joined(keys, " nor ") + " is given",
                           "add one of them");
     }
 }
@@ -107,7 +107,7 @@ bool Validator::needs(const Node& node, const std::vector<std::string>& keys) {
     for (std::size_t i = 1; i < keys.size(); ++i) {
         if (node.find(keys[i]) != nullptr) continue;
         lacks = true;
-        problems_.add(one->place, "\"" + keys[0] + "\" is given without \"" + keys[i] + "\"",
+        mistakes_.add(one->place, "\"" + keys[0] + "\" is given without \"" + keys[i] + "\"",
                       "add " + keys[i] + " or remove " + keys[0]);
     }
     return lacks;
@@ -115,7 +115,7 @@ bool Validator::needs(const Node& node, const std::vector<std::string>& keys) {
 
 // A list is good as a whole or not at all.
 void Validator::list(Node& node, const Form& form) {
-    const auto problems_before = problems_.count();
+    const auto problems_before = mistakes_.count();
     const auto count = static_cast<double>(node.children.size());
     if (count < *form.min || count > form.max.value_or(count))
         refuse(node, "found " + described(node) + ", expected " + expected(form));
@@ -125,13 +125,13 @@ void Validator::list(Node& node, const Form& form) {
         if (form.distinct && !item.bad && &*first != &item)
             refuse(item, "\"" + item.text + "\" is listed twice", "keep one of the two");
     }
-    node.bad = problems_.count() > problems_before;
+    node.bad = mistakes_.count() > problems_before;
 }
 
 }  // namespace
 
-void validate(Node& root, Problems& problems) {
-    Validator(problems).value(root, {plan_form()});
+void validate(Node& root, Mistakes& mistakes) {
+    Validator(mistakes).value(root, {plan_form()});
 }
 
 }  // namespace sunbudget

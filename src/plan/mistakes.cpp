@@ -1,4 +1,4 @@
-#include "problems.hpp"
+#include "mistakes.hpp"
 
 #include <algorithm>
 #include <limits>
@@ -16,12 +16,12 @@ std::string Place::text() const {
     return file + ":" + std::to_string(line) + (key.empty() ? "" : ": " + key);
 }
 
-void Problems::add(const Place& place, std::string what, std::string todo) {
+void Mistakes::add(const Place& place, std::string what, std::string todo) {
     const int line = place.line > 0 ? place.line : std::numeric_limits<int>::max();
     found_.push_back({line, {std::move(what), place.text(), std::move(todo)}});
 }
 
-void Problems::throw_if_any() {
+void Mistakes::throw_if_any() {
     if (found_.empty()) return;
     std::ranges::stable_sort(found_, {}, &Found::line);
     std::vector<Problem> all;

@@ -9,7 +9,7 @@
 namespace sunbudget {
 
 /// Collects what is wrong with a plan, so that all of it can be said at once.
-class Problems {
+class Mistakes {
   public:
     void add(const Place& place, std::string what, std::string todo = {});
     [[nodiscard]] std::size_t count() const { return found_.size(); }
