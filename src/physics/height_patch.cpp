@@ -15,6 +15,9 @@ constexpr int tile = 16;
 /// The two heights of a cell stay this far apart, so that a line goes through them.
 constexpr float least_gap_m = 1.0F;
 
+/// Cells around the observers' that a level's patch holds.
+constexpr int level_margin = near_steps + 2;
+
 void fill_holes(Plane<float>& heights) {
     for (int r = 0; r < heights.height(); ++r)
         for (float& height : heights.row(r))
@@ -142,28 +145,30 @@ Window observer_window(Window block, int level) noexcept {
 }
 
 Window level_window(Window block, int level) noexcept {
-    return grown(observer_window(block, level), near_steps + 2);
+    return grown(observer_window(block, level), level_margin);
 }
 
 LevelPatch make_level_patch(int level, Window window, const Plane<float>& maximum_m,
                             const Plane<float>& mean_m) {
-    const int right = window.width - 1;
-    const int bottom = window.height - 1;
-    Plane<float> inside(window.width, window.height, no_ground_m);
-    LevelPatch patch{level, window, Plane<float>(window.width, window.height, no_ground_m),
-                     Plane<float>(window.width, window.height),
-                     Plane<float>(window.width, window.height, least_gap_m)};
-    for (int r = 1; r < bottom; ++r)
-        for (int c = 1; c < right; ++c) {
+    const int width = window.width;
+    const int height = window.height;
+    const Window eyes = grown(window, -level_margin);
+    assert(eyes.width > 0 && eyes.height > 0);
+    LevelPatch patch{level, window, Plane<float>(width, height, no_ground_m),
+                     Plane<float>(eyes.width, eyes.height), Plane<float>(eyes.width, eyes.height)};
+    Plane<float> inside(width, height, no_ground_m);
+    for (int r = 1; r < height - 1; ++r)
+        for (int c = 1; c < width - 1; ++c)
             if (maximum_m.at(c, r) == maximum_m.at(c, r))
                 inside.at(c, r) = sight_of(level, maximum_m, mean_m, c, r);
-            std::tie(patch.low_m.at(c, r), patch.high_m.at(c, r)) =
-                eyes_around(maximum_m, mean_m, c, r);
-        }
-    for (int r = 1; r < bottom; ++r)
-        for (int c = 1; c < right; ++c)
+    for (int r = 1; r < height - 1; ++r)
+        for (int c = 1; c < width - 1; ++c)
             patch.sight_m.at(c, r) =
                 is_ground(inside.at(c, r)) ? inside.at(c, r) : rim_height(inside, c, r);
+    for (int r = 0; r < eyes.height; ++r)
+        for (int c = 0; c < eyes.width; ++c)
+            std::tie(patch.low_m.at(c, r), patch.high_m.at(c, r)) =
+                eyes_around(maximum_m, mean_m, c + level_margin, r + level_margin);
     return patch;
 }
 

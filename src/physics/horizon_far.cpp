@@ -154,8 +154,8 @@ RiseLines lines_of(const LevelPatch& patch, const RiseLines* coarser, const Dire
     const auto least_rise_m = static_cast<float>(least_tangent * direction.step_m);
     for (int r = 0; r < observers.height; ++r) {
         const auto source_row = static_cast<int>(observers.row + r - patch.window.row);
-        const float* low = patch.low_m.row(source_row).data() + column;
-        const float* high = patch.high_m.row(source_row).data() + column;
+        const float* low = patch.low_m.row(r).data();
+        const float* high = patch.high_m.row(r).data();
         const float* ground = patch.sight_m.row(source_row).data() + column;
         std::ranges::fill(from_low, least_rise_m);
         std::ranges::fill(from_high, least_rise_m);

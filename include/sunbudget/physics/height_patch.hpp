@@ -43,8 +43,8 @@ struct LevelPatch {
     Window window;  ///< in cells of the level
     Plane<float>
         sight_m;  ///< the height that stops a look: the maximum, less an even slope's part in it
-    /// Two heights from which eyes on the cell and the eight around it look; the outermost ring of
-    /// cells of the window has none (0). low_m < high_m.
+    /// Two heights from which eyes look, for the cells of observer_window(block, level) only;
+    /// low_m < high_m.
     Plane<float> low_m;
     Plane<float> high_m;
 };
@@ -57,7 +57,7 @@ struct LevelPatch {
 /// two more whose only use is to be the neighbours of the rest.
 [[nodiscard]] Window level_window(Window block, int level) noexcept;
 
-/// Takes maxima and means with NaN where there is no ground (outside the raster too).
+/// Takes maxima and means of a level_window with NaN where there is no ground (outside the raster too).
 [[nodiscard]] LevelPatch make_level_patch(int level, Window window, const Plane<float>& maximum_m,
                                           const Plane<float>& mean_m);
 
