@@ -1,6 +1,7 @@
 #include "sunbudget/raster/layer_file.hpp"
 
 #include <cassert>
+#include <utility>
 
 namespace sunbudget {
 
@@ -53,9 +54,11 @@ std::size_t Layout::tile_bytes() const noexcept {
 
 Layout layout_of(const LayerFile& layer) {
     assert(!layer.bands.empty());
+    auto levels = levels_of(layer.grid.width, layer.grid.height, layer.tile);
+    if (!layer.overviews) levels.resize(1);
     return {layer.grid.width, layer.grid.height,
             layer.tile,       static_cast<int>(layer.bands.size()),
-            layer.sample,     levels_of(layer.grid.width, layer.grid.height, layer.tile)};
+            layer.sample,     std::move(levels)};
 }
 
 }  // namespace sunbudget

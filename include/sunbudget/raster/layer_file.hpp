@@ -30,6 +30,7 @@ struct LayerFile {
     Grid grid;
     Sample sample = Sample::float32;
     int tile = 512;               ///< side of the file's tiles, a multiple of 16
+    bool overviews = true;        ///< false: full resolution alone
     std::vector<BandText> bands;  ///< at least one
     std::string unit;
     std::map<std::string, std::string> metadata;

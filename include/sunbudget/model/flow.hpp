@@ -1,0 +1,55 @@
+#pragma once
+
+#include <cstdint>
+#include <map>
+#include <memory>
+
+#include "sunbudget/base/plane.hpp"
+#include "sunbudget/model/run.hpp"
+
+namespace sunbudget {
+
+/// The side of the blocks that all computing is cut into, on a fixed lattice of the grid.
+inline constexpr int block_px = 256;
+
+/// Takes the finished planes of a window.
+class Sink {
+  public:
+    virtual ~Sink() = default;
+    /// `layer` counts the run's layers; planes cover the window.
+    virtual void put(std::size_t layer, std::size_t band, const Window& window, const Plane<float>& plane) = 0;
+    virtual void put(std::size_t layer, std::size_t band, const Window& window, const Plane<std::uint16_t>& plane) = 0;
+};
+
+/// What all threads of a run share: the light tables, made as they are needed.
+class SharedLight {
+  public:
+    SharedLight(const Run& run, int threads);
+    ~SharedLight();
+    [[nodiscard]] LightField* field() const { return field_.get(); }
+
+  private:
+    std::unique_ptr<LightField> field_;
+};
+
+/// One thread's way from inputs to finished planes.
+class Flow {
+  public:
+    Flow(const Run& run, const SharedLight& light, int thread);
+    ~Flow();
+    Flow(Flow&&) noexcept;
+
+    /// Computes every layer and band of a window that lies on the lattice of blocks.
+    void compute(const Window& window, Sink& sink);
+
+    /// Pixels so far by the value of `quality`, whether or not that layer is wanted.
+    [[nodiscard]] const std::map<std::uint16_t, std::uint64_t>& flags() const;
+    /// Infinite numbers met in the inputs so far.
+    [[nodiscard]] std::uint64_t infinities() const;
+
+  private:
+    struct State;
+    std::unique_ptr<State> state_;
+};
+
+}  // namespace sunbudget

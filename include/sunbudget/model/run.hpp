@@ -1,0 +1,84 @@
+#pragma once
+
+#include <cstdint>
+#include <map>
+#include <memory>
+#include <optional>
+#include <string>
+#include <utility>
+#include <variant>
+#include <vector>
+
+#include "sunbudget/model/light.hpp"
+#include "sunbudget/model/time_plan.hpp"
+#include "sunbudget/raster/layer_file.hpp"
+#include "sunbudget/raster/source.hpp"
+#include "sunbudget/tables/class_table.hpp"
+#include "sunbudget/tables/layers.hpp"
+#include "sunbudget/tables/methods.hpp"
+
+namespace sunbudget {
+
+/// Albedo from a land-cover raster and a class table.
+struct CoverSurface {
+    Source codes;
+    CodeValues albedo;          ///< of every code of the table, and of the default class's codes
+    CodeValues quality;         ///< the `quality` layer's source number for each code
+    bool averaged = false;      ///< the grid is coarser: class albedos are averaged
+};
+
+/// Albedo as given: a raster, or one number for all.
+struct GivenSurface {
+    std::variant<double, Source> albedo;
+};
+
+/// One file that came out of a run's grid and methods.
+struct OutputLayer {
+    const Layer* layer = nullptr;
+    LayerFile file;
+    std::vector<double> factors;  ///< from W m-2 to the stored unit, one a band
+};
+
+/// A file the run reads, as its metadata name it.
+struct InputFile {
+    std::string role;  ///< the plan's key: "surface.cover.raster"
+    std::string name;  ///< without folders
+    std::string digest;
+    std::vector<std::string> notes;  ///< grid, alignment, scale, nodata: one line each
+    double coverage = 1;             ///< share of the grid's pixels it covers
+};
+
+/// A class of the cover raster that the run uses.
+struct ClassUse {
+    int code = 0;
+    std::string name;
+    std::uint64_t pixels = 0;  ///< of the raster, as counted or sampled
+    std::optional<double> albedo;
+};
+
+/// Everything a plan comes to: resolved, checked and fixed. Shared by all threads.
+struct Run {
+    std::string title;
+    std::string plan_file;  ///< without folders
+    std::string plan_digest;
+    Grid grid;
+    int tile = 512;
+    bool overviews = true;  ///< a plain GeoTIFF has none
+
+    std::variant<std::monostate, CoverSurface, GivenSurface> surface;
+    std::variant<double, Source> elevation_m = 0.0;
+    Sky sky;
+    std::optional<TimePlan> times;
+    OutputUnit unit = OutputUnit::w_m2;
+    std::vector<OutputLayer> layers;
+
+    std::vector<InputFile> inputs;
+    std::vector<ClassUse> classes;
+    std::vector<const Method*> methods;
+    std::vector<std::string> assumptions;  ///< what the plan left open, in words
+    std::vector<std::string> warnings;
+
+    [[nodiscard]] bool has_surface() const { return !std::holds_alternative<std::monostate>(surface); }
+};
+
+}  // namespace sunbudget
