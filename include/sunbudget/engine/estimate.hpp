@@ -1,0 +1,21 @@
+#pragma once
+
+#include <cstdint>
+
+#include "sunbudget/engine/execute.hpp"
+
+namespace sunbudget {
+
+/// What a run will take, from a few windows computed for the purpose.
+struct Estimate {
+    int windows = 0;  ///< computed as a sample
+    double seconds = 0;
+    std::uint64_t memory_bytes = 0;
+    std::uint64_t output_bytes = 0;   ///< of the finished files
+    std::uint64_t scratch_bytes = 0;  ///< beside them while the run goes on
+};
+
+/// Computes and encodes up to `windows` windows spread over the grid, twice each, and scales up.
+[[nodiscard]] Estimate estimate(const Run& run, const EngineOptions& options, int windows = 8);
+
+}  // namespace sunbudget

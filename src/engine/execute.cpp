@@ -1,0 +1,201 @@
+#include "sunbudget/engine/execute.hpp"
+
+#include <fmt/format.h>
+
+#include <algorithm>
+#include <atomic>
+#include <filesystem>
+#include <mutex>
+#include <optional>
+
+#include "sunbudget/base/error.hpp"
+#include "sunbudget/base/parallel.hpp"
+#include "sunbudget/engine/order.hpp"
+#include "sunbudget/model/flow.hpp"
+#include "sunbudget/raster/finish.hpp"
+#include "sunbudget/raster/pyramid.hpp"
+#include "sunbudget/raster/spool.hpp"
+
+namespace sunbudget {
+
+namespace {
+
+/// A layer while its tiles are being made.
+struct LayerWork {
+    const OutputLayer* layer;
+    Spool spool;
+    Pyramid pyramid;
+    std::vector<std::vector<BlockStatistics>> blocks;  ///< by band, block row by block row
+
+    LayerWork(const OutputLayer& l, const std::filesystem::path& spool_file, std::size_t block_count)
+        : layer(&l),
+          spool(Spool::create(spool_file, layout_of(l.file))),
+          pyramid(l.file, spool),
+          blocks(l.file.bands.size(), std::vector<BlockStatistics>(block_count)) {}
+};
+
+/// Cuts finished planes into tiles, and counts.
+class TileSink : public Sink {
+  public:
+    TileSink(std::vector<std::unique_ptr<LayerWork>>& layers, int tile, int block_columns)
+        : layers_(layers), tile_(tile), block_columns_(block_columns) {}
+
+    void put(std::size_t layer, std::size_t band, const Window& window, const Plane<float>& plane) override {
+        auto& work = *layers_[layer];
+        add_statistics(work.blocks[band], window, plane);
+        put_tiles(work, band, window, plane);
+    }
+
+    void put(std::size_t layer, std::size_t band, const Window& window,
+             const Plane<std::uint16_t>& plane) override {
+        put_tiles(*layers_[layer], band, window, plane);
+    }
+
+  private:
+    void add_statistics(std::vector<BlockStatistics>& blocks, const Window& window, const Plane<float>& plane) const {
+        for (int r = 0; r < window.height; ++r) {
+            const auto row = plane.row(r);
+            const long block_row = (window.row + r) / block_px;
+            for (int column = 0; column < window.width; column += block_px) {
+                const auto width = static_cast<std::size_t>(std::min(block_px, window.width - column));
+                const long block = block_row * block_columns_ + (window.column + column) / block_px;
+                add_row(blocks[static_cast<std::size_t>(block)], row.subspan(static_cast<std::size_t>(column), width));
+            }
+        }
+    }
+
+    template <typename T>
+    void put_tiles(LayerWork& work, std::size_t band, const Window& window, const Plane<T>& plane) {
+        const int b = static_cast<int>(band);
+        if (window.width <= tile_ && window.height <= tile_) {
+            work.pyramid.put(b, static_cast<int>(window.column / tile_), static_cast<int>(window.row / tile_), plane);
+            return;
+        }
+        for (int row = 0; row < window.height; row += tile_)
+            for (int column = 0; column < window.width; column += tile_) {
+                Plane<T> part(std::min(tile_, window.width - column), std::min(tile_, window.height - row));
+                for (int r = 0; r < part.height(); ++r)
+                    std::copy_n(plane.row(row + r).data() + column, part.width(), part.row(r).data());
+                work.pyramid.put(b, static_cast<int>((window.column + column) / tile_),
+                                 static_cast<int>((window.row + row) / tile_), part);
+            }
+    }
+
+    std::vector<std::unique_ptr<LayerWork>>& layers_;
+    int tile_;
+    int block_columns_;
+};
+
+int unit_px(const Run& run) { return std::max(run.tile, block_px); }
+
+std::uint64_t band_planes(const Run& run) {
+    std::uint64_t planes = 0;
+    for (const auto& layer : run.layers) planes += layer.file.bands.size();
+    return planes;
+}
+
+/// Overview tiles that wait for children: in bands of `band` tile rows, a row of tiles at every
+/// level above the band's own, plus a few inside it.
+std::uint64_t waiting_bytes(const Run& run, int band) {
+    const auto tile = static_cast<std::uint64_t>(run.tile);
+    const auto across = static_cast<std::uint64_t>(run.grid.width) / static_cast<std::uint64_t>(band) + 3 * tile;
+    return band_planes(run) * across * tile * sizeof(float);
+}
+
+/// Tall enough that what waits fits a quarter of the budget.
+int band_units(const Run& run, std::uint64_t memory_bytes) {
+    const int rows = (run.grid.height + unit_px(run) - 1) / unit_px(run);
+    int band = 4;
+    while (band < rows && waiting_bytes(run, band) > memory_bytes / 4) band *= 2;
+    return band;
+}
+
+void stop_if_asked() {
+    if (stop_signal.load() != 0) throw Error(Cause::temporary, "stopped by a signal", {}, "run again");
+}
+
+void check_space(const Run& run, const std::filesystem::path& folder) {
+    // The least any run writes: a run that cannot hold even this is refused before it starts.
+    const double pixels = static_cast<double>(run.grid.width) * run.grid.height;
+    const double least = pixels * static_cast<double>(band_planes(run)) * 0.01;
+    std::error_code failure;
+    const auto space = std::filesystem::space(folder, failure);
+    if (!failure && static_cast<double>(space.available) < least)
+        throw Error(Cause::output,
+                    fmt::format("only {} bytes are free, at least {:.0f} are needed", space.available, least),
+                    folder.string(), "free some space, or name another folder with --out");
+}
+
+}  // namespace
+
+std::uint64_t raster_cache_bytes(std::uint64_t memory_bytes) {
+    return std::clamp<std::uint64_t>(memory_bytes / 8, 32u << 20, 512u << 20);
+}
+
+std::uint64_t memory_needed(const Run& run, const EngineOptions& options) {
+    const auto unit = static_cast<std::uint64_t>(unit_px(run));
+    constexpr std::uint64_t bytes_per_pixel = 40;  // the planes of Flow, a tile raw and encoded
+    const int band = band_units(run, options.memory_bytes);
+    return raster_cache_bytes(options.memory_bytes) + waiting_bytes(run, band) +
+           static_cast<std::uint64_t>(options.threads) * unit * unit * bytes_per_pixel;
+}
+
+Execution execute(const Run& run, const EngineOptions& options, const OutputSet& outputs) {
+    check_space(run, outputs.folder());
+    const int block_columns = (run.grid.width + block_px - 1) / block_px;
+    const int block_rows = (run.grid.height + block_px - 1) / block_px;
+    const auto block_count = static_cast<std::size_t>(block_columns) * static_cast<std::size_t>(block_rows);
+    std::vector<std::unique_ptr<LayerWork>> layers;
+    for (const auto& layer : run.layers)
+        layers.push_back(std::make_unique<LayerWork>(layer, outputs.staged(layer.file.name + ".spool"), block_count));
+
+    const SharedLight light(run, options.threads);
+    std::vector<std::optional<Flow>> flows(static_cast<std::size_t>(options.threads));
+    std::vector<TileSink> sinks(flows.size(), TileSink(layers, run.tile, block_columns));
+    const auto units = units_in_order(run.grid.width, run.grid.height, unit_px(run),
+                                      band_units(run, options.memory_bytes));
+    std::atomic<std::uint64_t> pixels_done{0};
+    const double pixels = static_cast<double>(run.grid.width) * run.grid.height;
+    const auto report = [&](const std::string& step, double done, double total, const std::string& unit) {
+        if (options.progress) options.progress({step, done, total, unit});
+    };
+    parallel_for(units.size(), options.threads, [&](std::size_t i, int thread) {
+        const auto t = static_cast<std::size_t>(thread);
+        const auto& window = units[i];
+        try {
+            if (!flows[t]) flows[t].emplace(run, light, thread);
+            flows[t]->compute(window, sinks[t]);
+        } catch (const Error& error) {
+            throw error.at(fmt::format("columns {} to {}, rows {} to {}", window.column,
+                                       window.column + window.width - 1, window.row, window.row + window.height - 1));
+        }
+        const auto done = pixels_done += static_cast<std::uint64_t>(window.width) * static_cast<std::uint64_t>(window.height);
+        report("computing", static_cast<double>(done) / 1e6, pixels / 1e6, "Mpixel");
+    });
+    stop_if_asked();
+
+    Execution result;
+    for (const auto& flow : flows) {
+        if (!flow) continue;
+        for (const auto& [flag, count] : flow->flags()) result.flags[flag] += count;
+        result.infinities += flow->infinities();
+    }
+    for (std::size_t n = 0; n < layers.size(); ++n) {
+        auto& work = *layers[n];
+        report("finishing", static_cast<double>(n), static_cast<double>(layers.size()), "file");
+        LayerResult finished{work.layer->file.name + ".tif", {}, 0};
+        if (work.layer->file.sample == Sample::float32)
+            for (const auto& blocks : work.blocks)
+                finished.bands.push_back(combined(blocks, static_cast<std::uint64_t>(run.grid.width) *
+                                                              static_cast<std::uint64_t>(run.grid.height)));
+        const auto file = outputs.staged(finished.file_name);
+        finish_layer(work.layer->file, work.spool, finished.bands, file);
+        work.spool.remove();
+        finished.bytes = std::filesystem::file_size(file);
+        result.layers.push_back(std::move(finished));
+        stop_if_asked();
+    }
+    return result;
+}
+
+}  // namespace sunbudget
