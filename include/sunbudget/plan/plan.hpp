@@ -8,6 +8,7 @@
 #include <vector>
 
 #include "sunbudget/base/time.hpp"
+#include "sunbudget/model/time_plan.hpp"
 #include "sunbudget/plan/place.hpp"
 #include "sunbudget/tables/layers.hpp"
 
@@ -46,7 +47,6 @@ struct NamedPeriod {
     friend bool operator==(const NamedPeriod&, const NamedPeriod&) = default;
 };
 
-enum class Totals { whole, day, month, season, year };
 enum class FileFormat { cog, geotiff };
 
 enum class LikeInput { surface, elevation };

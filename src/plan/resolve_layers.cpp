@@ -1,0 +1,105 @@
+#include <fmt/format.h>
+
+#include <algorithm>
+
+#include "resolve_parts.hpp"
+#include "sunbudget/base/text.hpp"
+#include "sunbudget/raster/finish.hpp"
+#include "sunbudget/tables/quality.hpp"
+#include "sunbudget/base/version.hpp"
+
+namespace sunbudget {
+
+namespace {
+
+std::string period_text(const Period& period, const TimePlan& times) {
+    const auto first = format_date(period.days.front().date), last = format_date(period.days.back().date);
+    return first + "/" + last + " " + times.zone.name();
+}
+
+/// From W m-2, mean over the band's period, to the stored unit.
+double factor_of(OutputUnit unit, double period_s) {
+    return unit == OutputUnit::w_m2 ? 1.0 : period_s / joules_of(unit);
+}
+
+BandText band_of(const Layer& layer, const Run& run, std::size_t band) {
+    BandText text;
+    text.description = layer.name;
+    if (layer.needs_sun && run.times->instant) {
+        text.description = format_utc(*run.times->instant);
+        text.metadata["time"] = text.description;
+    } else if (layer.needs_sun) {
+        const auto& period = run.times->periods[band];
+        text.description = period.name;
+        text.metadata["period"] = period_text(period, *run.times);
+        text.metadata["cell_methods"] = run.unit == OutputUnit::w_m2 ? "time: mean" : "time: sum";
+    }
+    if (const auto& name = standard_name_of(layer, run.unit); !name.empty()) text.metadata["standard_name"] = name;
+    return text;
+}
+
+std::map<std::string, std::string> file_metadata(const Layer& layer, const Run& run) {
+    std::map<std::string, std::string> items{{"software", "sunbudget " + std::string(program_version())},
+                                             {"plan_digest", run.plan_digest},
+                                             {"layer", layer.text}};
+    if (!run.title.empty()) items["title"] = run.title;
+    for (std::size_t i = 0; i < run.inputs.size(); ++i)
+        items[fmt::format("input_{:02}", i + 1)] =
+            fmt::format("{}: {} {}", run.inputs[i].role, run.inputs[i].name, run.inputs[i].digest);
+    for (std::size_t i = 0; i < run.methods.size(); ++i)
+        items[fmt::format("method_{:02}", i + 1)] =
+            fmt::format("{} {}: {}", run.methods[i]->family, run.methods[i]->name, run.methods[i]->source);
+    if (layer.needs_sun) {
+        items["per_area"] = "square metre of horizontal ground: the ground is taken as flat and open";
+        if (!run.times->instant) items["time_step"] = fmt::format("{} s", run.times->step_s);
+    }
+    return items;
+}
+
+/// The files' own words for the flags, so that a table of them is never far away.
+void describe_flags(LayerFile& file) {
+    for (const auto& row : quality_rows())
+        file.metadata[fmt::format("flag_{}", row.name)] =
+            fmt::format("(value & {}) == {}: {}", row.mask, row.value, row.text);
+}
+
+OutputLayer output_layer(const Layer& layer, const Run& run) {
+    OutputLayer out{&layer, {}, {}};
+    auto& file = out.file;
+    file.name = layer.name;
+    file.grid = run.grid;
+    file.tile = run.tile;
+    file.overviews = run.overviews;
+    file.sample = layer.sample == SampleType::float32 ? Sample::float32 : Sample::uint16;
+    file.unit = unit_of(layer, run.unit);
+    const std::size_t bands = layer.needs_sun ? run.times->bands() : 1;
+    double quantum = 1e300;
+    for (std::size_t band = 0; band < bands; ++band) {
+        const double period_s = layer.needs_sun && !run.times->instant ? run.times->periods[band].duration_s : 1;
+        file.bands.push_back(band_of(layer, run, band));
+        out.factors.push_back(layer.needs_sun ? factor_of(run.unit, period_s) : 1.0);
+        quantum = std::min(quantum, quantum_of(layer, run.unit, period_s));
+    }
+    file.metadata = file_metadata(layer, run);
+    if (file.sample == Sample::float32) {
+        file.quantum = static_cast<float>(quantum);
+        file.metadata["rounded_to"] = shortest(quantum);
+    } else {
+        describe_flags(file);
+    }
+    return out;
+}
+
+}  // namespace
+
+void resolve_layers(const Plan& plan, Run& run, RunProblems& problems) {
+    if (plan.outputs.unit) run.unit = **plan.outputs.unit;
+    if (plan.outputs.format) run.overviews = **plan.outputs.format == FileFormat::cog;
+    for (const auto& name : plan.outputs.layers)
+        problems.attempt(name.place, [&] {
+            run.layers.push_back(output_layer(layer(*name), run));
+            check_layer(run.layers.back().file);
+        });
+}
+
+}  // namespace sunbudget

@@ -1,0 +1,41 @@
+#pragma once
+
+#include <functional>
+#include <string>
+#include <utility>
+#include <vector>
+
+#include "sunbudget/base/error.hpp"
+#include "sunbudget/base/text.hpp"
+#include "sunbudget/plan/resolve.hpp"
+
+namespace sunbudget {
+
+/// Collects what is wrong with a plan and its inputs, so that all of it can be said at once.
+class RunProblems {
+  public:
+    /// Runs a step; an Error it throws is kept, with the place put in front. False when it threw.
+    bool attempt(const Place& place, const std::function<void()>& step);
+    void add(Cause cause, const Place& place, std::string what, std::string todo);
+    void throw_if_any() const;
+
+  private:
+    Cause cause_ = Cause::usage;
+    std::vector<Problem> list_;
+};
+
+[[nodiscard]] RasterName raster_of(const PlanRaster& raster);
+[[nodiscard]] RasterLimits limits_of(const ResolveOptions& options);
+/// Every raster the plan names for reading, with the key that names it.
+[[nodiscard]] std::vector<std::pair<RasterName, Place>> read_rasters(const Plan& plan);
+/// Writes an input down for the metadata, with its warnings.
+void add_input(Run& run, const std::string& role, const Source& source);
+
+// The steps of resolve(), in this order; each fills its part of the run.
+void resolve_surface(const Plan& plan, const ResolveOptions& options, Run& run, RunProblems& problems);
+void resolve_elevation(const Plan& plan, const ResolveOptions& options, Run& run, RunProblems& problems);
+void resolve_sky(const Plan& plan, Run& run, RunProblems& problems);
+void resolve_time(const Plan& plan, Run& run, RunProblems& problems);
+void resolve_layers(const Plan& plan, Run& run, RunProblems& problems);
+
+}  // namespace sunbudget
