@@ -1,0 +1,125 @@
+#include <fmt/format.h>
+
+#include <filesystem>
+#include <memory>
+#include <nlohmann/json.hpp>
+
+#include "context.hpp"
+#include "sunbudget/base/text.hpp"
+#include "sunbudget/raster/raster_file.hpp"
+
+namespace sunbudget {
+
+namespace {
+
+using Json = nlohmann::ordered_json;
+namespace fs = std::filesystem;
+
+/// What the flags of a one-line job say; each fills a key of a plan.
+struct JobFlags {
+    std::string cover, classes, default_class, albedo, elevation, like;
+    std::string at, from, to, step, hours, zone, totals, turbidity, unit;
+    std::string out;
+    std::vector<std::string> set;
+    RunFlags run;
+    Common common;
+};
+
+/// A number as a number and anything else as text: the plan's own reader judges it.
+Json scalar(const std::string& text) {
+    if (const auto integer = parse_integer(text)) return *integer;
+    if (const auto value = parse_number(text)) return *value;
+    return text;
+}
+
+void put(Json& map, const char* key, const std::string& text) {
+    if (!text.empty()) map[key] = scalar(text);
+}
+
+/// The plan that the flags stand for, as text; JSON is YAML.
+std::string plan_text_of(const JobFlags& flags, const std::string& layer) {
+    Json plan{{"sunbudget", 1}};
+    Json surface = Json::object();
+    if (!flags.cover.empty()) {
+        surface["cover"] = {{"raster", flags.cover}};
+        put(surface["cover"], "classes", flags.classes);
+        put(surface["cover"], "default_class", flags.default_class);
+    }
+    if (!flags.albedo.empty()) surface["albedo"][parse_number(flags.albedo) ? "value" : "raster"] = scalar(flags.albedo);
+    if (!surface.empty()) plan["surface"] = surface;
+    if (!flags.like.empty()) plan["grid"]["like"] = flags.like;
+    if (!flags.elevation.empty()) plan["terrain"]["elevation"] = flags.elevation;
+    if (!flags.turbidity.empty()) plan["sky"]["turbidity"] = scalar(flags.turbidity);
+    Json time = Json::object();
+    for (const auto& [key, text] : {std::pair{"at", &flags.at}, {"from", &flags.from}, {"to", &flags.to}, {"step", &flags.step},
+                                    {"hours", &flags.hours}, {"zone", &flags.zone}, {"totals", &flags.totals}})
+        if (!text->empty()) time[key] = *text;
+    if (!time.empty()) plan["time"] = time;
+    plan["outputs"]["layers"] = {layer};
+    put(plan["outputs"], "unit", flags.unit);
+    plan["outputs"]["directory"] = fs::path(flags.out).has_parent_path() ? fs::path(flags.out).parent_path().string() : ".";
+    return plan.dump();
+}
+
+/// A job may not write over what it reads.
+void refuse_overwriting(const JobFlags& flags) {
+    for (const auto* input : {&flags.cover, &flags.albedo, &flags.elevation, &flags.like}) {
+        std::error_code ignored;
+        if (!input->empty() && fs::equivalent(raster_name(*input).path, flags.out, ignored))
+            throw Error(Cause::usage, flags.out + " is an input of this job", "--output", "name another file");
+    }
+}
+
+void add_time_flags(CLI::App& command, JobFlags& flags) {
+    command.add_option("--elevation", flags.elevation, "Elevation raster, or a height (\"250 m\"), for the air pressure")->type_name("FILE");
+    command.add_option("--at", flags.at, "One instant: 2025-06-21T12:00-07:00")->type_name("T");
+    command.add_option("--from", flags.from, "First day")->type_name("DAY");
+    command.add_option("--to", flags.to, "Last day, included")->type_name("DAY");
+    command.add_option("--step", flags.step, "Time step [10 min]")->type_name("STEP");
+    command.add_option("--hours", flags.hours, "Daily window: 12-17")->type_name("H-H");
+    command.add_option("--zone", flags.zone, "UTC, an offset, an IANA name, solar-mean or solar-true")->type_name("ZONE");
+    command.add_option("--totals", flags.totals, "One band per: whole, day, month, season, year [whole]")->type_name("PERIOD");
+    command.add_option("--turbidity", flags.turbidity, "Linke turbidity of the clear sky [3]")->type_name("TL");
+    command.add_option("--unit", flags.unit, "W/m2 (mean), MJ/m2 or kWh/m2 (sum) [W/m2]")->type_name("UNIT");
+}
+
+void add_surface_flags(CLI::App& command, JobFlags& flags) {
+    command.add_option("--cover", flags.cover, "Land-cover raster")->type_name("FILE");
+    command.add_option("--classes", flags.classes, "Its class table: worldcover, nlcd, corine, lcz or a CSV file")->type_name("TABLE");
+    command.add_option("--default-class", flags.default_class, "Class for codes that the table does not have")->type_name("CODE");
+    command.add_option("--albedo", flags.albedo, "Albedo as given: a raster or a number")->type_name("FILE|NUMBER");
+}
+
+void add_job(CLI::App& app, const char* name, const char* text, const std::string& layer, bool surface, bool light,
+             const char* example) {
+    auto flags = std::make_shared<JobFlags>();
+    auto* command = app.add_subcommand(name, text);
+    if (surface) add_surface_flags(*command, *flags);
+    if (light) add_time_flags(*command, *flags);
+    command->add_option("-o,--output", flags->out, "The raster to write: one layer, no files beside it")->type_name("OUT.tif")->required();
+    command->add_option("--set", flags->set, "Set any other key of the plan behind this job; may be repeated")
+        ->type_name("key.path=value")->expected(1)->take_all()->allow_extra_args(false);
+    add_common_flags(*command, flags->common);
+    command->add_option("--like", flags->like, "A raster whose grid to use [that of the surface, else the elevation]")->type_name("FILE");
+    command->footer(fmt::format("Example: {}", example));
+    command->callback([flags, layer] {
+        Terminal terminal(flags->common.quiet);
+        refuse_overwriting(*flags);
+        flags->run.single_file = flags->out;
+        // The name has no folder, so that paths are relative to where the command was given.
+        run_plan(parse_plan({"command line", plan_text_of(*flags, layer), flags->set}), flags->run, flags->common, terminal);
+    });
+}
+
+}  // namespace
+
+void add_one_line_jobs(CLI::App& app) {
+    add_job(app, "albedo", "Albedo from a land-cover raster and a class table", "albedo", true, false,
+            "sunbudget albedo --cover cover.tif --classes worldcover -o albedo.tif");
+    add_job(app, "insolation", "Clear-sky insolation of flat ground", "insolation", false, true,
+            "sunbudget insolation --elevation dem.tif --from 2025-06-01 --to 2025-08-31 --unit kWh/m2 -o insolation.tif");
+    add_job(app, "net", "Net shortwave: what the ground keeps of the sun's light", "net_shortwave", true, true,
+            "sunbudget net --cover cover.tif --classes worldcover --at 2025-06-21T12:00Z -o net.tif");
+}
+
+}  // namespace sunbudget

@@ -1,0 +1,210 @@
+#include <fmt/format.h>
+
+#include <cmath>
+#include <cstdio>
+#include <memory>
+#include <nlohmann/json.hpp>
+
+#include "context.hpp"
+#include "sunbudget/base/text.hpp"
+#include "sunbudget/base/units.hpp"
+#include "sunbudget/model/sun_table.hpp"
+#include "sunbudget/tables/methods.hpp"
+
+namespace sunbudget {
+
+namespace {
+
+using Json = nlohmann::ordered_json;
+
+enum class Format { text, csv, json };
+
+struct Flags {
+    std::string at, time, from, to, step, zone = "UTC", height, turbidity;
+    bool csv = false, json = false;
+
+    [[nodiscard]] Format format() const { return csv ? Format::csv : json ? Format::json : Format::text; }
+};
+
+double number(const std::string& text, const char* flag, double low, double high) {
+    const auto value = parse_number(text);
+    if (!value || *value < low || *value > high)
+        throw Error(Cause::usage, "\"" + text + "\" is no number from " + shortest(low) + " to " + shortest(high), flag);
+    return *value;
+}
+
+SunPlace place_of(const Flags& flags) {
+    const auto parts = split(flags.at, ',');
+    if (parts.size() != 2)
+        throw Error(Cause::usage, "\"" + flags.at + "\" is no place", "--at", "write LAT,LON in degrees, north and east positive: 52.5,13.4");
+    SunPlace place;
+    place.latitude_rad = rad_from_deg(number(parts[0], "--at, latitude", -90, 90));
+    place.longitude_rad = rad_from_deg(number(parts[1], "--at, longitude", -180, 180));
+    if (!flags.height.empty()) place.height_m = number(flags.height, "--height", -500, 9000);
+    const auto* parameter = method("clear_sky", "esra2000").parameter("turbidity");
+    double turbidity = *parameter->default_value;
+    if (!flags.turbidity.empty()) turbidity = number(flags.turbidity, "--turbidity", -1e9, 1e9);
+    if (judge(*parameter, turbidity) == Verdict::refused)
+        throw Error(Cause::usage, "turbidity " + shortest(turbidity) + " is outside " + parameter->allowed.text(), "--turbidity");
+    place.sky.turbidity.fill(turbidity);
+    return place;
+}
+
+CivilDate date_of(const std::string& text, const char* flag) {
+    const auto date = parse_date(text);
+    if (!date) throw Error(Cause::usage, "\"" + text + "\" is no day", flag, "write 2025-06-21");
+    return *date;
+}
+
+/// Seconds of "10 min", "1 h", "30 s", "1 d".
+double step_of(const std::string& text) {
+    const auto trimmed_text = std::string(trimmed(text));
+    const auto digits = trimmed_text.find_first_not_of("0123456789.");
+    const auto value = parse_number(trimmed_text.substr(0, digits));
+    const auto unit = digits == std::string::npos ? std::string() : std::string(trimmed(trimmed_text.substr(digits)));
+    const double unit_s = unit == "s" ? 1 : unit == "min" ? 60 : unit == "h" ? 3600 : unit == "d" ? 86400 : 0;
+    const double seconds = value.value_or(0) * unit_s;
+    if (!(seconds >= 1 && seconds <= seconds_per_day))
+        throw Error(Cause::usage, "\"" + text + "\" is no step from 1 s to 1 d", "--step", "write 10 min, 1 h or 1 d");
+    return seconds;
+}
+
+double rounded(double value, double digits) {
+    const double factor = std::pow(10, digits);
+    return std::round(value * factor) / factor;
+}
+
+Json json_of(const SunMoment& m) {
+    Json json{{"time", format_utc(m.utc)},
+              {"elevation_deg", rounded(deg_from_rad(m.elevation_rad), 5)},
+              {"elevation_refracted_deg", rounded(deg_from_rad(m.elevation_refracted_rad), 5)},
+              {"azimuth_deg", rounded(deg_from_rad(m.azimuth_rad), 5)},
+              {"zenith_deg", rounded(90 - deg_from_rad(m.elevation_rad), 5)},
+              {"distance_au", rounded(m.distance_au, 7)}};
+    json["air_mass"] = m.air_mass ? Json(rounded(*m.air_mass, 4)) : Json(nullptr);
+    json["extraterrestrial_w_m2"] = rounded(m.extraterrestrial_w_m2, 2);
+    json["beam_w_m2"] = rounded(m.beam_w_m2, 2);
+    json["diffuse_w_m2"] = rounded(m.diffuse_w_m2, 2);
+    json["global_w_m2"] = rounded(m.global_w_m2, 2);
+    return json;
+}
+
+Json time_or_null(const std::optional<UtcSeconds>& utc) { return utc ? Json(format_utc(*utc)) : Json(nullptr); }
+
+Json json_of(const SunDayRow& d) {
+    constexpr double mj = 1e6;
+    return {{"date", format_date(d.date)},
+            {"sunrise", time_or_null(d.sunrise)},
+            {"transit", time_or_null(d.transit)},
+            {"sunset", time_or_null(d.sunset)},
+            {"day_length_h", rounded(d.day_length_s / 3600, 4)},
+            {"transit_elevation_deg", rounded(deg_from_rad(d.transit_elevation_rad), 4)},
+            {"extraterrestrial_mj_m2", rounded(d.extraterrestrial_j_m2 / mj, 4)},
+            {"direct_mj_m2", rounded(d.direct_j_m2 / mj, 4)},
+            {"diffuse_mj_m2", rounded(d.diffuse_j_m2 / mj, 4)},
+            {"global_mj_m2", rounded((d.direct_j_m2 + d.diffuse_j_m2) / mj, 4)}};
+}
+
+std::string cell_of(const Json& value) {
+    if (value.is_null()) return {};
+    return value.is_string() ? value.get<std::string>() : value.dump();
+}
+
+std::string csv_of(const Json& rows) {
+    std::string text;
+    for (const auto& [key, value] : rows.front().items()) text += (text.empty() ? "" : ",") + key;
+    text += "\n";
+    for (const auto& row : rows) {
+        std::string line;
+        bool first = true;
+        for (const auto& [key, value] : row.items()) {
+            line += (first ? "" : ",") + cell_of(value);
+            first = false;
+        }
+        text += line + "\n";
+    }
+    return text;
+}
+
+/// Columns as wide as they need to be; one row alone stands upright, a name a line.
+std::string text_of_rows(const Json& rows) {
+    std::string text;
+    if (rows.size() == 1) {
+        for (const auto& [key, value] : rows.front().items())
+            text += fmt::format("{:<26} {}\n", key, value.is_null() ? "-" : cell_of(value));
+        return text;
+    }
+    std::vector<std::vector<std::string>> lines(1);
+    for (const auto& [key, value] : rows.front().items()) lines.front().push_back(key);
+    for (const auto& row : rows) {
+        lines.emplace_back();
+        for (const auto& [key, value] : row.items()) lines.back().push_back(value.is_null() ? "-" : cell_of(value));
+    }
+    for (const auto& line : lines) {
+        for (std::size_t c = 0; c < line.size(); ++c) {
+            std::size_t width = 0;
+            for (const auto& other : lines) width = std::max(width, other[c].size());
+            text += fmt::format("{}{:>{}}", c == 0 ? "" : "  ", line[c], width);
+        }
+        text += "\n";
+    }
+    return text;
+}
+
+Json rows_of(const Flags& flags) {
+    const auto place = place_of(flags);
+    const auto zone = Zone::parse(flags.zone);
+    Json rows = Json::array();
+    if (!flags.time.empty()) {
+        const auto written = parse_instant(flags.time);
+        auto utc = resolve(written, zone, place.longitude_rad);
+        if (zone.kind() == ZoneKind::solar_true && !written.offset_s) utc = utc_from_true_solar(utc);
+        rows.push_back(json_of(sun_moment(place, zone, utc)));
+        return rows;
+    }
+    if (flags.from.empty())
+        throw Error(Cause::usage, "no time", "command line", "give --time T, or --from DAY with --to DAY and --step");
+    const auto from = date_of(flags.from, "--from");
+    const auto to = flags.to.empty() ? from : date_of(flags.to, "--to");
+    if (to < from) throw Error(Cause::usage, flags.to + " is before " + flags.from, "--to");
+    const double step_s = flags.step.empty() ? seconds_per_day : step_of(flags.step);
+    constexpr double most_rows = 1e6;
+    if (static_cast<double>(days_from_civil(to) - days_from_civil(from) + 1) * seconds_per_day / step_s > most_rows)
+        throw Error(Cause::usage, "more than a million rows", "--step", "take a longer step or fewer days");
+    constexpr double light_step_s = 600;
+    if (step_s == seconds_per_day)
+        for (const auto& day : sun_days(place, zone, from, to, light_step_s)) rows.push_back(json_of(day));
+    else
+        for (const auto& moment : sun_moments(place, zone, from, to, step_s)) rows.push_back(json_of(moment));
+    return rows;
+}
+
+}  // namespace
+
+void add_sun(CLI::App& app) {
+    auto flags = std::make_shared<Flags>();
+    auto* command = app.add_subcommand("sun", "Sun position and clear-sky light at a place: an instant, or a table of days or steps");
+    command->add_option("--at", flags->at, "Place in degrees, north and east positive")->type_name("LAT,LON")->required();
+    auto* time = command->add_option("--time", flags->time, "One instant: 2025-06-21T12:00-07:00, or without offset in --zone")->type_name("T");
+    command->add_option("--from", flags->from, "First day of a table")->type_name("DAY")->excludes(time);
+    command->add_option("--to", flags->to, "Last day, included [that of --from]")->type_name("DAY")->excludes(time);
+    command->add_option("--step", flags->step, "Step of the table: 10 min, 1 h, 1 d [1 d: a row a day with sunrise and totals]")->type_name("STEP")->excludes(time);
+    command->add_option("--zone", flags->zone, "UTC, an offset, an IANA name, solar-mean or solar-true [UTC]")->type_name("ZONE");
+    command->add_option("--height", flags->height, "Height of the place in metres [0]")->type_name("M");
+    command->add_option("--turbidity", flags->turbidity, "Linke turbidity of the clear sky [3]")->type_name("TL");
+    auto* csv = command->add_flag("--csv", flags->csv, "As CSV");
+    command->add_flag("--json", flags->json, "As JSON: an array of objects, units in the names")->excludes(csv);
+    command->footer("Times are printed in UTC. Sunrise and sunset are of the sun's centre on a flat horizon, without refraction.\n"
+                    "beam_w_m2 is on a plane facing the sun, direct_mj_m2 and the rest on the horizontal.\n"
+                    "Example: sunbudget sun --at 40,-105 --time 2025-06-21T12:00-07:00\n"
+                    "         sunbudget sun --at 40,-105 --from 2025-01-01 --to 2025-12-31 --csv");
+    command->callback([flags] {
+        const auto rows = rows_of(*flags);
+        const auto text = flags->format() == Format::json ? rows.dump(2) + "\n"
+                          : flags->format() == Format::csv ? csv_of(rows)
+                                                           : text_of_rows(rows);
+        std::fwrite(text.data(), 1, text.size(), stdout);
+    });
+}
+
+}  // namespace sunbudget
