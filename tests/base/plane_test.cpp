@@ -20,3 +20,16 @@ TEST_CASE("Plane: may be empty", "[base][edge]") {
     CHECK(Plane<float>().empty());
     CHECK(Plane<float>(0, 4).empty());
 }
+
+TEST_CASE("Plane: a large plane's memory serves the next one of its size, filled anew", "[base]") {
+    const float* first = nullptr;
+    {
+        Plane<float> plane(512, 512, 3.0f);
+        first = plane.data();
+    }
+    const Plane<float> again(512, 512, 5.0f);
+    CHECK(again.data() == first);
+    CHECK(again.at(511, 511) == 5.0f);
+    Plane<float> moved = Plane<float>(600, 600, 1.0f);
+    CHECK(moved.at(599, 599) == 1.0f);
+}

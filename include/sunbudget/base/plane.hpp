@@ -4,11 +4,20 @@
 #include <cassert>
 #include <cstddef>
 #include <memory>
-#include <new>
 #include <span>
 #include <type_traits>
 
 namespace sunbudget {
+
+namespace detail {
+
+/// Memory for the rows of planes, on 64-byte borders. Large pieces come from the system directly and
+/// are kept for the next plane of that size, up to a limit: the heap would scatter them among small
+/// pieces and never give them back.
+[[nodiscard]] void* take_plane_memory(std::size_t bytes);
+void give_plane_memory_back(void* memory, std::size_t bytes) noexcept;
+
+}  // namespace detail
 
 /// A window of pixels: `column` and `row` of its first pixel, and its size.
 struct Window {
@@ -33,7 +42,8 @@ class Plane {
         stride_ = (static_cast<std::size_t>(width) + per_line - 1) / per_line * per_line;
         const std::size_t count = stride_ * static_cast<std::size_t>(height);
         if (count == 0) return;
-        data_.reset(static_cast<T*>(::operator new(count * sizeof(T), std::align_val_t{alignment})));
+        const std::size_t bytes = count * sizeof(T);
+        data_ = std::unique_ptr<T[], Free>(static_cast<T*>(detail::take_plane_memory(bytes)), Free{bytes});
         std::fill_n(data_.get(), count, fill);
     }
 
@@ -64,7 +74,8 @@ class Plane {
   private:
     static constexpr std::size_t alignment = 64;
     struct Free {
-        void operator()(T* p) const noexcept { ::operator delete(p, std::align_val_t{alignment}); }
+        std::size_t bytes = 0;
+        void operator()(T* p) const noexcept { detail::give_plane_memory_back(p, bytes); }
     };
     std::unique_ptr<T[], Free> data_;
     std::size_t stride_ = 0;
