@@ -76,6 +76,11 @@ void BandReader::read_codes(const Window& window, Plane<std::int32_t>& out) {
     read_pieces<double>(window, out);
 }
 
+std::span<const std::uint8_t> BandReader::bytes(const Window& inside) {
+    fetch(*band_, stored_window(inside), bytes_);
+    return bytes_;
+}
+
 /// Cuts the window into pieces that lie on the raster, one for each turn round the globe.
 template <typename Stored, typename Value>
 void BandReader::read_pieces(const Window& window, Plane<Value>& out) {
@@ -133,7 +138,7 @@ void BandReader::read_inside(const Window& inside, int to_column, int to_row, Pl
     }();
     const Window stored = stored_window(inside);
     fetch(*band_, stored, values);
-    if (mask_ != nullptr) fetch(*mask_, stored, mask_values_);
+    if (mask_ != nullptr) fetch(*mask_, stored, bytes_);
     const auto width = static_cast<std::size_t>(inside.width);
     for (int r = 0; r < inside.height; ++r) {
         const int stored_row = south_up_ ? inside.height - 1 - r : r;
@@ -141,7 +146,7 @@ void BandReader::read_inside(const Window& inside, int to_column, int to_row, Pl
         auto row = out.row(to_row + r).subspan(static_cast<std::size_t>(to_column), width);
         for (std::size_t c = 0; c < width; ++c) {
             const std::size_t from = first + (mirrored_ ? width - 1 - c : c);
-            const bool masked = mask_ != nullptr && mask_values_[from] == 0;
+            const bool masked = mask_ != nullptr && bytes_[from] == 0;
             if (!masked && !is_nodata(values[from])) convert(values[from], row[c]);
         }
     }

@@ -21,6 +21,14 @@ class BandReader {
     /// Codes, `no_code` for none.
     void read_codes(const Window& window, Plane<std::int32_t>& out);
 
+    /// Whether `bytes` may be asked for: unsigned bytes without a mask.
+    [[nodiscard]] bool holds_bytes() const noexcept {
+        return info_.type == PixelType::u8 && mask_ == nullptr;
+    }
+    /// The pixels of a window inside the raster as stored, in any order, nodata included; valid
+    /// until the next call.
+    [[nodiscard]] std::span<const std::uint8_t> bytes(const Window& inside);
+
     [[nodiscard]] const RasterInfo& info() const noexcept { return info_; }
     [[nodiscard]] std::uint64_t infinities() const noexcept { return infinities_; }
 
@@ -52,7 +60,7 @@ class BandReader {
     std::vector<float> floats_;
     std::vector<double> doubles_;
     std::vector<std::int32_t> integers_;
-    std::vector<std::uint8_t> mask_values_;
+    std::vector<std::uint8_t> bytes_;  // the mask, or a band of bytes
 };
 
 }  // namespace sunbudget

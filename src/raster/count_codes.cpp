@@ -25,7 +25,21 @@ class Tally {
                 ++others_[code];
         }
     }
-    void add_to(CodeCounts& all) const {
+    /// Four tables in turn, so that a run of one code does not wait for its own last count.
+    void add(std::span<const std::uint8_t> bytes) {
+        std::size_t i = 0;
+        for (; i + 4 <= bytes.size(); i += 4)
+            for (std::size_t k = 0; k < 4; ++k) ++byte_tables_[k][bytes[i + k]];
+        for (; i < bytes.size(); ++i) ++byte_tables_[0][bytes[i]];
+    }
+    void add_to(CodeCounts& all, std::optional<double> nodata) const {
+        for (std::size_t code = 0; code < 256; ++code) {
+            std::uint64_t count = 0;
+            for (const auto& table : byte_tables_) count += table[code];
+            if (count == 0) continue;
+            const bool none = nodata && *nodata == static_cast<double>(code);
+            (none ? all.without_code : all.counts[static_cast<std::int32_t>(code)]) += count;
+        }
         for (std::size_t code = 0; code < table_.size(); ++code)
             if (table_[code] > 0) all.counts[static_cast<std::int32_t>(code)] += table_[code];
         for (const auto& [code, count] : others_)
@@ -34,6 +48,7 @@ class Tally {
 
   private:
     static constexpr std::int32_t table_size = 65536;
+    std::array<std::array<std::uint64_t, 256>, 4> byte_tables_{};
     std::vector<std::uint64_t> table_ = std::vector<std::uint64_t>(table_size);
     std::unordered_map<std::int32_t, std::uint64_t> others_;
 };
@@ -106,11 +121,12 @@ CodeCounts count_in(const Source& source, int threads, const std::vector<Window>
     parallel_for(windows.size(), threads, [&](std::size_t index, int thread) {
         auto& worker = workers[static_cast<std::size_t>(thread)];
         if (!worker.band) worker.band.emplace(source.info(), source.nodata(), Scaling{}, 0);
+        if (worker.band->holds_bytes()) return worker.tally.add(worker.band->bytes(windows[index]));
         worker.band->read_codes(windows[index], worker.codes);
         for (int r = 0; r < worker.codes.height(); ++r) worker.tally.add(worker.codes.row(r));
     });
     CodeCounts all;
-    for (const auto& worker : workers) worker.tally.add_to(all);
+    for (const auto& worker : workers) worker.tally.add_to(all, source.nodata());
     return all;
 }
 

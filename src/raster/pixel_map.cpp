@@ -64,64 +64,69 @@ void PixelMap::exact(std::span<double> column, std::span<double> row) const {
     }
 }
 
-PlacedWindow PixelMap::place(const Window& window) const {
-    PlacedWindow placed{
-        Plane<double>(window.width, window.height), Plane<double>(window.width, window.height),
-        Plane<float>(window.width, window.height), Plane<float>(window.width, window.height)};
-    for (long row = floor_to_cell(window.row); row < window.row + window.height;
-         row += place_cell_px)
-        for (long column = floor_to_cell(window.column); column < window.column + window.width;
-             column += place_cell_px)
-            place_cell(column, row, window, placed);
-    return placed;
-}
-
-void PixelMap::place_cell(long first_column, long first_row, const Window& window,
-                          PlacedWindow& placed) const {
-    std::array<double, 9> x{}, y{};
+PixelMap::Cell PixelMap::cell(long first_column, long first_row) const {
+    Cell cell;
+    cell.column = first_column;
+    cell.row = first_row;
+    auto& x = cell.x;
+    auto& y = cell.y;
     for (std::size_t i = 0; i < probes.size(); ++i) {
         x[i] = static_cast<double>(first_column) + probes[i][0] * place_cell_px;
         y[i] = static_cast<double>(first_row) + probes[i][1] * place_cell_px;
     }
     exact(x, y);
-    const bool smooth = interpolates(x) && interpolates(y);
-
-    // Steps a pixel, from one side of the cell to the other; across the back of the globe the
-    // columns jump by a turn.
-    const auto step = [this](double from, double to, bool columns) {
-        double d = to - from;
-        if (columns && turn_columns_) d -= *turn_columns_ * std::round(d / *turn_columns_);
-        return d / place_cell_px;
-    };
-    const auto extent = [](double along, double across) {
-        const double sides = std::hypot(along, across);
-        return std::isfinite(sides) ? static_cast<float>(std::max(1.0, sides)) : 1.0f;
+    cell.smooth = interpolates(x) && interpolates(y);
+    // Steps a pixel, from one side of the cell to the other; behind the globe columns jump a turn.
+    const auto columns = [this](double from, double to) {
+        const double d = to - from;
+        return turn_columns_ ? d - *turn_columns_ * std::round(d / *turn_columns_) : d;
     };
     // The axis-parallel box with the same spread along each axis as the pixel's outline has.
-    const float wide = extent(step(x[5], x[7], true), step(x[4], x[6], true));
-    const float high = extent(step(y[5], y[7], false), step(y[4], y[6], false));
+    const auto extent = [](double along, double across) {
+        const double side = std::hypot(along, across) / place_cell_px;
+        return std::isfinite(side) ? static_cast<float>(std::max(1.0, side)) : 1.0f;
+    };
+    cell.wide = extent(columns(x[5], x[7]), columns(x[4], x[6]));
+    cell.high = extent(y[7] - y[5], y[6] - y[4]);
+    return cell;
+}
 
-    const long last_column = std::min(first_column + place_cell_px, window.column + window.width);
-    const long last_row = std::min(first_row + place_cell_px, window.row + window.height);
-    for (long row = std::max(first_row, window.row); row < last_row; ++row)
-        for (long column = std::max(first_column, window.column); column < last_column; ++column) {
+std::array<double, 2> PixelMap::middle_of(const Cell& cell, long column, long row) const {
+    const double c = static_cast<double>(column) + 0.5, r = static_cast<double>(row) + 0.5;
+    if (cell.smooth) {
+        const double u = (c - static_cast<double>(cell.column)) / place_cell_px;
+        const double v = (r - static_cast<double>(cell.row)) / place_cell_px;
+        return {between(cell.x, u, v), between(cell.y, u, v)};
+    }
+    std::array<double, 1> x{c}, y{r};
+    exact(x, y);
+    return {x[0], y[0]};
+}
+
+void PixelMap::fill(const Cell& cell, const Window& window, PlacedWindow& placed) const {
+    const long last_column = std::min(cell.column + place_cell_px, window.column + window.width);
+    const long last_row = std::min(cell.row + place_cell_px, window.row + window.height);
+    for (long row = std::max(cell.row, window.row); row < last_row; ++row)
+        for (long column = std::max(cell.column, window.column); column < last_column; ++column) {
             const int c = static_cast<int>(column - window.column);
             const int r = static_cast<int>(row - window.row);
-            double& to_column = placed.column.at(c, r);
-            double& to_row = placed.row.at(c, r);
-            if (smooth) {
-                const double u = (static_cast<double>(column - first_column) + 0.5) / place_cell_px;
-                const double v = (static_cast<double>(row - first_row) + 0.5) / place_cell_px;
-                to_column = between(x, u, v);
-                to_row = between(y, u, v);
-            } else {
-                to_column = static_cast<double>(column) + 0.5;
-                to_row = static_cast<double>(row) + 0.5;
-                exact({&to_column, 1}, {&to_row, 1});
-            }
-            placed.columns_wide.at(c, r) = wide;
-            placed.rows_high.at(c, r) = high;
+            const auto [x, y] = middle_of(cell, column, row);
+            placed.column.at(c, r) = x;
+            placed.row.at(c, r) = y;
+            placed.columns_wide.at(c, r) = cell.wide;
+            placed.rows_high.at(c, r) = cell.high;
         }
+}
+
+PlacedWindow PixelMap::place(const Window& window) const {
+    const int width = window.width, height = window.height;
+    PlacedWindow placed{Plane<double>(width, height), Plane<double>(width, height),
+                        Plane<float>(width, height), Plane<float>(width, height)};
+    for (long row = floor_to_cell(window.row); row < window.row + height; row += place_cell_px)
+        for (long column = floor_to_cell(window.column); column < window.column + width;
+             column += place_cell_px)
+            fill(cell(column, row), window, placed);
+    return placed;
 }
 
 }  // namespace sunbudget

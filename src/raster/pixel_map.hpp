@@ -1,5 +1,6 @@
 #pragma once
 
+#include <array>
 #include <optional>
 #include <span>
 #include <vector>
@@ -41,8 +42,20 @@ class PixelMap {
     [[nodiscard]] const Grid& target() const noexcept { return target_; }
 
   private:
-    void place_cell(long first_column, long first_row, const Window& window,
-                    PlacedWindow& placed) const;
+    /// A square of the target's lattice with the exact places of its corners, sides' middles and
+    /// centre in the source.
+    struct Cell {
+        long column = 0;
+        long row = 0;
+        std::array<double, 9> x{};
+        std::array<double, 9> y{};
+        bool smooth = false;  ///< may be interpolated
+        float wide = 1;
+        float high = 1;
+    };
+    [[nodiscard]] Cell cell(long first_column, long first_row) const;
+    [[nodiscard]] std::array<double, 2> middle_of(const Cell& cell, long column, long row) const;
+    void fill(const Cell& cell, const Window& window, PlacedWindow& placed) const;
 
     Grid target_;
     Grid source_;

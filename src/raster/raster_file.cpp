@@ -146,15 +146,13 @@ void place(GDALDataset& dataset, RasterInfo& info) {
 
 std::optional<double> declared_nodata(GDALRasterBand& band) {
     int has = 0;
-    if (band.GetRasterDataType() == GDT_Int64) {
-        const auto value = band.GetNoDataValueAsInt64(&has);
-        return has != 0 ? std::optional(static_cast<double>(value)) : std::nullopt;
-    }
-    if (band.GetRasterDataType() == GDT_UInt64) {
-        const auto value = band.GetNoDataValueAsUInt64(&has);
-        return has != 0 ? std::optional(static_cast<double>(value)) : std::nullopt;
-    }
-    const double value = band.GetNoDataValue(&has);
+    double value = 0;
+    if (band.GetRasterDataType() == GDT_Int64)
+        value = static_cast<double>(band.GetNoDataValueAsInt64(&has));
+    else if (band.GetRasterDataType() == GDT_UInt64)
+        value = static_cast<double>(band.GetNoDataValueAsUInt64(&has));
+    // GDAL 3.6 does not pass the two on where overviews are off.
+    if (has == 0) value = band.GetNoDataValue(&has);
     return has != 0 ? std::optional(value) : std::nullopt;
 }
 
@@ -264,7 +262,7 @@ void check_size(GDALDataset& dataset, const RasterInfo& info) {
     if (width * height > most_pixels || info.bands > most_bands)
         refuse(info.name,
                "it claims " + shortest(width) + " x " + shortest(height) + " pixels in " +
-                   std::to_string(info.bands) + " bands",
+                   std::to_string(info.bands) + (info.bands == 1 ? " band" : " bands"),
                "more than 1e12 pixels or 65536 bands are not read; cut it first");
 }
 

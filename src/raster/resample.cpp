@@ -10,7 +10,7 @@ namespace sunbudget {
 namespace {
 
 /// Most source pixels held at once; a single target pixel may still need more.
-constexpr double most_source_pixels = 4e6;
+constexpr double most_source_pixels = 1 << 19;
 
 /// Middles this near to a border between source pixels lie on it, and belong to the pixel after it:
 /// else rounding noise would choose.

@@ -38,15 +38,16 @@ Grid square_grid(int width, int height, double west, double north, double cell,
     return {width, height, {west, cell, 0, north, 0, -cell}, crs_wkt_of(crs)};
 }
 
-fs::path make_raster(const fs::path& path, const MadeRaster& raster) {
+namespace {
+
+GDALDataset* created(const fs::path& path, const MadeRaster& raster, int bands) {
     auto* driver = GetGDALDriverManager()->GetDriverByName("GTiff");
     std::vector<const char*> options;
     for (const auto& option : raster.options) options.push_back(option.c_str());
     options.push_back(nullptr);
-    CPLSetThreadLocalConfigOption("GDAL_TIFF_INTERNAL_MASK", "YES");
-    auto* made = driver->Create(
-        path.c_str(), raster.grid.width, raster.grid.height, static_cast<int>(raster.bands.size()),
-        GDALGetDataTypeByName(raster.type.c_str()), const_cast<char**>(options.data()));
+    auto* made = driver->Create(path.c_str(), raster.grid.width, raster.grid.height, bands,
+                                GDALGetDataTypeByName(raster.type.c_str()),
+                                const_cast<char**>(options.data()));
     if (made == nullptr) throw std::runtime_error("cannot make " + path.string());
     auto affine = raster.grid.affine;
     made->SetGeoTransform(affine.data());
@@ -54,9 +55,31 @@ fs::path make_raster(const fs::path& path, const MadeRaster& raster) {
     for (const auto& [key, value, domain] : raster.metadata)
         made->SetMetadataItem(key.c_str(), value.c_str(),
                               domain.empty() ? nullptr : domain.c_str());
+    return made;
+}
+
+void set_nodata(GDALRasterBand& band, double nodata) {
+    if (band.GetRasterDataType() == GDT_Int64)
+        band.SetNoDataValueAsInt64(static_cast<std::int64_t>(nodata));
+    else if (band.GetRasterDataType() == GDT_UInt64)
+        band.SetNoDataValueAsUInt64(static_cast<std::uint64_t>(nodata));
+    else
+        band.SetNoDataValue(nodata);
+}
+
+}  // namespace
+
+fs::path make_empty_raster(const fs::path& path, const MadeRaster& raster) {
+    GDALClose(created(path, raster, 1));
+    return path;
+}
+
+fs::path make_raster(const fs::path& path, const MadeRaster& raster) {
+    CPLSetThreadLocalConfigOption("GDAL_TIFF_INTERNAL_MASK", "YES");
+    auto* made = created(path, raster, static_cast<int>(raster.bands.size()));
     for (int b = 1; b <= made->GetRasterCount(); ++b) {
         auto& band = *made->GetRasterBand(b);
-        if (raster.nodata) band.SetNoDataValue(*raster.nodata);
+        if (raster.nodata) set_nodata(band, *raster.nodata);
         if (raster.scaling) {
             band.SetScale(raster.scaling->scale);
             band.SetOffset(raster.scaling->offset);
@@ -120,7 +143,7 @@ Plane<float> warped_by_gdal(const fs::path& from, const Grid& target,
     const auto box = bounds_of(target);
     const auto command = fmt::format(
         "gdalwarp -q -ot Float32 -dstnodata nan -ovr NONE -t_srs {} -te {} {} {} {} -ts {} {} {} "
-        "'{}' {}",
+        "'{}' {} 2> /dev/null",
         crs.native(), box.west, box.south, box.east, box.north, target.width, target.height,
         arguments, from.native(), to.native());
     if (std::system(command.c_str()) != 0) throw std::runtime_error("failed: " + command);

@@ -22,15 +22,20 @@ namespace sunbudget::test {
 struct MadeRaster {
     Grid grid;
     std::string type = "Float32";
-    std::vector<std::function<double(int column, int row)>> bands;
-    std::optional<double> nodata;
-    std::optional<Scaling> scaling;
-    std::vector<std::string> options;                                         // "TILED=YES"
-    std::vector<std::tuple<std::string, std::string, std::string>> metadata;  // key, value, domain
-    std::function<bool(int column, int row)> mask;                            // internal mask band
+    std::vector<std::function<double(int column, int row)>> bands{};
+    std::optional<double> nodata{};
+    std::optional<Scaling> scaling{};
+    std::vector<std::string> options{};  // "TILED=YES"
+    std::vector<std::tuple<std::string, std::string, std::string>>
+        metadata{};                                   // key, value, domain
+    std::function<bool(int column, int row)> mask{};  // internal mask band
 };
 /// Writes it and gives the path back.
 std::filesystem::path make_raster(const std::filesystem::path& path, const MadeRaster& raster);
+
+/// Only its header: no block is written.
+std::filesystem::path make_empty_raster(const std::filesystem::path& path,
+                                        const MadeRaster& raster);
 
 /// A file of the real data's awkward folder.
 [[nodiscard]] std::filesystem::path awkward(const std::string& name);
