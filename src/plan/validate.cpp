@@ -121,8 +121,9 @@ void Validator::list(Node& node, const Form& form) {
         refuse(node, "found " + described(node) + ", expected " + expected(form));
     for (auto& item : node.children) {
         value(item, form.items);
+        if (!form.distinct || item.bad) continue;
         const auto first = std::ranges::find(node.children, item.text, &Node::text);
-        if (form.distinct && !item.bad && &*first != &item)
+        if (&*first != &item)
             refuse(item, "\"" + item.text + "\" is listed twice", "keep one of the two");
     }
     node.bad = mistakes_.count() > problems_before;

@@ -218,6 +218,9 @@ TEST_CASE("no plan takes long to refuse", "[plan][edge]") {
     CHECK(seconds_to_refuse(alias_bomb()) < fast_s);
     CHECK(seconds_to_refuse(small_plan + "sky: {turbidity: [" + repeated("x,", 90'000) + "x]}") <
           fast_s);
+    std::string names;
+    for (int i = 0; i < 90'000; ++i) names += "n" + std::to_string(i) + ",";
+    CHECK(seconds_to_refuse("outputs: {layers: [" + names + "albedo]}") < fast_s);
     CHECK(seconds_to_refuse("outputs: {layers: [" + repeated("albedo,", 90'000) + "albedo]}") <
           fast_s);
 }
