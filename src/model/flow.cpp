@@ -4,6 +4,7 @@
 #include <cmath>
 #include <optional>
 
+#include "sunbudget/model/surface.hpp"
 #include "sunbudget/physics/shortwave.hpp"
 #include "sunbudget/raster/pyramid.hpp"
 #include "sunbudget/tables/quality.hpp"
@@ -11,8 +12,6 @@
 namespace sunbudget {
 
 namespace {
-
-constexpr float nan_value = std::numeric_limits<float>::quiet_NaN();
 
 std::optional<double> constant_height(const Run& run) {
     const auto* height = std::get_if<double>(&run.elevation_m);
@@ -48,24 +47,17 @@ struct Flow::State {
     const Run& run;
     LightField* light;
     int thread;
-    std::optional<Reader> surface_reader;
+    SurfaceReader surface;
     std::optional<Reader> elevation_reader;
 
-    Plane<std::int32_t> codes;
     Plane<float> albedo, heights_m, direct, diffuse, stored;
     Plane<std::uint16_t> flags;
     std::map<std::uint16_t, std::uint64_t> flag_counts;
 
-    State(const Run& r, LightField* l, int t) : run(r), light(l), thread(t) {
-        if (const auto* cover = std::get_if<CoverSurface>(&run.surface)) surface_reader.emplace(cover->codes);
-        if (const auto* given = std::get_if<GivenSurface>(&run.surface))
-            if (const auto* raster = std::get_if<Source>(&given->albedo)) surface_reader.emplace(*raster);
+    State(const Run& r, LightField* l, int t) : run(r), light(l), thread(t), surface(r) {
         if (const auto* raster = std::get_if<Source>(&run.elevation_m)) elevation_reader.emplace(*raster);
     }
 
-    void read_cover(const CoverSurface& cover, const Window& window);
-    void read_given(const GivenSurface& given, const Window& window);
-    void read_surface(const Window& window);
     void read_heights(const Window& window);
     void flag_missing_light();
     void count_flags();
@@ -73,56 +65,6 @@ struct Flow::State {
     void put_light_layers(std::size_t band, const Window& window, Sink& sink);
     void store_row(const OutputLayer& layer, int row);
 };
-
-/// Albedo and the flags that say where it came from.
-void Flow::State::read_surface(const Window& window) {
-    resize(albedo, window);
-    resize(flags, window);
-    flags.fill(quality::no_surface);
-    if (const auto* cover = std::get_if<CoverSurface>(&run.surface)) read_cover(*cover, window);
-    if (const auto* given = std::get_if<GivenSurface>(&run.surface)) read_given(*given, window);
-}
-
-void Flow::State::read_cover(const CoverSurface& cover, const Window& window) {
-    if (cover.averaged) {
-        surface_reader->read_values(window, cover.albedo, albedo);
-        for (int r = 0; r < window.height; ++r)
-            std::transform(albedo.row(r).begin(), albedo.row(r).end(), flags.row(r).begin(), [](float a) {
-                return std::isnan(a) ? quality::no_surface : quality::class_table;
-            });
-        return;
-    }
-    surface_reader->read_codes(window, codes);
-    for (int r = 0; r < window.height; ++r) {
-        const auto code = codes.row(r);
-        const auto a = albedo.row(r);
-        const auto flag = flags.row(r);
-        for (std::size_t i = 0; i < code.size(); ++i) {
-            a[i] = cover.albedo.of(code[i]);
-            const float source = cover.quality.of(code[i]);
-            flag[i] = std::isnan(source) ? quality::no_surface : static_cast<std::uint16_t>(source);
-        }
-    }
-}
-
-void Flow::State::read_given(const GivenSurface& given, const Window& window) {
-    if (const auto* value = std::get_if<double>(&given.albedo))
-        albedo.fill(static_cast<float>(*value));
-    else
-        surface_reader->read(window, albedo);
-    for (int r = 0; r < window.height; ++r) {
-        const auto a = albedo.row(r);
-        const auto flag = flags.row(r);
-        for (std::size_t i = 0; i < a.size(); ++i) {
-            if (std::isnan(a[i])) continue;
-            flag[i] = quality::given_albedo;
-            if (a[i] >= 0.0f && a[i] <= 1.0f) continue;
-            // No surface reflects less than nothing or more than all: not a value, and said so.
-            a[i] = nan_value;
-            flag[i] = quality::no_surface | quality::out_of_range;
-        }
-    }
-}
 
 void Flow::State::read_heights(const Window& window) {
     if (!elevation_reader) return;
@@ -203,7 +145,7 @@ Flow::Flow(Flow&&) noexcept = default;
 
 void Flow::compute(const Window& window, Sink& sink) {
     auto& s = *state_;
-    s.read_surface(window);
+    s.surface.read(window, s.albedo, s.flags);
     s.read_heights(window);
     if (s.light == nullptr) {
         s.put_surface_layers(window, sink);
@@ -230,10 +172,7 @@ void Flow::compute(const Window& window, Sink& sink) {
 const std::map<std::uint16_t, std::uint64_t>& Flow::flags() const { return state_->flag_counts; }
 
 std::uint64_t Flow::infinities() const {
-    std::uint64_t count = 0;
-    if (state_->surface_reader) count += state_->surface_reader->infinities();
-    if (state_->elevation_reader) count += state_->elevation_reader->infinities();
-    return count;
+    return state_->surface.infinities() + (state_->elevation_reader ? state_->elevation_reader->infinities() : 0);
 }
 
 }  // namespace sunbudget
