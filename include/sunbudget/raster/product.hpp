@@ -49,6 +49,8 @@ struct Product {
 /// (Landsat's ..._MTL.txt or ..._MTL.json, Sentinel-2's MTD_MSIL2A.xml), which is looked for beside
 /// the file unless it is named, and by items of the file's own metadata. Any other file is `unknown`.
 ///
+/// Call gdal_setup first, as for every use of GDAL: it keeps the XML reader from printing.
+///
 /// in      file      need not exist
 ///         metadata  named by the user, or none
 ///         items     RasterInfo::metadata
