@@ -3,6 +3,7 @@
 #include <gdal_frmts.h>
 #include <gdal_priv.h>
 
+#include <algorithm>
 #include <array>
 #include <fstream>
 #include <system_error>
@@ -95,31 +96,42 @@ std::string gdal_name(const RasterName& name) {
     return text.starts_with("http") ? "/vsicurl/" + text : text;
 }
 
-DatasetPtr open_with(const std::string& name, std::vector<const char*> drivers) {
+/// Without overviews, since a file's tags and sidecars can name any other file as its overview.
+constexpr const char* no_overviews = "OVERVIEW_LEVEL=NONE";
+
+DatasetPtr open_with(const std::string& name, std::vector<const char*> drivers,
+                     const char* option) {
     drivers.push_back(nullptr);
-    const std::array<const char*, 2> options{"OVERVIEW_LEVEL=NONE", nullptr};
+    const std::array<const char*, 2> options{option, nullptr};
     return DatasetPtr(GDALDataset::Open(name.c_str(), GDAL_OF_RASTER | GDAL_OF_READONLY,
                                         drivers.data(), options.data(), nullptr));
 }
 
-/// A netCDF file of several variables opens without bands and lists them.
-DatasetPtr open_variable(const RasterName& name, DatasetPtr file) {
-    if (file->GetRasterCount() > 0) return file;
-    char** list = file->GetMetadata("SUBDATASETS");
+/// The variables of a netCDF file that has several. Such a file has no bands of its own, and GDAL
+/// opens it only with overviews left on; its pixels are never read this way.
+std::vector<std::string> netcdf_variables(const RasterName& name) {
+    const auto file = open_with(gdal_name(name), {"netCDF"}, nullptr);
     std::vector<std::string> variables;
+    if (file == nullptr || file->GetRasterCount() > 0) return variables;
+    char** list = file->GetMetadata("SUBDATASETS");
     for (int i = 0; list != nullptr && list[i] != nullptr; ++i) {
         const std::string item(list[i]);
-        if (item.find("_NAME=") == std::string::npos) continue;
-        const auto variable = item.substr(item.rfind(':') + 1);
-        variables.push_back(variable);
-        if (variable != name.band_name || name.path.native().find('"') != std::string::npos)
-            continue;
-        auto opened = open_with("NETCDF:\"" + gdal_name(name) + "\":" + variable, {"netCDF"});
-        if (opened != nullptr) return opened;
+        if (item.find("_NAME=") != std::string::npos)
+            variables.push_back(item.substr(item.rfind(':') + 1));
     }
-    throw Error(Cause::input, "the file holds several rasters", name.path.native(),
-                variables.empty() ? "extract one of them with gdal_translate"
-                                  : "name one as PATH:NAME; it has " + joined(variables, ", "));
+    return variables;
+}
+
+DatasetPtr open_variable(const RasterName& name) {
+    const auto variables = netcdf_variables(name);
+    if (variables.empty()) return nullptr;
+    const bool known =
+        std::find(variables.begin(), variables.end(), name.band_name) != variables.end();
+    if (!known || name.path.native().find('"') != std::string::npos)
+        throw Error(Cause::input, "the file holds several rasters", text_of(name),
+                    "name one as PATH:NAME; it has " + joined(variables, ", "));
+    return open_with("NETCDF:\"" + gdal_name(name) + "\":" + name.band_name, {"netCDF"},
+                     no_overviews);
 }
 
 /// Decoded from the last blocks back: a cut file lacks those.
@@ -162,9 +174,10 @@ DatasetPtr open_dataset(const RasterName& name) {
         drivers = {"VRT"};
     }
     const GdalMessages messages;
-    auto dataset = open_with(gdal_name(name), std::move(drivers));
+    auto dataset = open_with(gdal_name(name), std::move(drivers), no_overviews);
+    if (dataset == nullptr) dataset = open_variable(name);
     if (dataset == nullptr) throw_unreadable(name.path, messages);
-    return open_variable(name, std::move(dataset));
+    return dataset;
 }
 
 void refuse_cut_file(GDALRasterBand& band, const std::filesystem::path& path) {

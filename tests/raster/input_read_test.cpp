@@ -312,3 +312,45 @@ TEST_CASE("inspect: complex numbers are refused", "[raster][edge]") {
         {.grid = square_grid(2, 2, 0, 100, 10), .type = "CFloat32", .bands = {counting(2)}});
     CHECK_THAT(error_text([&] { (void)inspect({file}); }), Contains("numbers of type CFloat32"));
 }
+
+TEST_CASE("inspect: the formats let in read the same pixels on the same ground",
+          "[raster][differential]") {
+    const TemporaryFolder folder;
+    const auto tiff =
+        make_raster(folder.path() / "a.tif", {.grid = square_grid(30, 20, 500000, 5300000, 10),
+                                              .type = "Int16",
+                                              .bands = {counting(30)}});
+    const auto reference = read_all(spec_of(tiff));
+    const auto grid = inspect({tiff}).grid;
+    const auto [format, name] = GENERATE(table<std::string, std::string>({
+        {"HFA", "b.img"},
+        {"AAIGrid", "b.asc"},
+        {"EHdr", "b.bil"},
+        {"ENVI", "b.dat"},
+        {"netCDF", "b.nc"},
+        {"JP2OpenJPEG -co QUALITY=100 -co REVERSIBLE=YES", "b.jp2"},
+        {"VRT", "b.vrt"},
+    }));
+    CAPTURE(format);
+    const auto file = folder.path() / name;
+    const auto command =
+        "gdal_translate -q -of " + format + ' ' + tiff.string() + ' ' + file.string();
+    REQUIRE(std::system(command.c_str()) == 0);
+    CHECK(same_grid(inspect({file}).grid, grid));
+    CHECK(same_bits(read_all(spec_of(file), grid), reference));
+}
+
+TEST_CASE("inspect: a netCDF variable is chosen by its name", "[raster][edge]") {
+    const TemporaryFolder folder;
+    const auto tiff = make_raster(
+        folder.path() / "a.tif",
+        {.grid = square_grid(6, 4, 10, 50, 0.5, "EPSG:4326"), .bands = {counting(6), counting(7)}});
+    const auto file = folder.path() / "b.nc";
+    const auto command = "gdal_translate -q -of netCDF " + tiff.string() + ' ' + file.string();
+    REQUIRE(std::system(command.c_str()) == 0);
+    CHECK_THAT(error_text([&] { (void)inspect({file}); }),
+               Contains("several rasters") && Contains("Band1, Band2"));
+    CHECK(read_all(spec_of(file.string() + ":Band2")).at(1, 2) == 15);
+    CHECK_THAT(error_text([&] { (void)inspect(raster_name(file.string() + ":Band9")); }),
+               Contains("it has Band1, Band2"));
+}

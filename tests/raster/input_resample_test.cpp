@@ -5,6 +5,7 @@
 #include <numbers>
 
 #include "input_support.hpp"
+#include "sunbudget/base/parallel.hpp"
 #include "sunbudget/raster/grid_build.hpp"
 #include "sunbudget/raster/source.hpp"
 
@@ -264,6 +265,31 @@ TEST_CASE("resampling: bits do not depend on the window", "[raster][differential
         CHECK(same_bits(in_windows<float>(target, width, height, heights), whole_heights));
         CHECK(same_bits(in_windows<std::int32_t>(target, width, height, codes), whole_codes));
         CHECK(same_bits(in_windows<float>(coarse_grid, width, height, means), whole_means));
+    }
+}
+
+TEST_CASE("resampling: bits do not depend on the threads", "[raster][differential]") {
+    SUNBUDGET_NEEDS_DATA();
+    const auto target = zion_part();
+    const auto source = Source::open(zion("srtm.tif"), target);
+    const auto alone = read_all(zion("srtm.tif"), target);
+    constexpr int side = 64, columns = 5, rows = 5;
+    for (const int threads : {2, 4}) {
+        std::vector<Plane<float>> parts(columns * rows);
+        std::vector<std::optional<Reader>> readers(static_cast<std::size_t>(threads));
+        parallel_for(parts.size(), threads, [&](std::size_t i, int thread) {
+            auto& reader = readers[static_cast<std::size_t>(thread)];
+            if (!reader) reader.emplace(source);
+            const int index = static_cast<int>(i);
+            reader->read({index % columns * side, index / columns * side, side, side}, parts[i]);
+        });
+        long unequal = 0;
+        for (int r = 0; r < target.height; ++r)
+            for (int c = 0; c < target.width; ++c) {
+                const auto part = static_cast<std::size_t>(r / side * columns + c / side);
+                unequal += parts[part].at(c % side, r % side) != alone.at(c, r);
+            }
+        CHECK(unequal == 0);
     }
 }
 
