@@ -78,11 +78,9 @@ constexpr std::array driver_table{
 /// sidecars (GDAL_PAM_ENABLED) or swap axes (OSR_DEFAULT_AXIS_MAPPING_STRATEGY); new ones come with
 /// every version. Where the data files of GDAL and PROJ lie stays the machine's business.
 bool changes_results(std::string_view name) {
-    constexpr std::array families{
-        "GDAL_",       "GTIFF_",    "GTiff_",  "OGR_",     "OSR_",     "CPL_",
-        "VSI_",        "VRT_",      "HFA_",    "AAIGRID_", "JP2",      "USE_TILE_AS_BLOCK",
-        "EHDR_",       "OPJ_",      "DTED_",   "TIFF_",    "USGSDEM_", "PROJ_NETWORK",
-        "CENTER_LONG", "THRESHOLD", "USE_RRD", "ESRI_",    "SRTM"};
+    constexpr std::array families{"GDAL_", "GTIFF_",   "GTiff_", "TIFF_", "OGR_",
+                                  "OSR_",  "CPL_",     "VSI_",   "VRT_",  "HFA_",
+                                  "OPJ_",  "AAIGRID_", "USE_",   "ESRI_", "PROJ_NETWORK"};
     if (name == "GDAL_DATA") return false;
     return std::any_of(families.begin(), families.end(),
                        [name](const char* family) { return name.starts_with(family); });
