@@ -4,9 +4,12 @@
 #include <atomic>
 #include <chrono>
 #include <cmath>
+#include <cstdlib>
+#include <filesystem>
 #include <mutex>
 #include <optional>
 
+#include "sunbudget/base/error.hpp"
 #include "sunbudget/base/parallel.hpp"
 #include "sunbudget/model/flow.hpp"
 #include "sunbudget/raster/pyramid.hpp"
@@ -50,6 +53,21 @@ class CountingSink : public Sink {
     int tile_;
 };
 
+/// A folder for the coarse levels of the elevation, gone with the object.
+struct ScratchFolder {
+    std::filesystem::path path;
+    ScratchFolder() {
+        std::string pattern = (std::filesystem::temp_directory_path() / "sunbudget-XXXXXX").string();
+        if (mkdtemp(pattern.data()) == nullptr)
+            throw Error(Cause::output, "cannot make a folder for scratch files", pattern, "point TMPDIR to a place with room");
+        path = pattern;
+    }
+    ~ScratchFolder() {
+        std::error_code ignored;
+        std::filesystem::remove_all(path, ignored);
+    }
+};
+
 /// At most `count` of the grid's windows, evenly spread.
 std::vector<Window> spread(const Run& run, int unit, int count) {
     const int columns = (run.grid.width + unit - 1) / unit, rows = (run.grid.height + unit - 1) / unit;
@@ -71,7 +89,8 @@ std::vector<Window> spread(const Run& run, int unit, int count) {
 Estimate estimate(const Run& run, const EngineOptions& options, int windows) {
     const int unit = std::max(run.tile, block_px);
     const auto sample = spread(run, unit, windows);
-    const SharedLight light(run, options.threads);
+    const ScratchFolder scratch;
+    const SharedLight light(run, options.threads, scratch.path);
     std::vector<std::optional<Flow>> flows(static_cast<std::size_t>(options.threads));
     std::mutex mutex;
     double first_s = 0, again_s = 0, pixels = 0;

@@ -149,7 +149,7 @@ Execution execute(const Run& run, const EngineOptions& options, const OutputSet&
     for (const auto& layer : run.layers)
         layers.push_back(std::make_unique<LayerWork>(layer, outputs.staged(layer.file.name + ".spool"), block_count));
 
-    const SharedLight light(run, options.threads);
+    const SharedLight light(run, options.threads, outputs.staged("").parent_path());
     std::vector<std::optional<Flow>> flows(static_cast<std::size_t>(options.threads));
     std::vector<TileSink> sinks(flows.size(), TileSink(layers, run.tile, block_columns));
     const auto units = units_in_order(run.grid.width, run.grid.height, unit_px(run),

@@ -2,9 +2,16 @@
 
 #include <algorithm>
 #include <cmath>
+#include <functional>
+#include <numbers>
 #include <optional>
 
+#include "sunbudget/base/units.hpp"
+#include "sunbudget/model/neighbourhood.hpp"
+#include "sunbudget/model/shading.hpp"
 #include "sunbudget/model/surface.hpp"
+#include "sunbudget/physics/gradient.hpp"
+#include "sunbudget/physics/inclined_light.hpp"
 #include "sunbudget/physics/shortwave.hpp"
 #include "sunbudget/raster/pyramid.hpp"
 #include "sunbudget/tables/quality.hpp"
@@ -13,9 +20,11 @@ namespace sunbudget {
 
 namespace {
 
+/// Bands whose planes are held at once: more would cost memory, fewer would cost horizons.
+constexpr std::size_t bands_at_once = 12;
+
 std::optional<double> constant_height(const Run& run) {
-    const auto* height = std::get_if<double>(&run.elevation_m);
-    return height == nullptr ? std::nullopt : std::optional<double>(*height);
+    return run.terrain ? std::nullopt : std::optional<double>(run.constant_height_m);
 }
 
 /// Windows of the lattice's blocks inside a window that starts on the lattice.
@@ -35,50 +44,103 @@ void resize(Plane<T>& plane, const Window& window) {
         plane = Plane<T>(window.width, window.height);
 }
 
+/// The part of a plane's row that lies over a window inside the plane's frame.
+std::span<float> over(Plane<float>& plane, const Window& frame, const Window& window, int row) {
+    return plane.row(static_cast<int>(window.row - frame.row) + row)
+        .subspan(static_cast<std::size_t>(window.column - frame.column), static_cast<std::size_t>(window.width));
+}
+
+bool wants(const Run& run, std::initializer_list<LayerId> ids) {
+    return std::any_of(run.layers.begin(), run.layers.end(), [&](const OutputLayer& layer) {
+        return std::find(ids.begin(), ids.end(), layer.layer->id) != ids.end();
+    });
+}
+
+/// What a run asks of its terrain.
+struct Needs {
+    bool suns, sky_view, reflected;
+    explicit Needs(const Run& run)
+        : suns(wants(run, {LayerId::insolation, LayerId::direct, LayerId::diffuse, LayerId::net_shortwave, LayerId::sunlit_hours})),
+          sky_view(wants(run, {LayerId::insolation, LayerId::diffuse, LayerId::reflected, LayerId::net_shortwave, LayerId::sky_view})),
+          reflected(wants(run, {LayerId::insolation, LayerId::reflected, LayerId::net_shortwave})) {}
+};
+
+/// Light of one band on the surface.
+struct BandPlanes {
+    Plane<float> direct, diffuse, reflected, hours;
+};
+
 }  // namespace
 
-SharedLight::SharedLight(const Run& run, int threads) {
+SharedLight::SharedLight(const Run& run, int threads, const std::filesystem::path& scratch_folder) {
     if (run.times)
-        field_ = std::make_unique<LightField>(*run.times, run.sky, run.grid, threads, constant_height(run));
+        field_ = std::make_unique<LightField>(*run.times, run.sky, run.grid, threads, constant_height(run), run.terrain.has_value());
+    if (run.terrain) terrain_ = std::make_unique<SharedTerrain>(*run.terrain, run.grid, scratch_folder);
 }
 SharedLight::~SharedLight() = default;
 
 struct Flow::State {
     const Run& run;
-    LightField* light;
+    const SharedLight& shared;
     int thread;
+    Needs needs;
     SurfaceReader surface;
-    std::optional<Reader> elevation_reader;
+    std::optional<Locator> own_locator;  ///< where no light field has one
+    std::optional<BlockShader> shader;
 
-    Plane<float> albedo, heights_m, direct, diffuse, stored;
+    Window window;
+    Plane<float> albedo, heights_m, stored;
     Plane<std::uint16_t> flags;
+    Plane<float> sky_view, slope_deg, aspect_deg, albedo_seen;
+    std::vector<LightField::Block> light_blocks;
+    std::vector<BandPlanes> bands;
+    std::array<Plane<float>, OpenLight::values> open;
     std::map<std::uint16_t, std::uint64_t> flag_counts;
 
-    State(const Run& r, LightField* l, int t) : run(r), light(l), thread(t), surface(r) {
-        if (const auto* raster = std::get_if<Source>(&run.elevation_m)) elevation_reader.emplace(*raster);
+    State(const Run& r, const SharedLight& s, int t) : run(r), shared(s), thread(t), needs(r), surface(r) {
+        if (!run.terrain) return;
+        if (shared.field() == nullptr) own_locator.emplace(run.grid);
+        shader.emplace(*shared.terrain(), shared.field(), locator(), thread);
+    }
+    [[nodiscard]] const Locator& locator() const {
+        return own_locator ? *own_locator : shared.field()->locator(thread);
     }
 
-    void read_heights(const Window& window);
-    void flag_missing_light();
+    void read_heights();
+    void prepare_light();
+    void flag_missing_light(const Plane<float>& light);
     void count_flags();
-    void put_surface_layers(const Window& window, Sink& sink);
-    void put_light_layers(std::size_t band, const Window& window, Sink& sink);
-    void store_row(const OutputLayer& layer, int row);
+    void flat_bands(std::size_t first, std::size_t count);
+    void terrain_bands(std::size_t first, std::size_t count);
+    void shade_block(const Window& block, std::size_t first, std::size_t count);
+    void keep_ground(const ShadedBlock& part);
+    void fill_open(std::size_t block, std::size_t band);
+    void compose(const ShadedBlock& part, std::size_t band);
+    void see_albedo();
+    void put_surface_layers(Sink& sink);
+    void put_light_layers(std::size_t band, const BandPlanes& planes, Sink& sink);
+    void put_plane(std::size_t n, std::size_t band, const std::function<void(int, std::span<float>)>& row, Sink& sink);
 };
 
-void Flow::State::read_heights(const Window& window) {
-    if (!elevation_reader) return;
-    elevation_reader->read(window, heights_m);
+void Flow::State::read_heights() {
+    if (!run.terrain) return;
+    shader->heights(window, heights_m);
     for (int r = 0; r < window.height; ++r)
         for (std::size_t i = 0; i < heights_m.row(r).size(); ++i)
             if (std::isnan(heights_m.row(r)[i])) flags.row(r)[i] |= quality::no_elevation;
 }
 
+void Flow::State::prepare_light() {
+    light_blocks.clear();
+    if (shared.field() == nullptr) return;
+    for (const auto& block : blocks_of(window)) light_blocks.push_back(shared.field()->prepare(block, window, heights_m, thread));
+}
+
 /// Light is missing where the height is, or where the projection has no place on Earth.
-void Flow::State::flag_missing_light() {
-    for (int r = 0; r < direct.height(); ++r)
-        for (std::size_t i = 0; i < direct.row(r).size(); ++i)
-            if (std::isnan(direct.row(r)[i]) && (flags.row(r)[i] & quality::no_elevation) == 0)
+void Flow::State::flag_missing_light(const Plane<float>& light) {
+    for (int r = 0; r < light.height(); ++r)
+        for (std::size_t i = 0; i < light.row(r).size(); ++i)
+            if (std::isnan(light.row(r)[i]) && (flags.row(r)[i] & quality::no_elevation) == 0)
                 flags.row(r)[i] |= quality::outside_projection;
 }
 
@@ -94,85 +156,205 @@ void Flow::State::count_flags() {
     }
 }
 
-void Flow::State::put_surface_layers(const Window& window, Sink& sink) {
-    count_flags();
-    for (std::size_t n = 0; n < run.layers.size(); ++n) {
-        const auto& layer = run.layers[n];
-        if (layer.layer->id == LayerId::albedo) {
-            resize(stored, window);
-            for (int r = 0; r < window.height; ++r) {
-                std::copy(albedo.row(r).begin(), albedo.row(r).end(), stored.row(r).begin());
-                round_row(stored.row(r), layer.file.quantum);
-            }
-            sink.put(n, 0, window, stored);
-        } else if (layer.layer->id == LayerId::quality) {
-            sink.put(n, 0, window, flags);
+void Flow::State::flat_bands(std::size_t first, std::size_t count) {
+    for (std::size_t i = 0; i < count; ++i) {
+        resize(bands[i].direct, window);
+        resize(bands[i].diffuse, window);
+        for (const auto& block : light_blocks) {
+            shared.field()->fill(block, first + i, LightField::Part::beam_up, heights_m, bands[i].direct);
+            shared.field()->fill(block, first + i, LightField::Part::diffuse, heights_m, bands[i].diffuse);
         }
     }
 }
 
-void Flow::State::store_row(const OutputLayer& layer, int r) {
-    const auto beam = direct.row(r), sky = diffuse.row(r);
-    const auto out = stored.row(r);
-    switch (layer.layer->id) {
-        case LayerId::direct: std::copy(beam.begin(), beam.end(), out.begin()); break;
-        case LayerId::diffuse: std::copy(sky.begin(), sky.end(), out.begin()); break;
-        case LayerId::insolation: std::transform(beam.begin(), beam.end(), sky.begin(), out.begin(), std::plus<>()); break;
-        case LayerId::net_shortwave: absorbed_shortwave(albedo.row(r), beam, albedo.row(r), sky, out); break;
-        default: break;
+void Flow::State::terrain_bands(std::size_t first, std::size_t count) {
+    for (std::size_t i = 0; i < count; ++i)
+        for (auto* plane : {&bands[i].direct, &bands[i].diffuse, &bands[i].reflected, &bands[i].hours}) {
+            resize(*plane, window);
+            plane->fill(std::numeric_limits<float>::quiet_NaN());
+        }
+    if (first == 0) {
+        for (auto* plane : {&sky_view, &slope_deg, &aspect_deg}) {
+            resize(*plane, window);
+            plane->fill(std::numeric_limits<float>::quiet_NaN());
+        }
+        see_albedo();
+    }
+    const auto blocks = blocks_of(window);
+    for (std::size_t b = 0; b < blocks.size(); ++b) {
+        std::vector<ShadedBlock> parts;
+        for (const auto& part : steady_parts(blocks[b], locator())) {
+            parts.emplace_back();
+            shader->shade(part, first, needs.suns ? count : 0, needs.sky_view && first == 0, parts.back());
+            if (parts.back().located && first == 0) keep_ground(parts.back());
+        }
+        for (std::size_t band = 0; band < count && shared.field() != nullptr; ++band) {
+            fill_open(b, first + band);
+            for (const auto& part : parts)
+                if (part.located) compose(part, band);
+        }
     }
 }
 
-void Flow::State::put_light_layers(std::size_t band, const Window& window, Sink& sink) {
+/// Slope, aspect and sky view of a part, for their layers and for every band.
+void Flow::State::keep_ground(const ShadedBlock& part) {
+    for (int r = 0; r < part.block.height; ++r) {
+        const auto slope = over(slope_deg, window, part.block, r), aspect = over(aspect_deg, window, part.block, r);
+        slope_and_aspect(part.east.row(r), part.north.row(r), part.up.row(r), slope, aspect);
+        for (auto& value : slope) value *= static_cast<float>(180 / std::numbers::pi);
+        for (auto& value : aspect) value *= static_cast<float>(180 / std::numbers::pi);
+        if (!part.sky_view.empty()) {
+            const auto from = part.sky_view.row(r);
+            std::copy(from.begin(), from.end(), over(sky_view, window, part.block, r).begin());
+        }
+    }
+}
+
+/// Open ground's light of one band over one block of the lattice.
+void Flow::State::fill_open(std::size_t block, std::size_t band) {
+    for (std::size_t part = 0; part < open.size(); ++part) {
+        resize(open[part], window);
+        shared.field()->fill(light_blocks[block], band, static_cast<LightField::Part>(part), heights_m, open[part]);
+    }
+}
+
+/// Open light and shadows brought together: the band's light on the part's inclined surface.
+void Flow::State::compose(const ShadedBlock& part, std::size_t band) {
+    using Part = LightField::Part;
+    std::vector<float> circumsolar(static_cast<std::size_t>(part.block.width));
+    auto& out = bands[band];
+    const auto open_row = [&](Part p, int r) { return over(open[static_cast<std::size_t>(p)], window, part.block, r); };
+    const auto sunlit = [&](std::size_t kind, Part east, Part north, Part up, int r) {
+        const std::size_t i = sun_kinds * band + kind;
+        const auto& whole = part.whole[i];
+        return SunlightRow{part.light[i].row(r), part.hours[i].row(r), whole.east, whole.north, whole.up, whole.hours,
+                           open_row(east, r), open_row(north, r), open_row(up, r)};
+    };
+    for (int r = 0; r < part.block.height; ++r) {
+        const NormalRow normal{part.east.row(r), part.north.row(r), part.up.row(r)};
+        if (needs.suns) {
+            sunlight(sunlit(0, Part::beam_east, Part::beam_north, Part::beam_up, r), normal, over(out.direct, window, part.block, r));
+            sunlight(sunlit(1, Part::circumsolar_east, Part::circumsolar_north, Part::circumsolar_up, r), normal, circumsolar);
+            time_in_sun(part.hours[sun_kinds * band].row(r), part.whole[sun_kinds * band].hours, open_row(Part::sunlit_h_a_day, r),
+                        over(out.hours, window, part.block, r));
+        }
+        if (!needs.sky_view) continue;
+        const auto view = over(sky_view, window, part.block, r);
+        if (needs.suns)
+            skylight({view, open_row(Part::diffuse, r), open_row(Part::horizon, r), circumsolar, open_row(Part::circumsolar_up, r)},
+                     part.up.row(r), over(out.diffuse, window, part.block, r));
+        if (needs.reflected)
+            light_from_ground(view, over(albedo_seen, window, part.block, r), open_row(Part::beam_up, r), open_row(Part::diffuse, r),
+                              over(out.reflected, window, part.block, r));
+    }
+}
+
+/// The mean albedo around each pixel, block by block so that its bits hang on the lattice alone.
+void Flow::State::see_albedo() {
+    if (!needs.reflected) return;
+    resize(albedo_seen, window);
+    if (!run.has_surface()) {
+        albedo_seen.fill(static_cast<float>(albedo_where_unknown));
+        return;
+    }
+    Plane<float> around;
+    Plane<std::uint16_t> unused;
+    for (const auto& block : blocks_of(window)) {
+        surface.read(patch_window(block), around, unused);
+        const auto mean = mean_around(around, near_steps);
+        for (int r = 0; r < block.height; ++r)
+            std::copy(mean.row(r).begin(), mean.row(r).end(), over(albedo_seen, window, block, r).begin());
+    }
+}
+
+void Flow::State::put_plane(std::size_t n, std::size_t band, const std::function<void(int, std::span<float>)>& row, Sink& sink) {
+    resize(stored, window);
+    for (int r = 0; r < window.height; ++r) {
+        row(r, stored.row(r));
+        round_row(stored.row(r), run.layers[n].file.quantum);
+    }
+    sink.put(n, band, window, stored);
+}
+
+void Flow::State::put_surface_layers(Sink& sink) {
+    const auto copied = [](const Plane<float>& plane) {
+        return [&plane](int r, std::span<float> out) { std::copy(plane.row(r).begin(), plane.row(r).end(), out.begin()); };
+    };
+    for (std::size_t n = 0; n < run.layers.size(); ++n) switch (run.layers[n].layer->id) {
+            case LayerId::albedo: put_plane(n, 0, copied(albedo), sink); break;
+            case LayerId::slope: put_plane(n, 0, copied(slope_deg), sink); break;
+            case LayerId::aspect: put_plane(n, 0, copied(aspect_deg), sink); break;
+            case LayerId::sky_view: put_plane(n, 0, copied(sky_view), sink); break;
+            case LayerId::quality: sink.put(n, 0, window, flags); break;
+            default: break;
+        }
+}
+
+void Flow::State::put_light_layers(std::size_t band, const BandPlanes& planes, Sink& sink) {
+    Plane<float> from_around = planes.diffuse.empty() ? Plane<float>() : Plane<float>(window.width, window.height);
     for (std::size_t n = 0; n < run.layers.size(); ++n) {
         const auto& layer = run.layers[n];
         if (!layer.layer->needs_sun) continue;
-        resize(stored, window);
         const auto factor = static_cast<float>(layer.factors[band]);
-        for (int r = 0; r < window.height; ++r) {
-            store_row(layer, r);
-            for (auto& value : stored.row(r)) value *= factor;
-            round_row(stored.row(r), layer.file.quantum);
-        }
-        sink.put(n, band, window, stored);
+        put_plane(n, band, [&](int r, std::span<float> out) {
+            const auto beam = planes.direct.row(r), sky = planes.diffuse.row(r);
+            std::span<const float> rest = sky;
+            if (run.terrain && (layer.layer->id == LayerId::insolation || layer.layer->id == LayerId::net_shortwave)) {
+                const auto sum = from_around.row(r);
+                std::transform(sky.begin(), sky.end(), planes.reflected.row(r).begin(), sum.begin(), std::plus<>());
+                rest = sum;
+            }
+            switch (layer.layer->id) {
+                case LayerId::direct: std::copy(beam.begin(), beam.end(), out.begin()); break;
+                case LayerId::diffuse: std::copy(sky.begin(), sky.end(), out.begin()); break;
+                case LayerId::reflected: std::copy(planes.reflected.row(r).begin(), planes.reflected.row(r).end(), out.begin()); break;
+                case LayerId::sunlit_hours: std::copy(planes.hours.row(r).begin(), planes.hours.row(r).end(), out.begin()); break;
+                case LayerId::insolation: std::transform(beam.begin(), beam.end(), rest.begin(), out.begin(), std::plus<>()); break;
+                case LayerId::net_shortwave: absorbed_shortwave(albedo.row(r), beam, albedo.row(r), rest, out); break;
+                default: break;
+            }
+            for (auto& value : out) value *= factor;
+        }, sink);
     }
 }
 
-Flow::Flow(const Run& run, const SharedLight& light, int thread)
-    : state_(std::make_unique<State>(run, light.field(), thread)) {}
+Flow::Flow(const Run& run, const SharedLight& light, int thread) : state_(std::make_unique<State>(run, light, thread)) {}
 Flow::~Flow() = default;
 Flow::Flow(Flow&&) noexcept = default;
 
 void Flow::compute(const Window& window, Sink& sink) {
     auto& s = *state_;
+    s.window = window;
     s.surface.read(window, s.albedo, s.flags);
-    s.read_heights(window);
-    if (s.light == nullptr) {
-        s.put_surface_layers(window, sink);
+    s.read_heights();
+    s.prepare_light();
+    const std::size_t all = s.run.times ? s.run.times->bands() : 0;
+    s.bands.resize(std::min(all, bands_at_once));
+    if (all == 0) {
+        if (s.run.terrain) s.terrain_bands(0, 0);
+        s.count_flags();
+        s.put_surface_layers(sink);
         return;
     }
-    std::vector<LightField::Block> blocks;
-    for (const auto& block : blocks_of(window))
-        blocks.push_back(s.light->prepare(block, window, s.heights_m, s.thread));
-    resize(s.direct, window);
-    resize(s.diffuse, window);
-    for (std::size_t band = 0; band < s.run.times->bands(); ++band) {
-        for (const auto& block : blocks) {
-            LightField::fill_direct(block, band, s.heights_m, s.direct);
-            LightField::fill_diffuse(block, band, s.heights_m, s.diffuse);
+    for (std::size_t first = 0; first < all; first += bands_at_once) {
+        const std::size_t count = std::min(bands_at_once, all - first);
+        if (s.run.terrain)
+            s.terrain_bands(first, count);
+        else
+            s.flat_bands(first, count);
+        if (first == 0) {
+            s.flag_missing_light(s.run.terrain ? s.open[static_cast<std::size_t>(LightField::Part::beam_up)] : s.bands[0].direct);
+            s.count_flags();
+            s.put_surface_layers(sink);
         }
-        if (band == 0) {
-            s.flag_missing_light();
-            s.put_surface_layers(window, sink);
-        }
-        s.put_light_layers(band, window, sink);
+        for (std::size_t i = 0; i < count; ++i) s.put_light_layers(first + i, s.bands[i], sink);
     }
 }
 
 const std::map<std::uint16_t, std::uint64_t>& Flow::flags() const { return state_->flag_counts; }
 
 std::uint64_t Flow::infinities() const {
-    return state_->surface.infinities() + (state_->elevation_reader ? state_->elevation_reader->infinities() : 0);
+    return state_->surface.infinities() + (state_->shader ? state_->shader->infinities() : 0);
 }
 
 }  // namespace sunbudget

@@ -3,15 +3,14 @@
 #include <algorithm>
 #include <cmath>
 #include <limits>
+#include <numbers>
 #include <vector>
 
 #include "sunbudget/base/units.hpp"
 #include "sunbudget/physics/air_mass.hpp"
-#include "sunbudget/physics/clear_sky.hpp"
 #include "sunbudget/physics/integrate.hpp"
 #include "sunbudget/physics/sun.hpp"
 #include "sunbudget/physics/sun_place.hpp"
-#include "sunbudget/raster/locator.hpp"
 
 namespace sunbudget {
 
@@ -19,6 +18,53 @@ namespace {
 
 /// Far below the quantum of stored fluxes (1/16 W m-2) and of the sky's own uncertainty.
 constexpr double tolerance_w_m2 = 1.0 / 256;
+
+constexpr double sea_level_hpa = 1013.25;
+
+/// Rotation from Earth-fixed vectors to a place's east, north and up.
+struct LocalFrame {
+    EarthVector east, north, up;
+
+    LocalFrame(double latitude_rad, double longitude_rad)
+        : east{-std::sin(longitude_rad), std::cos(longitude_rad), 0},
+          north{-std::sin(latitude_rad) * std::cos(longitude_rad), -std::sin(latitude_rad) * std::sin(longitude_rad),
+                std::cos(latitude_rad)},
+          up(up_direction(latitude_rad, longitude_rad)) {}
+
+    /// Unit vector to the sun, its height lowered by parallax.
+    [[nodiscard]] std::array<double, 3> to(const SunState& sun) const {
+        const auto s = sun_direction(sun);
+        const double sine = with_parallax(dot(s, up), sun.distance_au);
+        const double e = dot(s, east), n = dot(s, north);
+        const double level = std::hypot(e, n);
+        const double scale = level > 0 ? std::sqrt(std::max(0.0, 1 - sine * sine)) / level : 0;
+        return {e * scale, n * scale, sine};
+    }
+};
+
+/// One lit moment of a band with its weight in the band's mean.
+struct LitMoment {
+    std::array<double, 3> to_sun;
+    double sine_begin, sine_end;  ///< true, at the step's two ends
+    double weight;                ///< share of the period: W m-2 times weight add up to its mean
+    SkyMoment sky;
+
+    [[nodiscard]] double sunlit_h_a_day() const { return 24 * weight; }
+};
+
+/// Sine of the elevation at which the sun appears.
+double apparent_sine(double true_sine, double pressure) {
+    const double elevation_rad = std::asin(std::clamp(true_sine, -1.0, 1.0));
+    return std::sin(elevation_rad + refraction(elevation_rad, sea_level_hpa * pressure));
+}
+
+std::array<double, 3> scaled(const std::array<double, 3>& v, double factor) {
+    return {v[0] * factor, v[1] * factor, v[2] * factor};
+}
+
+void add(std::array<double, 3>& sum, const std::array<double, 3>& v, double factor) {
+    for (std::size_t i = 0; i < 3; ++i) sum[i] += v[i] * factor;
+}
 
 }  // namespace
 
@@ -29,30 +75,33 @@ struct PointLight::Work {
 
     Work(const TimePlan& t, const Sky& s) : times(t), sky(s), track(t.earliest(), t.latest()) {}
 
-    [[nodiscard]] FlatLight instant(double latitude_rad, double longitude_rad, double pressure) const {
-        const auto sun = track.at(*times.instant);
-        const auto local = times.zone.local(*times.instant, longitude_rad);
-        const double sin_h = sin_elevation(sun, latitude_rad, longitude_rad);
-        const auto light = esra2000(extraterrestrial_normal(sun.distance_au), std::asin(sin_h),
-                                    sky.turbidity_of(local.date.month), pressure);
-        return {light.beam_normal_w_m2 * std::max(0.0, sin_h), light.diffuse_horizontal_w_m2};
-    }
-
-    [[nodiscard]] FlatLight period(const Period& period, double latitude_rad, double longitude_rad,
-                                   double pressure) const {
-        double direct_j_m2 = 0, diffuse_j_m2 = 0;
+    /// Calls visit(LitMoment) for every lit step of a band, in order.
+    template <typename Visit>
+    void visit(std::size_t band, double latitude_rad, double longitude_rad, double height_m, Visit&& visit) const {
+        const LocalFrame frame(latitude_rad, longitude_rad);
+        const double pressure = pressure_ratio(height_m);
+        if (times.instant) {
+            const auto sun = track.at(*times.instant);
+            const auto to_sun = frame.to(sun);
+            if (to_sun[2] <= 0) return;
+            const int month = times.zone.local(*times.instant, longitude_rad).date.month;
+            visit(LitMoment{to_sun, to_sun[2], to_sun[2], 1,
+                            sky_moment(sky, extraterrestrial_normal(sun.distance_au), std::asin(to_sun[2]), month, pressure)});
+            return;
+        }
+        const auto& period = times.periods[band];
         for (const auto& day : period.days) {
             const auto span = span_of(day, times.zone, longitude_rad);
-            const double turbidity = sky.turbidity_of(day.date.month);
-            const auto part = light_totals(
-                track, span.begin, span.end, times.step_s, latitude_rad, longitude_rad,
-                [&](UtcSeconds, double normal_w_m2, double elevation_rad) {
-                    return esra2000(normal_w_m2, elevation_rad, turbidity, pressure);
+            for_each_sunlit_step(
+                track, span.begin, span.end, times.step_s, latitude_rad, longitude_rad, [&](const SunSample& sample) {
+                    const auto to_sun = frame.to(sample.sun);
+                    const double begin = frame.to(track.at(sample.utc - sample.duration_s / 2))[2];
+                    const double end = frame.to(track.at(sample.utc + sample.duration_s / 2))[2];
+                    visit(LitMoment{to_sun, begin, end, sample.duration_s * day.weight / period.duration_s,
+                                    sky_moment(sky, extraterrestrial_normal(sample.sun.distance_au),
+                                               std::asin(to_sun[2]), day.date.month, pressure)});
                 });
-            direct_j_m2 += part.direct_j_m2;
-            diffuse_j_m2 += part.diffuse_j_m2;
         }
-        return {direct_j_m2 / period.duration_s, diffuse_j_m2 / period.duration_s};
     }
 };
 
@@ -62,20 +111,55 @@ PointLight::PointLight(PointLight&&) noexcept = default;
 
 std::size_t PointLight::bands() const { return work_->times.bands(); }
 
-FlatLight PointLight::at(std::size_t band, double latitude_rad, double longitude_rad, double height_m) const {
+std::size_t PointLight::most_suns(std::size_t first_band, std::size_t bands) const {
+    if (work_->times.instant) return 1;
+    constexpr double fewest_a_day = 32;  // for_each_sunlit_step cuts a day no coarser
+    double suns = 0;
+    for (std::size_t band = first_band; band < first_band + bands; ++band)
+        for (const auto& day : work_->times.periods[band].days)
+            suns += std::max(fewest_a_day, (day.end_s - day.begin_s) / work_->times.step_s);
+    return static_cast<std::size_t>(suns);
+}
+
+OpenLight PointLight::at(std::size_t band, double latitude_rad, double longitude_rad, double height_m) const {
+    OpenLight sum;
+    work_->visit(band, latitude_rad, longitude_rad, height_m, [&](const LitMoment& m) {
+        add(sum.beam_w_m2, m.to_sun, m.sky.beam_normal_w_m2 * m.weight);
+        add(sum.circumsolar_w_m2, m.to_sun, m.sky.parts.circumsolar_normal_w_m2 * m.weight);
+        sum.diffuse_w_m2 += m.sky.diffuse_w_m2 * m.weight;
+        sum.horizon_w_m2 += m.sky.parts.horizon_w_m2 * m.weight;
+        sum.sunlit_h_a_day += m.sunlit_h_a_day();
+    });
+    return sum;
+}
+
+SunPath PointLight::path(std::size_t band, double latitude_rad, double longitude_rad, double height_m) const {
+    SunPath path;
     const double pressure = pressure_ratio(height_m);
-    if (work_->times.instant) return work_->instant(latitude_rad, longitude_rad, pressure);
-    return work_->period(work_->times.periods[band], latitude_rad, longitude_rad, pressure);
+    work_->visit(band, latitude_rad, longitude_rad, height_m, [&](const LitMoment& m) {
+        const double begin = apparent_sine(m.sine_begin, pressure), end = apparent_sine(m.sine_end, pressure);
+        SunStep step{std::atan2(m.to_sun[0], m.to_sun[1]), std::min(begin, end), std::max(begin, end),
+                     scaled(m.to_sun, m.sky.beam_normal_w_m2 * m.weight), m.sunlit_h_a_day()};
+        if (step.azimuth_rad < 0) step.azimuth_rad += 2 * std::numbers::pi;
+        path.beam.push_back(step);
+        step.beam = scaled(m.to_sun, m.sky.parts.circumsolar_normal_w_m2 * m.weight);
+        path.circumsolar.push_back(step);
+    });
+    return path;
 }
 
 struct LightField::Work {
     PointLight light;
+    bool vectors;
     std::vector<Locator> locators;  // one a thread
     SmoothField field;
 
-    Work(const TimePlan& times, const Sky& sky, const Grid& grid, int threads, std::optional<double> height_m)
+    [[nodiscard]] std::size_t values_a_band() const { return vectors ? OpenLight::values : 2; }
+
+    Work(const TimePlan& times, const Sky& sky, const Grid& grid, int threads, std::optional<double> height_m, bool v)
         : light(times, sky),
-          field({grid.width, grid.height, 2 * times.bands(), tolerance_w_m2, height_m},
+          vectors(v),
+          field({grid.width, grid.height, (v ? OpenLight::values : 2) * times.bands(), tolerance_w_m2, height_m},
                 [this](double column, double row, double h, int thread, std::span<double> values) {
                     at_node(column, row, h, thread, values);
                 }) {
@@ -86,24 +170,44 @@ struct LightField::Work {
     void at_node(double column, double row, double height_m, int thread, std::span<double> values) const {
         // Nodes are pixel centres; the locator counts from the pixel's outer corner.
         const auto place = locators[static_cast<std::size_t>(thread)].at(column + 0.5, row + 0.5);
+        if (!place) {
+            std::fill(values.begin(), values.end(), std::numeric_limits<double>::quiet_NaN());
+            return;
+        }
         for (std::size_t band = 0; band < light.bands(); ++band) {
-            constexpr double nan = std::numeric_limits<double>::quiet_NaN();
-            const auto found = place ? light.at(band, place->latitude_rad, place->longitude_rad, height_m)
-                                     : FlatLight{nan, nan};
-            values[2 * band] = found.direct_w_m2;
-            values[2 * band + 1] = found.diffuse_w_m2;
+            const auto found = light.at(band, place->latitude_rad, place->longitude_rad, height_m);
+            double* to = values.data() + band * values_a_band();
+            if (!vectors) {
+                to[0] = found.direct_w_m2();
+                to[1] = found.diffuse_w_m2;
+                continue;
+            }
+            std::copy(found.beam_w_m2.begin(), found.beam_w_m2.end(), to);
+            std::copy(found.circumsolar_w_m2.begin(), found.circumsolar_w_m2.end(), to + 3);
+            to[6] = found.diffuse_w_m2;
+            to[7] = found.horizon_w_m2;
+            to[8] = found.sunlit_h_a_day;
         }
     }
 };
 
 LightField::LightField(const TimePlan& times, const Sky& sky, const Grid& grid, int threads,
-                       std::optional<double> constant_height_m)
-    : work_(std::make_unique<Work>(times, sky, grid, threads, constant_height_m)) {}
+                       std::optional<double> constant_height_m, bool vectors)
+    : work_(std::make_unique<Work>(times, sky, grid, threads, constant_height_m, vectors)) {}
 LightField::~LightField() = default;
 
 LightField::Block LightField::prepare(const Window& window, const Window& frame, const Plane<float>& heights_m,
                                       int thread) {
     return work_->field.prepare(window, frame, heights_m, thread);
 }
+
+void LightField::fill(const Block& block, std::size_t band, Part part, const Plane<float>& heights_m,
+                      Plane<float>& out) const {
+    const auto value = work_->vectors ? static_cast<std::size_t>(part) : part == Part::beam_up ? 0u : 1u;
+    block.fill(band * work_->values_a_band() + value, heights_m, out);
+}
+
+const PointLight& LightField::point() const { return work_->light; }
+const Locator& LightField::locator(int thread) const { return work_->locators[static_cast<std::size_t>(thread)]; }
 
 }  // namespace sunbudget

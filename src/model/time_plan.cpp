@@ -3,6 +3,7 @@
 #include <fmt/format.h>
 
 #include <algorithm>
+#include <array>
 #include <numbers>
 
 #include "sunbudget/base/error.hpp"
@@ -66,7 +67,7 @@ Period period_of(std::string name, const CivilDate& from, const CivilDate& end, 
     for (CivilDate day = from; day < end; day = next_day(day)) {
         const DayPart part{day, hours.begin_h * 3600, hours.end_h * 3600};
         const auto span = span_of(part, zone, 0);
-        period.duration_s += span.end - span.begin;
+        period.duration_s += (span.end - span.begin) * part.weight;
         period.days.push_back(part);
     }
     return period;
@@ -100,6 +101,23 @@ std::vector<Period> periods_of(CivilDate from, CivilDate to, Totals totals, Dail
         start = stop;
     }
     return periods;
+}
+
+Period with_mid_month_days(const Period& period) {
+    constexpr std::array mean_day{17, 16, 16, 15, 15, 11, 17, 16, 15, 15, 14, 10};
+    Period thinned{period.name, {}, period.duration_s};
+    for (const auto& day : period.days) {
+        const auto& date = day.date;
+        const bool same_month = !thinned.days.empty() && thinned.days.back().date.year == date.year &&
+                                thinned.days.back().date.month == date.month;
+        if (same_month) {
+            thinned.days.back().weight += day.weight;
+            continue;
+        }
+        thinned.days.push_back(day);
+        thinned.days.back().date.day = mean_day[static_cast<std::size_t>(date.month - 1)];
+    }
+    return thinned;
 }
 
 std::vector<Period> periods_of(const std::vector<NamedSpan>& spans, DailyWindow hours, const Zone& zone) {

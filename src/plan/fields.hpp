@@ -28,10 +28,17 @@ void visit_plan(P& plan, Visitor& v) {
             v.value("value", albedo.value);
         });
     });
-    v.map("terrain", [&] { v.value("elevation", plan.terrain.elevation); });
+    v.map("terrain", [&] {
+        v.value("elevation", plan.terrain.elevation);
+        v.value("unit", plan.terrain.unit);
+        v.value("slope_from", plan.terrain.slope_from);
+        v.value("directions", plan.terrain.directions);
+        v.value("reach", plan.terrain.reach);
+    });
     v.map("sky", [&] {
         v.value("model", plan.sky.model);
         v.value("turbidity", plan.sky.turbidity);
+        v.value("diffuse", plan.sky.diffuse);
     });
     v.map("time", [&] {
         v.value("at", plan.time.at);
@@ -41,6 +48,7 @@ void visit_plan(P& plan, Visitor& v) {
         v.value("hours", plan.time.hours);
         v.value("zone", plan.time.zone);
         v.value("totals", plan.time.totals);
+        v.value("days", plan.time.days);
     });
     v.map("outputs", [&] {
         v.value("directory", plan.outputs.directory);

@@ -90,11 +90,16 @@ class Typed {
         else
             get(node, value.emplace<PlanPath>());
     }
-    void get(const Node& node, std::variant<PlanRaster, PlanHeight>& value) const {
-        if (const auto height_m = read_quantity(node, ValueKind::length))
-            value = PlanHeight{*height_m};
-        else
-            get(node, value.emplace<PlanRaster>());
+    static void get(const Node& node, PlanLength& value) { value.m = *read_quantity(node, ValueKind::length); }
+    void get(const Node& node, std::variant<std::vector<PlanRaster>, PlanLength>& value) const {
+        if (node.shape == Node::Shape::scalar && read_quantity(node, ValueKind::length)) return get(node, value.emplace<PlanLength>());
+        auto& rasters = value.emplace<std::vector<PlanRaster>>();
+        if (node.shape == Node::Shape::scalar) return get(node, rasters.emplace_back());
+        for (const auto& item : node.children) get(item, rasters.emplace_back());
+    }
+    void get(const Node& node, std::variant<SlopeFrom, PlanPath>& value) const {
+        if (is_choice(node, "terrain.slope_from")) return get(node, value.emplace<SlopeFrom>());
+        get(node, value.emplace<PlanPath>());
     }
 
     static bool is_choice(const Node& node, const std::string& key) {
@@ -203,6 +208,9 @@ Plan with_defaults(Plan plan) {
     const PlanTime written = plan.time;
     DefaultFiller filler(folder_of(plan.file));
     visit_plan(plan, filler);
+    // How the ground is looked at belongs to an elevation raster.
+    const auto& elevation = plan.terrain.elevation;
+    if (!elevation || std::holds_alternative<PlanLength>(**elevation)) plan.terrain = {elevation, {}, {}, {}, {}};
     // Steps, days and totals belong to a period.
     if (!written.from) plan.time = written;
     return plan;

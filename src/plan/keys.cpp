@@ -106,9 +106,19 @@ Form surface_form() {
 
 Form terrain_form() {
     // From below the shore of the Dead Sea to above Everest.
+    const Form raster = of(ValueKind::raster);
     return map({{"elevation",
-                 {length(-500, 9000), of(ValueKind::raster)},
-                 "heights above sea level, unit from the file; or one height everywhere"}});
+                 {length(-500, 9000), raster, list(raster, 1)},
+                 "heights above sea level: a raster, several of which the first with a value counts, or one height everywhere"},
+                {"unit", {choice(height_unit_names)}, "of the rasters' heights; default: as the files say"},
+                {"slope_from",
+                 {choice(slope_from_names), path_beside_names()},
+                 "planes of the surface: of the elevation, level, or of another (bare-ground) raster; shadows are always the elevation's",
+                 "elevation"},
+                {"directions", {integer(8, 360)}, "in which horizons are looked for, a multiple of 4", "64"},
+                {"reach", {length(100, 100000)}, "how far a horizon is looked for", "20 km"}},
+               {needs("unit", {"elevation"}), needs("slope_from", {"elevation"}), needs("directions", {"elevation"}),
+                needs("reach", {"elevation"})});
 }
 
 // Range and default come from the model's own row.
@@ -121,7 +131,11 @@ Form sky_form() {
                 {"turbidity",
                  {one, list(one, 12, 12)},
                  turbidity.text + "; one number or one per month",
-                 shortest(turbidity.default_value.value())}});
+                 shortest(turbidity.default_value.value())},
+                {"diffuse",
+                 {choice(method_names("diffuse_sky"))},
+                 "how the sky's light is spread over the sky, for inclined ground",
+                 "hay-davies1980"}});
 }
 
 Form period_form() {
@@ -144,9 +158,13 @@ Form time_form() {
          {"totals",
           {choice(totals_names), list(period_form(), 1)},
           "one band for each of these periods",
-          "whole"}},
+          "whole"},
+         {"days",
+          {choice(day_names)},
+          "every day, or one day for each month weighted by the month's length (Klein 1977; not beyond 60 degrees)",
+          "all"}},
         {exactly_one({"at", "from"}), needs("from", {"to"}), needs("to", {"from"}),
-         needs("step", {"from"}), needs("hours", {"from"}), needs("totals", {"from"})});
+         needs("step", {"from"}), needs("hours", {"from"}), needs("totals", {"from"}), needs("days", {"from"})});
 }
 
 Form outputs_form() {

@@ -12,6 +12,9 @@ inline constexpr std::array<std::string_view, 2> like_names{"surface", "elevatio
 inline constexpr std::array<std::string_view, 5> totals_names{"whole", "day", "month", "season",
                                                               "year"};
 inline constexpr std::array<std::string_view, 2> format_names{"cog", "geotiff"};
+inline constexpr std::array<std::string_view, 3> height_unit_names{"m", "ft", "us-ft"};
+inline constexpr std::array<std::string_view, 2> slope_from_names{"elevation", "flat"};
+inline constexpr std::array<std::string_view, 2> day_names{"all", "mid-month"};
 
 constexpr const auto& names_for(LikeInput) {
     return like_names;
@@ -21,6 +24,15 @@ constexpr const auto& names_for(Totals) {
 }
 constexpr const auto& names_for(FileFormat) {
     return format_names;
+}
+constexpr const auto& names_for(HeightUnit) {
+    return height_unit_names;
+}
+constexpr const auto& names_for(SlopeFrom) {
+    return slope_from_names;
+}
+constexpr const auto& names_for(DayChoice) {
+    return day_names;
 }
 
 }  // namespace sunbudget

@@ -87,8 +87,8 @@ class Resolver {
         };
         const auto elevation = [&]() -> std::optional<std::pair<RasterName, Place>> {
             if (plan_.terrain.elevation)
-                if (const auto* raster = std::get_if<PlanRaster>(&**plan_.terrain.elevation))
-                    return std::pair{raster_of(*raster), plan_.terrain.elevation->place};
+                if (const auto* rasters = std::get_if<std::vector<PlanRaster>>(&**plan_.terrain.elevation))
+                    return std::pair{raster_of(rasters->front()), plan_.terrain.elevation->place};
             return std::nullopt;
         };
         if (!plan_.grid.like) return surface() ? surface() : elevation();
@@ -148,8 +148,11 @@ std::vector<std::pair<RasterName, Place>> read_rasters(const Plan& plan) {
     if (plan.surface.albedo && plan.surface.albedo->raster)
         rasters.emplace_back(raster_of(**plan.surface.albedo->raster), plan.surface.albedo->raster->place);
     if (plan.terrain.elevation)
-        if (const auto* raster = std::get_if<PlanRaster>(&**plan.terrain.elevation))
-            rasters.emplace_back(raster_of(*raster), plan.terrain.elevation->place);
+        if (const auto* elevation = std::get_if<std::vector<PlanRaster>>(&**plan.terrain.elevation))
+            for (const auto& raster : *elevation) rasters.emplace_back(raster_of(raster), plan.terrain.elevation->place);
+    if (plan.terrain.slope_from)
+        if (const auto* path = std::get_if<PlanPath>(&**plan.terrain.slope_from))
+            rasters.emplace_back(RasterName{path->file, 1, {}}, plan.terrain.slope_from->place);
     return rasters;
 }
 

@@ -4,6 +4,7 @@
 
 #include "resolve_parts.hpp"
 #include "sunbudget/base/text.hpp"
+#include "sunbudget/base/units.hpp"
 #include "sunbudget/raster/finish.hpp"
 #include "sunbudget/tables/quality.hpp"
 #include "sunbudget/base/version.hpp"
@@ -17,8 +18,9 @@ std::string period_text(const Period& period, const TimePlan& times) {
     return first + "/" + last + " " + times.zone.name();
 }
 
-/// From W m-2, mean over the band's period, to the stored unit.
-double factor_of(OutputUnit unit, double period_s) {
+/// From what the flow gives (W m-2, mean over the band's period; hours for each 24) to the stored unit.
+double factor_of(const Layer& layer, OutputUnit unit, double period_s) {
+    if (layer.quantity == Quantity::hours) return period_s / seconds_per_day;
     return unit == OutputUnit::w_m2 ? 1.0 : period_s / joules_of(unit);
 }
 
@@ -32,7 +34,8 @@ BandText band_of(const Layer& layer, const Run& run, std::size_t band) {
         const auto& period = run.times->periods[band];
         text.description = period.name;
         text.metadata["period"] = period_text(period, *run.times);
-        text.metadata["cell_methods"] = run.unit == OutputUnit::w_m2 ? "time: mean" : "time: sum";
+        const bool mean = layer.quantity == Quantity::radiation && run.unit == OutputUnit::w_m2;
+        text.metadata["cell_methods"] = mean ? "time: mean" : "time: sum";
     }
     if (const auto& name = standard_name_of(layer, run.unit); !name.empty()) text.metadata["standard_name"] = name;
     return text;
@@ -50,7 +53,9 @@ std::map<std::string, std::string> file_metadata(const Layer& layer, const Run& 
         items[fmt::format("method_{:02}", i + 1)] =
             fmt::format("{} {}: {}", run.methods[i]->family, run.methods[i]->name, run.methods[i]->source);
     if (layer.needs_sun) {
-        items["per_area"] = "square metre of horizontal ground: the ground is taken as flat and open";
+        if (layer.quantity == Quantity::radiation)
+            items["per_area"] = run.terrain ? "square metre of the inclined surface"
+                                            : "square metre of horizontal ground: the ground is taken as level and open";
         if (!run.times->instant) items["time_step"] = fmt::format("{} s", run.times->step_s);
     }
     return items;
@@ -77,7 +82,7 @@ OutputLayer output_layer(const Layer& layer, const Run& run) {
     for (std::size_t band = 0; band < bands; ++band) {
         const double period_s = layer.needs_sun && !run.times->instant ? run.times->periods[band].duration_s : 1;
         file.bands.push_back(band_of(layer, run, band));
-        out.factors.push_back(layer.needs_sun ? factor_of(run.unit, period_s) : 1.0);
+        out.factors.push_back(layer.needs_sun ? factor_of(layer, run.unit, period_s) : 1.0);
         quantum = std::min(quantum, quantum_of(layer, run.unit, period_s));
     }
     file.metadata = file_metadata(layer, run);

@@ -1,11 +1,14 @@
 #include <fmt/format.h>
 
 #include <algorithm>
+#include <array>
+#include <cmath>
 
 #include "resolve_parts.hpp"
 #include "sunbudget/base/text.hpp"
 #include "sunbudget/base/units.hpp"
 #include "sunbudget/physics/sun.hpp"
+#include "sunbudget/model/neighbourhood.hpp"
 #include "sunbudget/raster/locator.hpp"
 
 namespace sunbudget {
@@ -24,15 +27,16 @@ std::optional<double> metres_in(const std::string& unit) {
     return std::nullopt;
 }
 
-Source open_elevation(const PlanRaster& raster, const ResolveOptions& options, Run& run) {
+Source open_elevation(RasterName name, std::optional<HeightUnit> unit, const ResolveOptions& options, Run& run) {
     SourceSpec spec;
-    spec.name = raster_of(raster);
+    spec.name = std::move(name);
     spec.limits = limits_of(options);
-    const auto info = inspect(spec.name, spec.limits);
+    auto info = inspect(spec.name, spec.limits);
+    if (unit) info.unit = std::array{"m", "ft", "us-ft"}[static_cast<std::size_t>(*unit)];
     const auto metres = metres_in(info.unit);
     if (!metres)
         throw Error(Cause::input, "heights in the unit \"" + info.unit + "\" are not understood",
-                    info.name.path.string(), "convert the raster to metres");
+                    info.name.path.string(), "say terrain.unit: m, ft or us-ft");
     if (*metres != 1.0) {
         spec.scaling = Scaling{info.scale.value_or(1) * *metres, info.offset.value_or(0) * *metres};
         run.assumptions.push_back("terrain.elevation: heights in \"" + info.unit + "\" are turned into metres");
@@ -58,31 +62,73 @@ std::vector<NamedSpan> named_spans(const std::vector<NamedPeriod>& periods) {
     return spans;
 }
 
+/// One day a month, where that is allowed.
+void thin_days(const Plan& plan, const Run& run, TimePlan& times, RunProblems& problems) {
+    // Beyond this the length of a month's days changes too much within the month (Klein 1977).
+    constexpr double farthest_deg = 60;
+    const Locator locator(run.grid);
+    for (const double u : {0.0, 0.5, 1.0})
+        for (const double v : {0.0, 0.5, 1.0}) {
+            const auto place = locator.at(u * run.grid.width, v * run.grid.height);
+            if (!place || std::abs(deg_from_rad(place->latitude_rad)) <= farthest_deg) continue;
+            problems.add(Cause::usage, plan.time.days->place,
+                         fmt::format("one day for a month does not hold at {:.1f} degrees of latitude", deg_from_rad(place->latitude_rad)),
+                         "beyond 60 degrees write days: all");
+            return;
+        }
+    for (auto& period : times.periods) period = with_mid_month_days(period);
+}
+
 }  // namespace
 
 void resolve_elevation(const Plan& plan, const ResolveOptions& options, Run& run, RunProblems& problems) {
     const bool needed = std::any_of(plan.outputs.layers.begin(), plan.outputs.layers.end(),
                                     [](const auto& name) { return layer(*name).needs_sun; });
     if (!plan.terrain.elevation) {
-        if (needed) run.assumptions.emplace_back("no terrain.elevation: the ground is flat, at 0 m");
+        if (needed) run.assumptions.emplace_back("no terrain.elevation: the ground is level and open, at 0 m");
         return;
     }
-    const auto& elevation = *plan.terrain.elevation;
-    if (const auto* height = std::get_if<PlanHeight>(&*elevation)) {
-        run.elevation_m = height->height_m;
-        run.assumptions.push_back(fmt::format("the ground is flat, at {} m", height->height_m));
+    const auto& terrain = plan.terrain;
+    if (const auto* height = std::get_if<PlanLength>(&**terrain.elevation)) {
+        run.constant_height_m = height->m;
+        run.assumptions.push_back(fmt::format("the ground is level and open, at {} m", height->m));
         return;
     }
-    problems.attempt(elevation.place, [&] {
-        auto source = open_elevation(std::get<PlanRaster>(*elevation), options, run);
-        add_input(run, "terrain.elevation", source);
-        run.elevation_m = std::move(source);
-        run.assumptions.emplace_back(
-            "terrain.elevation gives the air pressure alone: the ground is taken as flat, without slopes and shadows");
+    const std::optional<HeightUnit> unit = terrain.unit ? std::optional(**terrain.unit) : std::nullopt;
+    Terrain found;
+    problems.attempt(terrain.elevation->place, [&] {
+        for (const auto& raster : std::get<std::vector<PlanRaster>>(**terrain.elevation)) {
+            found.elevation.push_back(open_elevation(raster_of(raster), unit, options, run));
+            add_input(run, "terrain.elevation", found.elevation.back());
+        }
     });
+    if (terrain.slope_from) {
+        if (const auto* path = std::get_if<PlanPath>(&**terrain.slope_from))
+            problems.attempt(terrain.slope_from->place, [&] {
+                std::vector<Source> other;
+                other.push_back(open_elevation({path->file, 1, {}}, unit, options, run));
+                add_input(run, "terrain.slope_from", other.back());
+                found.slope_from = std::move(other);
+            });
+        else if (std::get<SlopeFrom>(**terrain.slope_from) == SlopeFrom::flat)
+            found.slope_from = Terrain::Flat{};
+    }
+    if (terrain.directions) found.directions = **terrain.directions;
+    if (terrain.reach) found.sight.reach_m = (**terrain.reach).m;
+    run.terrain = std::move(found);
+    run.methods.push_back(&method("horizon", "terrain-horizons"));
+    if (!run.has_surface() && needed)
+        run.assumptions.push_back(fmt::format("no surface: the ground in view is taken to reflect {}", albedo_where_unknown));
 }
 
 void resolve_sky(const Plan& plan, Run& run, RunProblems& problems) {
+    if (plan.sky.diffuse) {
+        constexpr std::array models{std::pair{"hay-davies1980", DiffuseModel::hay_davies1980},
+                                    std::pair{"liu-jordan1963", DiffuseModel::liu_jordan1963},
+                                    std::pair{"perez1990", DiffuseModel::perez1990}};
+        for (const auto& [name, model] : models)
+            if (**plan.sky.diffuse == name) run.sky.diffuse = model;
+    }
     if (!plan.sky.turbidity) return;
     const auto& chosen = method("clear_sky", **plan.sky.model);
     const auto* parameter = chosen.parameter("turbidity");
@@ -124,9 +170,11 @@ void resolve_time(const Plan& plan, Run& run, RunProblems& problems) {
         times.periods = named != nullptr ? periods_of(named_spans(*named), hours, times.zone)
                                          : periods_of(**time.from, **time.to, totals_of(time), hours, times.zone);
     }
+    if (time.days && **time.days == DayChoice::mid_month) thin_days(plan, run, times, problems);
     run.times = std::move(times);
     for (const auto* family : {"sun_position", "air_mass"})
         run.methods.push_back(&method(family, method_names(family).front()));
+    if (run.terrain) run.methods.push_back(&method("diffuse_sky", plan.sky.diffuse ? **plan.sky.diffuse : method_names("diffuse_sky").front()));
     run.methods.push_back(&method("clear_sky", plan.sky.model ? **plan.sky.model : method_names("clear_sky").front()));
 }
 

@@ -20,6 +20,7 @@ class CrossCheck {
         named_periods();
         layers();
         unit();
+        directions();
     }
 
   private:
@@ -39,7 +40,7 @@ class CrossCheck {
     [[nodiscard]] bool has_elevation_raster() const {
         const auto& elevation = plan_.terrain.elevation;
         if (!elevation) return written("terrain.elevation");
-        return std::holds_alternative<PlanRaster>(**elevation);
+        return std::holds_alternative<std::vector<PlanRaster>>(**elevation);
     }
 
     void bounds() const;
@@ -50,6 +51,7 @@ class CrossCheck {
     void named_period(const NamedPeriod& period) const;
     void layers() const;
     void unit() const;
+    void directions() const;
     void layers_without(bool Layer::*need, const std::string& what, const std::string& todo) const;
 
     const Plan& plan_;
@@ -143,6 +145,18 @@ void CrossCheck::layers() const {
     if (!written("surface.cover") && !written("surface.albedo"))
         layers_without(&Layer::needs_albedo, "an albedo, and the plan has none",
                        "add surface with cover or albedo");
+    if (!has_elevation_raster())
+        layers_without(&Layer::needs_terrain, "terrain, and the plan has no elevation raster", "add terrain.elevation");
+    for (const auto& id : plan_.outputs.layers)
+        if (*id == LayerId::sunlit_hours && written("time.at"))
+            mistakes_.add(id.place, "sunlit_hours needs a period, and the plan has an instant", "add time.from and time.to");
+}
+
+void CrossCheck::directions() const {
+    const auto& directions = plan_.terrain.directions;
+    if (directions && **directions % 4 != 0)
+        mistakes_.add(directions->place, std::to_string(**directions) + " directions do not go evenly round the four sides",
+                      "give a multiple of 4, from 8 to 360");
 }
 
 void CrossCheck::unit() const {

@@ -152,8 +152,11 @@ class Writer {
     }
     [[nodiscard]] Node node_of(const PlanPath& path) const { return text_node(path_text(path)); }
     [[nodiscard]] Node node_of(const PlanRaster& raster) const;
-    [[nodiscard]] Node node_of(const PlanHeight& height) const {
-        return text_node(shortest(height.height_m) + " m");
+    [[nodiscard]] Node node_of(const PlanLength& length) const {
+        return text_node(shortest(length.m) + " m");
+    }
+    [[nodiscard]] Node node_of(const std::vector<PlanRaster>& rasters) const {
+        return rasters.size() == 1 ? node_of(rasters.front()) : list_of(rasters);
     }
     [[nodiscard]] Node node_of(const HourWindow& hours) const {
         return text_node(hour_text(hours.begin_h) + "-" + hour_text(hours.end_h));

@@ -20,7 +20,9 @@ constexpr std::array units{
     UnitRow{OutputUnit::kwh_m2, "kWh/m2", 3.6e6},
 };
 
-constexpr double albedo_quantum = 1.0 / 8192;  // 2^-13: 0.00012, far below any albedo's uncertainty
+constexpr double ratio_quantum = 1.0 / 8192;  // 2^-13: 0.00012, far below any albedo's uncertainty
+constexpr double angle_quantum_deg = 1.0 / 64;  // far below what a height model's own error does to a slope
+constexpr double time_quantum_h = 1.0 / 64;     // a minute
 constexpr double flux_quantum_w_m2 = 1.0 / 16;
 
 const std::vector<Layer>& table() {
@@ -62,6 +64,16 @@ const std::vector<Layer>& table() {
          .standard_name_sum = {},
          .needs_sun = true,
          .needs_albedo = false},
+        {.id = LayerId::reflected,
+         .name = "reflected",
+         .quantity = Quantity::radiation,
+         .sample = SampleType::float32,
+         .text = "sunlight that the ground in view sends to the surface",
+         .standard_name = {},
+         .standard_name_sum = {},
+         .needs_sun = true,
+         .needs_albedo = false,
+         .needs_terrain = true},
         {.id = LayerId::net_shortwave,
          .name = "net_shortwave",
          .quantity = Quantity::radiation,
@@ -71,6 +83,46 @@ const std::vector<Layer>& table() {
          .standard_name_sum = "integral_wrt_time_of_surface_net_downward_shortwave_flux",
          .needs_sun = true,
          .needs_albedo = true},
+        {.id = LayerId::sunlit_hours,
+         .name = "sunlit_hours",
+         .quantity = Quantity::hours,
+         .sample = SampleType::float32,
+         .text = "hours of the period in which the sun's disc shines on the surface, under a clear sky",
+         .standard_name = {},
+         .standard_name_sum = {},
+         .needs_sun = true,
+         .needs_albedo = false,
+         .needs_terrain = true},
+        {.id = LayerId::sky_view,
+         .name = "sky_view",
+         .quantity = Quantity::ratio,
+         .sample = SampleType::float32,
+         .text = "share of an even sky's light that reaches the surface past the terrain",
+         .standard_name = {},
+         .standard_name_sum = {},
+         .needs_sun = false,
+         .needs_albedo = false,
+         .needs_terrain = true},
+        {.id = LayerId::slope,
+         .name = "slope",
+         .quantity = Quantity::angle,
+         .sample = SampleType::float32,
+         .text = "steepness of the surface",
+         .standard_name = {},
+         .standard_name_sum = {},
+         .needs_sun = false,
+         .needs_albedo = false,
+         .needs_terrain = true},
+        {.id = LayerId::aspect,
+         .name = "aspect",
+         .quantity = Quantity::angle,
+         .sample = SampleType::float32,
+         .text = "direction the surface faces, downslope, clockwise from true north; none on level ground",
+         .standard_name = {},
+         .standard_name_sum = {},
+         .needs_sun = false,
+         .needs_albedo = false,
+         .needs_terrain = true},
         {.id = LayerId::quality,
          .name = "quality",
          .quantity = Quantity::flags,
@@ -144,7 +196,12 @@ std::vector<std::string> layer_names() {
 }
 
 std::string_view unit_of(const Layer& layer, OutputUnit unit) noexcept {
-    return layer.quantity == Quantity::radiation ? name_of(unit) : "1";
+    switch (layer.quantity) {
+        case Quantity::radiation: return name_of(unit);
+        case Quantity::hours: return "h";
+        case Quantity::angle: return "degree";
+        default: return "1";
+    }
 }
 
 const std::string& standard_name_of(const Layer& layer, OutputUnit unit) noexcept {
@@ -154,7 +211,9 @@ const std::string& standard_name_of(const Layer& layer, OutputUnit unit) noexcep
 
 double quantum_of(const Layer& layer, OutputUnit unit, double period_s) noexcept {
     if (layer.quantity == Quantity::flags) return 1.0;
-    if (layer.quantity == Quantity::ratio) return albedo_quantum;
+    if (layer.quantity == Quantity::ratio) return ratio_quantum;
+    if (layer.quantity == Quantity::angle) return angle_quantum_deg;
+    if (layer.quantity == Quantity::hours) return time_quantum_h;
     if (unit == OutputUnit::w_m2) return flux_quantum_w_m2;
     assert(period_s > 0);
     return power_of_two_below(flux_quantum_w_m2 * period_s / joules_of(unit));

@@ -14,11 +14,11 @@ namespace {
 
 /// The greatest difference between the field and the light computed at each pixel's own centre, on
 /// every 7th pixel, and the greatest step between neighbouring pixels beyond the true one.
-double worst_difference(const Grid& grid, const TimePlan& times, const Plane<float>& heights_m, bool constant) {
+double worst_difference(const Grid& grid, const TimePlan& times, const Plane<float>& heights_m, bool constant, bool vectors = false) {
     gdal_setup(64u << 20);
     const Sky sky;
     const PointLight truth(times, sky);
-    LightField field(times, sky, grid, 1, constant ? std::optional<double>(300.0) : std::nullopt);
+    LightField field(times, sky, grid, 1, constant ? std::optional<double>(300.0) : std::nullopt, vectors);
     const Locator locator(grid);
     const Window frame{0, 0, grid.width, grid.height};
     Plane<float> direct(grid.width, grid.height), diffuse(grid.width, grid.height);
@@ -28,15 +28,15 @@ double worst_difference(const Grid& grid, const TimePlan& times, const Plane<flo
             const Window window{column, row, std::min(256, grid.width - column), std::min(256, grid.height - row)};
             const auto block = field.prepare(window, frame, heights_m, 0);
             for (std::size_t band = 0; band < truth.bands(); ++band) {
-                LightField::fill_direct(block, band, heights_m, direct);
-                LightField::fill_diffuse(block, band, heights_m, diffuse);
+                field.fill(block, band, vectors ? LightField::Part::beam_east : LightField::Part::beam_up, heights_m, direct);
+                field.fill(block, band, LightField::Part::diffuse, heights_m, diffuse);
                 for (int r = row; r < row + window.height; r += 37)
                     for (int c = column; c < column + window.width; c += 37) {
                         const auto place = locator.at(c + 0.5, r + 0.5);
                         REQUIRE(place);
                         const double height_m = constant ? 300.0 : static_cast<double>(heights_m.at(c, r));
                         const auto light = truth.at(band, place->latitude_rad, place->longitude_rad, height_m);
-                        worst = std::max({worst, std::abs(light.direct_w_m2 - static_cast<double>(direct.at(c, r))),
+                        worst = std::max({worst, std::abs(light.beam_w_m2[vectors ? 0 : 2] - static_cast<double>(direct.at(c, r))),
                                           std::abs(light.diffuse_w_m2 - static_cast<double>(diffuse.at(c, r)))});
                     }
             }
@@ -69,6 +69,7 @@ TEST_CASE("LightField: meets the light at each pixel on a 30 m grid with mountai
         for (int c = 0; c < grid.width; ++c) heights.at(c, r) = static_cast<float>(1800 + 2100 * std::sin(c * 0.02) * std::cos(r * 0.03));
     CHECK(worst_difference(grid, one_day({2025, 12, 21}), heights, false) < half_quantum);
     CHECK(worst_difference(grid, instant("2025-06-21T10:00Z"), heights, false) < half_quantum);
+    CHECK(worst_difference(grid, instant("2025-06-21T10:00Z"), heights, false, true) < half_quantum);
 }
 
 TEST_CASE("LightField: meets the light on the whole globe, through polar night and the terminator", "[model][differential]") {

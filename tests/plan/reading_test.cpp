@@ -79,7 +79,7 @@ TEST_CASE("every member of a plan has the value of its key", "[plan][vector]") {
     CHECK(plan.surface.cover->raster->band == "2");
     CHECK(std::get<PlanPath>(*plan.surface.cover->classes).given == "tables/own.csv");
     CHECK(**plan.surface.cover->default_class == 50);
-    CHECK(std::get<PlanRaster>(**plan.terrain.elevation).band == "height");
+    CHECK(std::get<std::vector<PlanRaster>>(**plan.terrain.elevation).front().band == "height");
     CHECK(**plan.sky.model == "esra2000");
     CHECK((**plan.sky.turbidity)[5] == 3.7);
     CHECK(**plan.time.from == CivilDate{2024, 2, 29});
@@ -107,13 +107,13 @@ TEST_CASE("numbers are decimal, whatever an older YAML would make of them", "[pl
     CHECK((**plan.sky.turbidity)[11] == 3);
     const auto words = read_plan(testdata("plans/good/odd_names.yaml"));
     CHECK(**words.title == "no");
-    CHECK(std::get<PlanRaster>(**words.terrain.elevation).path.given == "y");
+    CHECK(std::get<std::vector<PlanRaster>>(**words.terrain.elevation).front().path.given == "y");
 }
 
 TEST_CASE("quantities are read in their own unit", "[plan][vector]") {
     const auto height = [](const std::string& text) {
         const auto plan = plan_of(small_plan + "terrain: {elevation: " + text + "}\n");
-        return std::get<PlanHeight>(**plan.terrain.elevation).height_m;
+        return std::get<PlanLength>(**plan.terrain.elevation).m;
     };
     CHECK(height("250 m") == 250);
     CHECK(height("-0.42 km") == -420);
@@ -131,7 +131,7 @@ TEST_CASE("quantities are read in their own unit", "[plan][vector]") {
 TEST_CASE("a band is what follows the last colon unless a slash follows it", "[plan][vector]") {
     const auto raster = [](const std::string& text) {
         const auto plan = plan_of(small_plan + "terrain: {elevation: \"" + text + "\"}\n");
-        return std::get<PlanRaster>(**plan.terrain.elevation);
+        return std::get<std::vector<PlanRaster>>(**plan.terrain.elevation).front();
     };
     CHECK(raster("dem.tif").band.empty());
     CHECK(raster("dem.tif:3").band == "3");

@@ -9,7 +9,7 @@
 using namespace sunbudget;
 
 TEST_CASE("layers: each id leads to its row, each name to the same", "[tables][property]") {
-    CHECK(layers().size() == 6);
+    CHECK(layers().size() == 11);
     for (const auto& row : layers()) {
         CHECK(&layer(row.id) == &row);
         CHECK(layer_named(row.name) == &row);

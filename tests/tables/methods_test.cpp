@@ -50,7 +50,8 @@ TEST_CASE("method: an unknown name comes with a suggestion", "[tables][edge]") {
     CHECK(method("clear_sky", "esra2000").parameter("ozone") == nullptr);
     CHECK(method_names("no-such-family").empty());
     CHECK(method_families() ==
-          std::vector<std::string>{"sun_position", "air_mass", "clear_sky", "albedo"});
+          std::vector<std::string>{"sun_position", "air_mass", "clear_sky", "diffuse_sky", "horizon",
+                                                        "albedo"});
 }
 
 TEST_CASE("given albedo: 0 and 1 are allowed, beyond is refused", "[tables][edge]") {

@@ -1,6 +1,7 @@
 #pragma once
 
 #include <cstdint>
+#include <filesystem>
 #include <map>
 #include <memory>
 
@@ -21,15 +22,22 @@ class Sink {
     virtual void put(std::size_t layer, std::size_t band, const Window& window, const Plane<std::uint16_t>& plane) = 0;
 };
 
-/// What all threads of a run share: the light tables, made as they are needed.
+class SharedTerrain;
+
+/// What all threads of a run share: tables of light and terrain, made as they are needed.
 class SharedLight {
   public:
-    SharedLight(const Run& run, int threads);
+    /// `scratch_folder` takes the coarse levels of the elevation; they go with the object.
+    SharedLight(const Run& run, int threads, const std::filesystem::path& scratch_folder);
     ~SharedLight();
+    /// Nothing where the run has no time.
     [[nodiscard]] LightField* field() const { return field_.get(); }
+    /// Nothing where the run has no terrain.
+    [[nodiscard]] SharedTerrain* terrain() const { return terrain_.get(); }
 
   private:
     std::unique_ptr<LightField> field_;
+    std::unique_ptr<SharedTerrain> terrain_;
 };
 
 /// One thread's way from inputs to finished planes.

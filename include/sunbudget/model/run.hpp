@@ -10,6 +10,7 @@
 #include <vector>
 
 #include "sunbudget/model/light.hpp"
+#include "sunbudget/model/terrain.hpp"
 #include "sunbudget/model/time_plan.hpp"
 #include "sunbudget/raster/layer_file.hpp"
 #include "sunbudget/raster/source.hpp"
@@ -66,7 +67,8 @@ struct Run {
     bool overviews = true;  ///< a plain GeoTIFF has none
 
     std::variant<std::monostate, CoverSurface, GivenSurface> surface;
-    std::variant<double, Source> elevation_m = 0.0;
+    std::optional<Terrain> terrain;  ///< without it the ground is level and open
+    double constant_height_m = 0;    ///< then
     Sky sky;
     std::optional<TimePlan> times;
     OutputUnit unit = OutputUnit::w_m2;

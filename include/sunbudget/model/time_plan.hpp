@@ -16,6 +16,7 @@ struct DayPart {
     CivilDate date;
     double begin_s = 0;
     double end_s = seconds_per_day;
+    double weight = 1;  ///< how many days it stands for
 };
 
 /// One output band: the days it sums over.
@@ -56,6 +57,12 @@ struct TimePlan {
 /// period whose name gives its dates.
 [[nodiscard]] std::vector<Period> periods_of(CivilDate from, CivilDate to, Totals totals,
                                              DailyWindow hours, const Zone& zone);
+/// Replaces the days of each month of a period by one, with the weight of the days it stands for: the
+/// day whose declination is nearest to the month's mean.
+/// source  Klein 1977, Solar Energy 19, 325-329: 17 Jan, 16 Feb, 16 Mar, 15 Apr, 15 May, 11 Jun, 17 Jul,
+///         16 Aug, 15 Sep, 15 Oct, 14 Nov, 10 Dec
+[[nodiscard]] Period with_mid_month_days(const Period& period);
+
 /// The same for spans named by the user.
 [[nodiscard]] std::vector<Period> periods_of(const std::vector<NamedSpan>& spans, DailyWindow hours,
                                              const Zone& zone);

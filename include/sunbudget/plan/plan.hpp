@@ -48,6 +48,7 @@ struct NamedPeriod {
 };
 
 enum class FileFormat { cog, geotiff };
+enum class DayChoice { all, mid_month };
 
 enum class LikeInput { surface, elevation };
 
@@ -93,19 +94,28 @@ struct PlanSurface {
     friend bool operator==(const PlanSurface&, const PlanSurface&) = default;
 };
 
-struct PlanHeight {
-    double height_m = 0;
-    friend bool operator==(const PlanHeight&, const PlanHeight&) = default;
+struct PlanLength {
+    double m = 0;
+    friend bool operator==(const PlanLength&, const PlanLength&) = default;
 };
 
+enum class HeightUnit { m, ft, us_ft };
+enum class SlopeFrom { elevation, flat };
+
 struct PlanTerrain {
-    Maybe<std::variant<PlanRaster, PlanHeight>> elevation;
+    /// Rasters, of which the first that has a value counts; or one height everywhere.
+    Maybe<std::variant<std::vector<PlanRaster>, PlanLength>> elevation;
+    Maybe<HeightUnit> unit;  ///< of the rasters; default: as the files say
+    Maybe<std::variant<SlopeFrom, PlanPath>> slope_from;
+    Maybe<int> directions;
+    Maybe<PlanLength> reach;
     friend bool operator==(const PlanTerrain&, const PlanTerrain&) = default;
 };
 
 struct PlanSky {
     Maybe<std::string> model;
     Maybe<Monthly> turbidity;
+    Maybe<std::string> diffuse;
     friend bool operator==(const PlanSky&, const PlanSky&) = default;
 };
 
@@ -135,6 +145,7 @@ struct PlanTime {
     Maybe<HourWindow> hours;
     Maybe<PlanZone> zone;
     Maybe<std::variant<Totals, std::vector<NamedPeriod>>> totals;
+    Maybe<DayChoice> days;
     friend bool operator==(const PlanTime&, const PlanTime&) = default;
 };
 

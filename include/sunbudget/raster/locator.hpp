@@ -5,6 +5,7 @@
 #include <span>
 #include <string>
 
+#include "sunbudget/base/pixel_matrix.hpp"
 #include "sunbudget/raster/grid.hpp"
 
 namespace sunbudget {
@@ -33,6 +34,10 @@ class Locator {
 
     /// Nothing where the projection has no answer: off the globe.
     [[nodiscard]] std::optional<Geodetic> at(double column, double row) const;
+
+    /// Metres on the ground (east, north, on the WGS84 ellipsoid) for a step of a pixel, at a place;
+    /// nothing where there is no answer, or where the projection folds the ground to a line.
+    [[nodiscard]] std::optional<PixelMatrix> matrix(double column, double row) const;
 
     /// Many points; NaN where there is no answer. A point's result does not depend on the others.
     ///

@@ -19,8 +19,20 @@ enum class OutputUnit { w_m2, mj_m2, kwh_m2 };
 /// J/m2 in one of the unit: 1e6, 3.6e6; 1 for W/m2, which is no energy.
 [[nodiscard]] double joules_of(OutputUnit unit) noexcept;
 
-enum class LayerId { albedo, insolation, direct, diffuse, net_shortwave, quality };
-enum class Quantity { ratio, radiation, flags };
+enum class LayerId {
+    albedo,
+    insolation,
+    direct,
+    diffuse,
+    reflected,
+    net_shortwave,
+    sunlit_hours,
+    sky_view,
+    slope,
+    aspect,
+    quality,
+};
+enum class Quantity { ratio, radiation, hours, angle, flags };
 enum class SampleType { float32, uint16 };
 [[nodiscard]] std::string_view name_of(SampleType type) noexcept;
 
@@ -35,6 +47,7 @@ struct Layer {
     std::string standard_name_sum;  ///< the same for sums over a period
     bool needs_sun = false;         ///< has one band a period; otherwise one band
     bool needs_albedo = false;
+    bool needs_terrain = false;
 };
 
 /// In the order of LayerId.
@@ -43,7 +56,7 @@ struct Layer {
 [[nodiscard]] const Layer* layer_named(std::string_view name) noexcept;
 [[nodiscard]] std::vector<std::string> layer_names();
 
-/// "1" for ratios and flags, else the chosen unit.
+/// "1" for ratios and flags, "h", "degree", else the chosen unit.
 [[nodiscard]] std::string_view unit_of(const Layer& layer, OutputUnit unit) noexcept;
 /// Empty where CF has no name.
 [[nodiscard]] const std::string& standard_name_of(const Layer& layer, OutputUnit unit) noexcept;
