@@ -14,6 +14,7 @@
 #include <atomic>
 #include <cctype>
 #include <mutex>
+#include <set>
 #include <string_view>
 
 #include "sunbudget/base/error.hpp"
@@ -42,14 +43,22 @@ class RefusingFileSystem final : public VSIFilesystemHandler {
     char** ReadDirEx(const char*, int) override { return nullptr; }
 };
 
-/// Asked from the library, so that file systems it learns later are refused as well. Handlers live
-/// as long as GDAL's own table of them.
+/// Asked from the library, so that file systems it learns later are refused as well. The new one
+/// belongs to GDAL's table, which forgets the old ones without deleting them; one object may stand
+/// under two prefixes.
 void refuse_file_systems() {
+    auto* refusing = new RefusingFileSystem;
+    std::set<VSIFilesystemHandler*> replaced;
     char** prefixes = VSIGetFileSystemsPrefixes();
-    for (char** prefix = prefixes; prefix != nullptr && *prefix != nullptr; ++prefix)
-        if (std::string_view(*prefix) != "/vsimem/")
-            VSIFileManager::InstallHandler(*prefix, new RefusingFileSystem);
+    for (char** prefix = prefixes; prefix != nullptr && *prefix != nullptr; ++prefix) {
+        if (std::string_view(*prefix) == "/vsimem/") continue;
+        replaced.insert(VSIFileManager::GetHandler(*prefix));
+        VSIFileManager::InstallHandler(*prefix, refusing);
+    }
     CSLDestroy(prefixes);
+    replaced.erase(VSIFileManager::GetHandler("/"));
+    replaced.erase(refusing);
+    for (auto* handler : replaced) delete handler;
 }
 
 struct DriverEntry {
