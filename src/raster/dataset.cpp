@@ -66,6 +66,11 @@ std::string without_name(std::string text, const std::string& name) {
 }
 
 [[noreturn]] void throw_unreadable(const fs::path& path, const GdalMessages& messages) {
+    if (is_special_name(path))
+        throw Error(Cause::input,
+                    "the remote file cannot be opened" +
+                        (messages.failed() ? ": " + messages.first_failure() : std::string()),
+                    path.native(), "check the address, or fetch it first and name the copy");
     std::error_code failed;
     if (fs::is_directory(path, failed))
         throw Error(Cause::input, "this is a folder", path.native(), "name a raster file in it");
