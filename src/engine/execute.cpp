@@ -27,10 +27,10 @@ struct LayerWork {
     Pyramid pyramid;
     std::vector<std::vector<BlockStatistics>> blocks;  ///< by band, block row by block row
 
-    LayerWork(const OutputLayer& l, const std::filesystem::path& spool_file, std::size_t block_count)
+    LayerWork(const OutputLayer& l, const std::filesystem::path& spool_file, std::size_t block_count, std::size_t overview_bytes)
         : layer(&l),
           spool(Spool::create(spool_file, layout_of(l.file))),
-          pyramid(l.file, spool),
+          pyramid(l.file, spool, overview_bytes),
           blocks(l.file.bands.size(), std::vector<BlockStatistics>(block_count)) {}
 };
 
@@ -94,20 +94,30 @@ std::uint64_t band_planes(const Run& run) {
     return planes;
 }
 
-/// Overview tiles that wait for children: in bands of `band` tile rows, a row of tiles at every
-/// level above the band's own, plus a few inside it.
-std::uint64_t waiting_bytes(const Run& run, int band) {
-    const auto tile = static_cast<std::uint64_t>(run.tile);
-    const auto across = static_cast<std::uint64_t>(run.grid.width) / static_cast<std::uint64_t>(band) + 3 * tile;
-    return band_planes(run) * across * tile * sizeof(float);
+/// Windows go through the grid in bands of this many rows of them: striped inputs are decoded once a
+/// band.
+constexpr int band_units = 4;
+
+/// Overview tiles of one layer that may wait in memory for their children: a quarter of the budget for
+/// all layers.
+std::size_t overview_bytes(const Run& run, std::uint64_t memory_bytes) {
+    return static_cast<std::size_t>(memory_bytes / 4 / std::max<std::size_t>(1, run.layers.size()));
 }
 
-/// Tall enough that what waits fits a quarter of the budget.
-int band_units(const Run& run, std::uint64_t memory_bytes) {
-    const int rows = (run.grid.height + unit_px(run) - 1) / unit_px(run);
-    int band = 4;
-    while (band < rows && waiting_bytes(run, band) > memory_bytes / 4) band *= 2;
-    return band;
+/// What they come to: a row of tiles at every level above a band's own, and a few inside it.
+std::uint64_t waiting_bytes(const Run& run, std::uint64_t memory_bytes) {
+    const auto tile = static_cast<std::uint64_t>(run.tile);
+    const auto across = static_cast<std::uint64_t>(run.grid.width) / band_units + 3 * tile;
+    return std::min(memory_bytes / 4, band_planes(run) * across * tile * sizeof(float));
+}
+
+/// Bytes a thread holds for each pixel of its window: surface, heights, a tile raw and encoded; with
+/// terrain the light of several bands and its parts.
+std::uint64_t bytes_per_pixel(const Run& run) {
+    constexpr std::uint64_t plain = 40, terrain = 60, a_band = 24, bands_held = 12;
+    if (!run.terrain) return plain;
+    const std::uint64_t bands = run.times ? run.times->bands() : 0;
+    return plain + terrain + a_band * std::min(bands, bands_held);
 }
 
 void stop_if_asked() {
@@ -134,10 +144,8 @@ std::uint64_t raster_cache_bytes(std::uint64_t memory_bytes) {
 
 std::uint64_t memory_needed(const Run& run, const EngineOptions& options) {
     const auto unit = static_cast<std::uint64_t>(unit_px(run));
-    constexpr std::uint64_t bytes_per_pixel = 40;  // the planes of Flow, a tile raw and encoded
-    const int band = band_units(run, options.memory_bytes);
-    return raster_cache_bytes(options.memory_bytes) + waiting_bytes(run, band) +
-           static_cast<std::uint64_t>(options.threads) * unit * unit * bytes_per_pixel;
+    return raster_cache_bytes(options.memory_bytes) + waiting_bytes(run, options.memory_bytes) +
+           static_cast<std::uint64_t>(options.threads) * unit * unit * bytes_per_pixel(run);
 }
 
 Execution execute(const Run& run, const EngineOptions& options, const OutputSet& outputs) {
@@ -147,13 +155,12 @@ Execution execute(const Run& run, const EngineOptions& options, const OutputSet&
     const auto block_count = static_cast<std::size_t>(block_columns) * static_cast<std::size_t>(block_rows);
     std::vector<std::unique_ptr<LayerWork>> layers;
     for (const auto& layer : run.layers)
-        layers.push_back(std::make_unique<LayerWork>(layer, outputs.staged(layer.file.name + ".spool"), block_count));
+        layers.push_back(std::make_unique<LayerWork>(layer, outputs.staged(layer.file.name + ".spool"), block_count, overview_bytes(run, options.memory_bytes)));
 
     const SharedLight light(run, options.threads, outputs.staged("").parent_path());
     std::vector<std::optional<Flow>> flows(static_cast<std::size_t>(options.threads));
     std::vector<TileSink> sinks(flows.size(), TileSink(layers, run.tile, block_columns));
-    const auto units = units_in_order(run.grid.width, run.grid.height, unit_px(run),
-                                      band_units(run, options.memory_bytes));
+    const auto units = units_in_order(run.grid.width, run.grid.height, unit_px(run), band_units);
     std::atomic<std::uint64_t> pixels_done{0};
     const double pixels = static_cast<double>(run.grid.width) * run.grid.height;
     const auto report = [&](const std::string& step, double done, double total, const std::string& unit) {

@@ -90,8 +90,11 @@ int children_of(const Layout& layout, const TileKey& parent) {
 template <typename T>
 class Folder {
   public:
-    Folder(const LayerFile& layer, Spool& spool)
-        : layout_(spool.layout()), quantum_(layer.quantum), spool_(spool) {}
+    Folder(const LayerFile& layer, Spool& spool, std::size_t most_bytes)
+        : layout_(spool.layout()),
+          quantum_(layer.quantum),
+          most_held_(most_bytes / layout_.tile_bytes()),
+          spool_(spool) {}
 
     void put(int band, int column, int row, const Plane<T>& pixels,
              std::span<const BlockStatistics> blocks);
@@ -99,6 +102,8 @@ class Folder {
     [[nodiscard]] std::size_t peak_bytes() const;
 
   private:
+    /// A parent whose pixels would go beyond the memory limit holds none: when its last child has come it
+    /// is made from the children in the spool.
     struct Parent {
         Plane<T> pixels;
         int waiting = 0;
@@ -106,14 +111,17 @@ class Folder {
     [[nodiscard]] Plane<T> squared(const TileKey& key, const Plane<T>& pixels) const;
     [[nodiscard]] bool inner(const TileKey& key) const;
     void climb(TileKey key, const Plane<T>& pixels);
-    [[nodiscard]] Plane<T>& parent_pixels(const TileKey& parent);
+    [[nodiscard]] Plane<T>* parent_pixels(const TileKey& parent);
+    [[nodiscard]] Plane<T> made_from_spool(const TileKey& parent) const;
     [[nodiscard]] Plane<T> taken_if_whole(const TileKey& parent);
 
     const Layout layout_;
     const float quantum_;
+    const std::size_t most_held_;
     Spool& spool_;
     mutable std::mutex lock_;  // of what follows; the pixels of a parent are written without it
     std::map<std::size_t, Parent> parents_;
+    std::size_t held_ = 0;       // parents with pixels
     std::size_t most_parents_ = 0;
 };
 
@@ -162,7 +170,8 @@ void Folder<T>::climb(TileKey key, const Plane<T>& pixels) {
         const auto parent = parent_of(key);
         if (spool_.has(parent)) return;  // from an earlier run, made of the same pixels
         const int half = layout_.tile / 2;
-        fold(*child, key.column % 2 * half, key.row % 2 * half, quantum_, parent_pixels(parent));
+        if (auto* pixels_above = parent_pixels(parent))
+            fold(*child, key.column % 2 * half, key.row % 2 * half, quantum_, *pixels_above);
         whole = taken_if_whole(parent);
         if (whole.empty()) return;
         spool_.append(parent, encode_tile(whole));
@@ -171,27 +180,47 @@ void Folder<T>::climb(TileKey key, const Plane<T>& pixels) {
     }
 }
 
+/// nullptr for a parent that holds no pixels.
 template <typename T>
-Plane<T>& Folder<T>::parent_pixels(const TileKey& parent) {
+Plane<T>* Folder<T>::parent_pixels(const TileKey& parent) {
     const std::lock_guard guard(lock_);
     auto& found = parents_[layout_.index(parent)];
     if (found.waiting == 0) {
         found.waiting = children_of(layout_, parent);
-        found.pixels = Plane<T>(layout_.tile, layout_.tile, nothing<T>);
-        most_parents_ = std::max(most_parents_, parents_.size());
+        if (held_ < most_held_) {
+            found.pixels = Plane<T>(layout_.tile, layout_.tile, nothing<T>);
+            most_parents_ = std::max(most_parents_, ++held_);
+        }
     }
-    return found.pixels;
+    return found.pixels.empty() ? nullptr : &found.pixels;
+}
+
+template <typename T>
+Plane<T> Folder<T>::made_from_spool(const TileKey& parent) const {
+    Plane<T> pixels(layout_.tile, layout_.tile, nothing<T>);
+    const int half = layout_.tile / 2;
+    for (const int down : {0, 1})
+        for (const int across : {0, 1}) {
+            const TileKey child{parent.level - 1, parent.band, 2 * parent.column + across, 2 * parent.row + down};
+            if (!layout_.has(child)) continue;
+            fold(decode_tile<T>(spool_.read(child), layout_.tile), across * half, down * half, quantum_, pixels);
+        }
+    return pixels;
 }
 
 /// Counts one more child; gives the pixels when it was the last.
 template <typename T>
 Plane<T> Folder<T>::taken_if_whole(const TileKey& parent) {
-    const std::lock_guard guard(lock_);
-    const auto found = parents_.find(layout_.index(parent));
-    if (--found->second.waiting > 0) return {};
-    auto pixels = std::move(found->second.pixels);
-    parents_.erase(found);
-    return pixels;
+    Plane<T> pixels;
+    {
+        const std::lock_guard guard(lock_);
+        const auto found = parents_.find(layout_.index(parent));
+        if (--found->second.waiting > 0) return {};
+        pixels = std::move(found->second.pixels);
+        parents_.erase(found);
+        if (!pixels.empty()) --held_;
+    }
+    return pixels.empty() ? made_from_spool(parent) : std::move(pixels);
 }
 
 /// Takes in the tiles an earlier run has left in the spool without the overview tile above them.
@@ -227,12 +256,12 @@ struct Pyramid::State {
     std::variant<std::monostate, Folder<float>, Folder<std::uint16_t>> folder;
 };
 
-Pyramid::Pyramid(const LayerFile& layer, Spool& spool) : state_(std::make_unique<State>()) {
+Pyramid::Pyramid(const LayerFile& layer, Spool& spool, std::size_t most_bytes) : state_(std::make_unique<State>()) {
     assert(layout_of(layer) == spool.layout());
     if (layer.sample == Sample::float32)
-        state_->folder.emplace<Folder<float>>(layer, spool).restore();
+        state_->folder.emplace<Folder<float>>(layer, spool, most_bytes).restore();
     else
-        state_->folder.emplace<Folder<std::uint16_t>>(layer, spool).restore();
+        state_->folder.emplace<Folder<std::uint16_t>>(layer, spool, most_bytes).restore();
 }
 Pyramid::~Pyramid() = default;
 

@@ -99,3 +99,39 @@ TEST_CASE("Pyramid: goes on from an interrupted run and ends with the same bytes
     finish_layer(layer, spool, statistics, folder.path() / "resumed.tif");
     CHECK(sha256_of_file(folder.path() / "resumed.tif") == expected);
 }
+
+TEST_CASE("Pyramid: overviews beyond the memory limit are made from the spool, with the same bits", "[raster][differential]") {
+    // 5 x 3 tiles of 64: parents with four, two and one children.
+    LayerFile layer;
+    layer.name = "layer";
+    layer.grid = {300, 170, {0, 1, 0, 0, 0, -1}, {}};
+    layer.tile = 64;
+    layer.bands.resize(2);
+    layer.quantum = 0.125f;
+    std::vector<std::vector<std::byte>> found[2];
+    for (const std::size_t limit : {std::size_t{1} << 30, std::size_t{0}}) {
+        test::TemporaryFolder folder;
+        auto spool = Spool::create(folder.path() / "s", layout_of(layer));
+        Pyramid pyramid(layer, spool, limit);
+        for (int band = 0; band < 2; ++band)
+            for (int row = 0; row < 3; ++row)
+                for (int column = 0; column < 5; ++column) {
+                    Plane<float> tile(std::min(64, 300 - 64 * column), std::min(64, 170 - 64 * row));
+                    for (int r = 0; r < tile.height(); ++r)
+                        for (int c = 0; c < tile.width(); ++c)
+                            tile.at(c, r) = (c * r) % 7 == 0 ? std::numeric_limits<float>::quiet_NaN()
+                                                             : static_cast<float>(band + (column * 64 + c) % 13 + row * 0.125);
+                    pyramid.put(band, column, row, tile);
+                }
+        CHECK(spool.missing() == 0);
+        CHECK((pyramid.peak_bytes() == 0) == (limit == 0));
+        for (int level = 0; level < static_cast<int>(layout_of(layer).levels.size()); ++level) {
+            const auto& size = layout_of(layer).levels[static_cast<std::size_t>(level)];
+            for (int band = 0; band < 2; ++band)
+                for (int row = 0; row < size.rows; ++row)
+                    for (int column = 0; column < size.columns; ++column)
+                        found[limit == 0].push_back(spool.read({level, band, column, row}));
+        }
+    }
+    CHECK(found[0] == found[1]);
+}

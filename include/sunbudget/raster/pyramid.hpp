@@ -24,7 +24,9 @@ class Pyramid {
   public:
     /// `spool` must be of the layer's layout and outlive this object. Tiles that it holds already,
     /// from an earlier run, are taken into the overviews that are still missing.
-    Pyramid(const LayerFile& layer, Spool& spool);
+    /// Overview tiles in the making take up to `most_bytes`; those beyond are made from the spool when
+    /// their last child has come, which costs decoding it again and changes no bit.
+    Pyramid(const LayerFile& layer, Spool& spool, std::size_t most_bytes = std::size_t{1} << 30);
     ~Pyramid();
 
     /// Takes one full-resolution tile, each once; safe to call from many threads.
