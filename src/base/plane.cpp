@@ -2,6 +2,7 @@
 
 #include <sys/mman.h>
 
+#include <bit>
 #include <map>
 #include <mutex>
 #include <new>
@@ -21,6 +22,12 @@ struct Kept {
     std::size_t bytes = 0;
 };
 
+/// Pieces come in eight sizes for each power of two, so that planes of nearly one size share them.
+std::size_t rounded_up(std::size_t bytes) {
+    const std::size_t step = std::bit_floor(bytes) / 8;
+    return (bytes + step - 1) / step * step;
+}
+
 /// Never destroyed: planes may outlive the end of main.
 Kept& kept() {
     static auto* pool = new Kept;
@@ -31,6 +38,7 @@ Kept& kept() {
 
 void* take_plane_memory(std::size_t bytes) {
     if (bytes < large_bytes) return ::operator new(bytes, row_border);
+    bytes = rounded_up(bytes);
     {
         auto& pool = kept();
         const std::lock_guard hold(pool.mutex);
@@ -51,6 +59,7 @@ void give_plane_memory_back(void* memory, std::size_t bytes) noexcept {
         ::operator delete(memory, row_border);
         return;
     }
+    bytes = rounded_up(bytes);
     auto& pool = kept();
     const std::lock_guard hold(pool.mutex);
     if (pool.bytes + bytes <= kept_at_most) {

@@ -97,16 +97,20 @@ Window extent_on_grid(std::span<const Source> sources, const Grid& grid) {
     for (const auto& source : sources) {
         const auto& from = source.info().grid;
         constexpr int steps = 32;
+        std::vector<double> column, row;
         for (int i = 0; i <= steps; ++i)
             for (int j = 0; j <= steps; ++j) {
-                const double column = from.width * (i / double{steps}), row = from.height * (j / double{steps});
-                const auto place = place_in(grid, from.easting(column, row), from.northing(column, row), from.crs_wkt);
-                if (!place) continue;
-                left = std::min(left, place->column);
-                right = std::max(right, place->column);
-                top = std::min(top, place->row);
-                bottom = std::max(bottom, place->row);
+                column.push_back(from.width * (i / double{steps}));
+                row.push_back(from.height * (j / double{steps}));
             }
+        places_in(grid, from, column, row);
+        for (std::size_t i = 0; i < column.size(); ++i) {
+            if (std::isnan(column[i]) || std::isnan(row[i])) continue;
+            left = std::min(left, column[i]);
+            right = std::max(right, column[i]);
+            top = std::min(top, row[i]);
+            bottom = std::max(bottom, row[i]);
+        }
     }
     // A source that wraps round the world, or one seen from another side of it, says nothing useful here.
     const auto whole = [](double value) { return std::clamp(value, -1e6, 1e6); };

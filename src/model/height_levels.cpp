@@ -32,21 +32,37 @@ struct HeightLevels::Store {
     int level_count;
     long piece_px;  ///< pieces of this many pixels a side are made at once, all levels
     Window area;    ///< in pixels, on borders of pieces
+    Window ground;  ///< pixels on which the rasters lie
     std::deque<std::once_flag> made;  ///< row by row of pieces
     std::vector<OutputFile> files;    ///< one a level, cells row by row
 
     [[nodiscard]] long pieces_across() const { return area.width / piece_px; }
     [[nodiscard]] long cells_across(int level) const { return area.width >> level; }
 
+    [[nodiscard]] Plane<float> read_piece(const Window& piece, ElevationReader& reader) const;
     void make_piece(long piece_column, long piece_row, ElevationReader& reader);
     void ensure(const Window& cells, int level, ElevationReader& reader);
     [[nodiscard]] LevelPatch patch(int level, const Window& window, ElevationReader& reader);
 };
 
+/// Heights of a piece; where no raster lies none is asked, which would cost as much as where one does.
+Plane<float> HeightLevels::Store::read_piece(const Window& piece, ElevationReader& reader) const {
+    Plane<float> heights_m(piece.width, piece.height, nan_value);
+    const long left = std::max(piece.column, ground.column), top = std::max(piece.row, ground.row);
+    const long right = std::min(piece.column + piece.width, ground.column + ground.width);
+    const long bottom = std::min(piece.row + piece.height, ground.row + ground.height);
+    if (left >= right || top >= bottom) return heights_m;
+    Plane<float> part;
+    reader.read({left, top, static_cast<int>(right - left), static_cast<int>(bottom - top)}, part);
+    for (int r = 0; r < part.height(); ++r)
+        std::ranges::copy(part.row(r), heights_m.row(static_cast<int>(top - piece.row) + r).begin() + (left - piece.column));
+    return heights_m;
+}
+
 void HeightLevels::Store::make_piece(long piece_column, long piece_row, ElevationReader& reader) {
-    Plane<float> heights_m;
     const int side = static_cast<int>(piece_px);
-    reader.read({area.column + piece_column * piece_px, area.row + piece_row * piece_px, side, side}, heights_m);
+    const Window piece{area.column + piece_column * piece_px, area.row + piece_row * piece_px, side, side};
+    const auto heights_m = read_piece(piece, reader);
     const auto made_levels = build_levels(heights_m, level_count);
     std::vector<Cell> row;
     for (int level = 1; level <= level_count; ++level) {
@@ -103,7 +119,11 @@ HeightLevels::HeightLevels(std::span<const Source> sources, const Grid& grid, in
     s.level_count = levels;
     constexpr long usual_piece_px = 1024;
     s.piece_px = std::max(usual_piece_px, 1L << levels);
-    const auto ground = extent_on_grid(sources, grid);
+    // A few pixels more: the outline is of a sample of places.
+    constexpr int spare_px = 8;
+    auto ground = extent_on_grid(sources, grid);
+    ground = {ground.column - spare_px, ground.row - spare_px, ground.width + 2 * spare_px, ground.height + 2 * spare_px};
+    s.ground = ground;
     // Looks interpolate between cells, so a little more than the reach.
     const long margin = static_cast<long>(std::ceil(sight.reach_m / step_m)) + (4L << levels);
     const long left = floor_to(std::max(-margin, ground.column), s.piece_px), top = floor_to(std::max(-margin, ground.row), s.piece_px);

@@ -86,6 +86,17 @@ std::optional<PixelMatrix> Locator::matrix(double column, double row) const {
     return found;
 }
 
+void places_in(const Grid& grid, const Grid& from, std::span<double> column, std::span<double> row) {
+    for (std::size_t i = 0; i < column.size(); ++i) {
+        const double easting = from.easting(column[i], row[i]), northing = from.northing(column[i], row[i]);
+        column[i] = easting;
+        row[i] = northing;
+    }
+    if (!same_crs(grid.crs_wkt, from.crs_wkt)) PointTransform(from.crs_wkt, grid.crs_wkt, from).apply(column, row);
+    for (std::size_t i = 0; i < column.size(); ++i)
+        if (!std::isnan(column[i]) && !std::isnan(row[i])) to_pixels(grid.affine, column[i], row[i]);
+}
+
 std::optional<PixelPlace> place_in(const Grid& grid, double easting, double northing,
                                    const std::string& crs_wkt) {
     if (!same_crs(grid.crs_wkt, crs_wkt)) {

@@ -55,4 +55,10 @@ class Locator {
 [[nodiscard]] std::optional<PixelPlace> place_in(const Grid& grid, double easting, double northing,
                                                  const std::string& crs_wkt);
 
+/// Where places of another grid fall in a grid: many at once, NaN where there is no answer.
+///
+/// in      column, row  of `from`, counted from its first pixel's outer corner
+/// out     the same in pixels of `grid`, in place
+void places_in(const Grid& grid, const Grid& from, std::span<double> column, std::span<double> row);
+
 }  // namespace sunbudget
