@@ -1,7 +1,9 @@
 #include "sunbudget/base/parallel.hpp"
 
 #include <catch2/catch.hpp>
+#include <chrono>
 #include <stdexcept>
+#include <thread>
 #include <vector>
 
 using namespace sunbudget;
@@ -24,6 +26,9 @@ TEST_CASE("parallel_for: an exception reaches the caller and stops the loop", "[
                                  [&](std::size_t i, int) {
                                      ++calls;
                                      if (i == 3) throw std::runtime_error("three");
+                                     // All of them would take 50 s: the other thread cannot run through
+                                     // before the exception is seen.
+                                     std::this_thread::sleep_for(std::chrono::milliseconds(1));
                                  }),
                     std::runtime_error);
     CHECK(calls < 100000);
