@@ -10,11 +10,12 @@
 #include <cerrno>
 #include <cstring>
 #include <fstream>
-#include <sstream>
+#include <span>
 
 #include "sunbudget/base/digest.hpp"
 #include "sunbudget/base/error.hpp"
 #include "sunbudget/base/text.hpp"
+#include "sunbudget/raster/output_file.hpp"
 
 namespace sunbudget {
 
@@ -28,17 +29,6 @@ constexpr const char* staging_prefix = ".sunbudget-";
 
 [[noreturn]] void cannot(const std::string& what, const fs::path& where, const std::string& todo = {}) {
     throw Error(Cause::output, what + ": " + std::strerror(errno), where.string(), todo);
-}
-
-void sync_file(const fs::path& file) {
-    const int descriptor = open(file.c_str(), O_RDONLY | O_NOFOLLOW | O_CLOEXEC);
-    if (descriptor < 0) cannot("cannot open the finished file", file);
-    const bool synced = fsync(descriptor) == 0;
-    // A second fsync may claim success for data that the first one lost: the first answer is final.
-    const int failure = errno;
-    close(descriptor);
-    errno = failure;
-    if (!synced) cannot("cannot write the file to the disk", file);
 }
 
 std::string read_small(int descriptor) {
@@ -129,7 +119,7 @@ void OutputSet::write_checksums(const std::vector<std::string>& names) const {
 
 void OutputSet::publish(const std::vector<std::string>& names) {
     const auto former = mark_ == Mark::checksums ? complete_set(folder_) : std::vector<std::string>();
-    for (const auto& name : names) sync_file(staged(name));
+    for (const auto& name : names) OutputFile::open(staged(name), true).sync();
     if (mark_ == Mark::checksums) {
         write_checksums(names);
         if (unlinkat(folder_descriptor_, checksum_file, 0) != 0 && errno != ENOENT)
@@ -167,23 +157,9 @@ std::vector<std::string> complete_set(const fs::path& folder) {
 }
 
 void write_text_file(const fs::path& file, const std::string& text) {
-    const int descriptor = open(file.c_str(), O_WRONLY | O_CREAT | O_EXCL | O_NOFOLLOW | O_CLOEXEC, 0644);
-    if (descriptor < 0) cannot("cannot make the file", file);
-    std::size_t done = 0;
-    while (done < text.size()) {
-        const auto wrote = write(descriptor, text.data() + done, text.size() - done);
-        if (wrote < 0 && errno == EINTR) continue;
-        if (wrote < 0) {
-            close(descriptor);
-            cannot("cannot write the file", file, "free some space and run again");
-        }
-        done += static_cast<std::size_t>(wrote);
-    }
-    if (fsync(descriptor) != 0) {
-        close(descriptor);
-        cannot("cannot write the file to the disk", file);
-    }
-    close(descriptor);
+    auto out = OutputFile::create(file);
+    out.write(0, std::as_bytes(std::span(text)));
+    out.sync();
 }
 
 }  // namespace sunbudget

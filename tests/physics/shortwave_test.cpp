@@ -72,28 +72,3 @@ TEST_CASE("absorbed_shortwave: black takes all, a mirror nothing", "[physics][pr
     CHECK(out == Row{0, 0, 0});
 }
 
-TEST_CASE("quantise: equals rounding in double precision, bit for bit", "[physics][differential]") {
-    const auto count = GENERATE(as<std::size_t>{}, 1, 15, 64, 1001);
-    const float quantum = GENERATE(1.0F / 8192, 1.0F / 16, 1.0F, 4096.0F);
-    auto row = random_row(count, -3e4F, 3e6F, 8);
-    for (std::size_t i = 0; i + 1 < count; i += 5)
-        row[i] = (static_cast<float>(i) + 0.5F) * quantum;  // halves
-    const Row before = row;
-    quantise(row, quantum);
-    for (std::size_t i = 0; i < count; ++i) {
-        CAPTURE(before[i], quantum);
-        REQUIRE(static_cast<double>(row[i]) == quantised_reference(before[i], quantum));
-    }
-}
-
-TEST_CASE("quantise: nodata stays, and a second time changes nothing", "[physics][edge]") {
-    Row row{nodata, 1.03F, -0.0F, 7.5e8F};
-    quantise(row, 1.0F / 16);
-    CHECK(std::isnan(row[0]));
-    CHECK(row[1] == 1.0F);
-    CHECK(row[3] == 7.5e8F);
-    const Row once = row;
-    quantise(row, 1.0F / 16);
-    CHECK(row[1] == once[1]);
-    CHECK(row[3] == once[3]);
-}

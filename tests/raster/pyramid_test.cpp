@@ -4,13 +4,30 @@
 #include <catch2/catch.hpp>
 #include <cmath>
 #include <limits>
+#include <random>
 
 #include "layer_maker.hpp"
+#include "reference/shortwave.hpp"
 #include "sunbudget/base/digest.hpp"
 #include "support/vectors.hpp"
 
 using namespace sunbudget;
 using namespace sunbudget::test;
+
+TEST_CASE("round_row: equals rounding in double precision, bit for bit", "[raster][differential]") {
+    const float quantum = GENERATE(1.0f / 8192, 1.0f / 16, 1.0f / 256, 2.0f);
+    std::mt19937 random(7);
+    std::uniform_real_distribution<float> values(-2000, 2000);
+    std::vector<float> row(1000);
+    for (auto& value : row) value = values(random);
+    for (int i = 0; i < 100; ++i) row[static_cast<std::size_t>(i)] = (static_cast<float>(i) + 0.5f) * quantum;  // halves
+    const auto before = row;
+    round_row(row, quantum);
+    int differ = 0;
+    for (std::size_t i = 0; i < row.size(); ++i)
+        differ += static_cast<double>(row[i]) != quantised_reference(static_cast<double>(before[i]), static_cast<double>(quantum));
+    CHECK(differ == 0);
+}
 
 TEST_CASE("round_row: nearest multiple, halves to even, never minus zero", "[raster]") {
     std::vector<float> row{0.03F,    -0.03F,   0.09375F,

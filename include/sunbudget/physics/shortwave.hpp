@@ -17,13 +17,4 @@ void absorbed_shortwave(std::span<const float> albedo_direct, std::span<const fl
                         std::span<const float> albedo_diffuse, std::span<const float> diffuse,
                         std::span<float> absorbed) noexcept;
 
-/// Rounds each value of a row to the nearest multiple of `quantum`, halves to the even one, so that
-/// stored floats keep only the bits that mean something.
-///
-/// shape   one row, in place
-/// units   those of the row
-/// nodata  NaN stays NaN
-/// errors  none; quantum must be a power of two from 2^-60 to 2^60 (asserted)
-void quantise(std::span<float> row, float quantum) noexcept;
-
 }  // namespace sunbudget
