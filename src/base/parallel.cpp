@@ -9,9 +9,15 @@
 #include <fstream>
 #include <string>
 
+#include "sunbudget/base/error.hpp"
+
 namespace sunbudget {
 
 std::atomic<int> stop_signal{0};
+
+void throw_if_stopped() {
+    if (stop_signal.load() != 0) throw Error(Cause::temporary, "stopped by a signal", {}, "run again");
+}
 
 namespace {
 /// CPUs granted by the control group (version 2, then version 1), or 0 where there is no limit.

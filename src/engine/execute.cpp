@@ -120,10 +120,6 @@ std::uint64_t bytes_per_pixel(const Run& run) {
     return plain + terrain + a_band * std::min(bands, bands_held);
 }
 
-void stop_if_asked() {
-    if (stop_signal.load() != 0) throw Error(Cause::temporary, "stopped by a signal", {}, "run again");
-}
-
 void check_space(const Run& run, const std::filesystem::path& folder) {
     // The least any run writes: a run that cannot hold even this is refused before it starts.
     const double pixels = static_cast<double>(run.grid.width) * run.grid.height;
@@ -179,7 +175,7 @@ Execution execute(const Run& run, const EngineOptions& options, const OutputSet&
         const auto done = pixels_done += static_cast<std::uint64_t>(window.width) * static_cast<std::uint64_t>(window.height);
         report("computing", static_cast<double>(done) / 1e6, pixels / 1e6, "Mpixel");
     });
-    stop_if_asked();
+    throw_if_stopped();
 
     Execution result;
     for (const auto& flow : flows) {
@@ -200,7 +196,7 @@ Execution execute(const Run& run, const EngineOptions& options, const OutputSet&
         work.spool.remove();
         finished.bytes = std::filesystem::file_size(file);
         result.layers.push_back(std::move(finished));
-        stop_if_asked();
+        throw_if_stopped();
     }
     return result;
 }

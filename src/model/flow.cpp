@@ -6,7 +6,7 @@
 #include <numbers>
 #include <optional>
 
-#include "sunbudget/base/units.hpp"
+#include "sunbudget/base/parallel.hpp"
 #include "sunbudget/model/neighbourhood.hpp"
 #include "sunbudget/model/shading.hpp"
 #include "sunbudget/model/surface.hpp"
@@ -182,6 +182,7 @@ void Flow::State::terrain_bands(std::size_t first, std::size_t count) {
     }
     const auto blocks = blocks_of(window);
     for (std::size_t b = 0; b < blocks.size(); ++b) {
+        throw_if_stopped();
         std::vector<ShadedBlock> parts;
         for (const auto& part : steady_parts(blocks[b], locator())) {
             parts.emplace_back();

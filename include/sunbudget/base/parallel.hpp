@@ -10,6 +10,9 @@ namespace sunbudget {
 /// new work when it is not 0.
 extern std::atomic<int> stop_signal;
 
+/// Throws Error(temporary) after a stop signal: for long work between two looks of parallel_for.
+void throw_if_stopped();
+
 /// Threads this process may use: the affinity mask and the control group's CPU quota, at least 1.
 [[nodiscard]] int available_threads();
 
