@@ -225,18 +225,19 @@ void Flow::State::compose(const ShadedBlock& part, std::size_t band) {
     std::vector<float> circumsolar(static_cast<std::size_t>(part.block.width));
     auto& out = bands[band];
     const auto open_row = [&](Part p, int r) { return over(open[static_cast<std::size_t>(p)], window, part.block, r); };
-    const auto sunlit = [&](std::size_t kind, Part east, Part north, Part up, int r) {
-        const std::size_t i = sun_kinds * band + kind;
-        const auto& whole = part.whole[i];
-        return SunlightRow{part.light[i].row(r), part.hours[i].row(r), whole.east, whole.north, whole.up, whole.hours,
+    const auto sunlit = [&](const Plane<float>& shaded, const std::array<float, 3>& whole, Part east, Part north, Part up, int r) {
+        return SunlightRow{shaded.row(r), part.hours[band].row(r), whole[0], whole[1], whole[2], part.whole[band].hours,
                            open_row(east, r), open_row(north, r), open_row(up, r)};
     };
     for (int r = 0; r < part.block.height; ++r) {
         const NormalRow normal{part.east.row(r), part.north.row(r), part.up.row(r)};
         if (needs.suns) {
-            sunlight(sunlit(0, Part::beam_east, Part::beam_north, Part::beam_up, r), normal, over(out.direct, window, part.block, r));
-            sunlight(sunlit(1, Part::circumsolar_east, Part::circumsolar_north, Part::circumsolar_up, r), normal, circumsolar);
-            time_in_sun(part.hours[sun_kinds * band].row(r), part.whole[sun_kinds * band].hours, open_row(Part::sunlit_h_a_day, r),
+            sunlight(sunlit(part.beam[band], part.whole[band].beam, Part::beam_east, Part::beam_north, Part::beam_up, r), normal,
+                     over(out.direct, window, part.block, r));
+            sunlight(sunlit(part.around[band], part.whole[band].around, Part::circumsolar_east, Part::circumsolar_north,
+                            Part::circumsolar_up, r),
+                     normal, circumsolar);
+            time_in_sun(part.hours[band].row(r), part.whole[band].hours, open_row(Part::sunlit_h_a_day, r),
                         over(out.hours, window, part.block, r));
         }
         if (!needs.sky_view) continue;

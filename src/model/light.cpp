@@ -133,17 +133,16 @@ OpenLight PointLight::at(std::size_t band, double latitude_rad, double longitude
     return sum;
 }
 
-SunPath PointLight::path(std::size_t band, double latitude_rad, double longitude_rad, double height_m) const {
-    SunPath path;
+std::vector<SunStep> PointLight::path(std::size_t band, double latitude_rad, double longitude_rad, double height_m) const {
+    std::vector<SunStep> path;
     const double pressure = pressure_ratio(height_m);
     work_->visit(band, latitude_rad, longitude_rad, height_m, [&](const LitMoment& m) {
         const double begin = apparent_sine(m.sine_begin, pressure), end = apparent_sine(m.sine_end, pressure);
-        SunStep step{std::atan2(m.to_sun[0], m.to_sun[1]), std::min(begin, end), std::max(begin, end),
-                     scaled(m.to_sun, m.sky.beam_normal_w_m2 * m.weight), m.sunlit_h_a_day()};
-        if (step.azimuth_rad < 0) step.azimuth_rad += 2 * std::numbers::pi;
-        path.beam.push_back(step);
-        step.beam = scaled(m.to_sun, m.sky.parts.circumsolar_normal_w_m2 * m.weight);
-        path.circumsolar.push_back(step);
+        double azimuth_rad = std::atan2(m.to_sun[0], m.to_sun[1]);
+        if (azimuth_rad < 0) azimuth_rad += 2 * std::numbers::pi;
+        path.push_back({azimuth_rad, std::min(begin, end), std::max(begin, end),
+                        scaled(m.to_sun, m.sky.beam_normal_w_m2 * m.weight), m.sunlit_h_a_day(),
+                        scaled(m.to_sun, m.sky.parts.circumsolar_normal_w_m2 * m.weight)});
     });
     return path;
 }

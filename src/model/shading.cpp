@@ -187,12 +187,12 @@ void BlockShader::State::cast_all_round(const Frame& frame, const SunSectors* se
     for (auto* plane : {&before, &after, &first})
         if (plane->width() != block.width || plane->height() != block.height) *plane = Plane<float>(block.width, block.height);
     Plane<float> tangent(block.width, block.height);
-    std::vector<BeamSums> sums(out.light.size());
+    std::vector<BeamSums> sums(out.beam.size());
     const auto normal_row = [&](int r) { return NormalRow{out.east.row(r), out.north.row(r), out.up.row(r)}; };
     const auto add_sector = [&](int direction, const Plane<float>& from, const Plane<float>& to) {
         if (sectors == nullptr || sectors->after(direction).empty) return;
         for (int r = 0; r < block.height; ++r) {
-            for (std::size_t i = 0; i < sums.size(); ++i) sums[i] = {out.light[i].row(r), out.hours[i].row(r)};
+            for (std::size_t i = 0; i < sums.size(); ++i) sums[i] = {out.beam[i].row(r), out.hours[i].row(r), out.around[i].row(r)};
             sectors->after(direction).add_to({from.row(r), to.row(r)}, normal_row(r), sums);
         }
     };
@@ -217,14 +217,13 @@ void BlockShader::State::cast_all_round(const Frame& frame, const SunSectors* se
 void BlockShader::State::cast_own(const Frame& frame, const FewSuns& few, ShadedBlock& out) {
     Plane<float> sine(out.block.width, out.block.height);
     for (const auto& sun : few.suns) {
-        cast(frame, sun.azimuth_rad, out.block, sine);
-        const std::size_t i = sun_kinds * sun.band;
+        cast(frame, sun.placed.sun.azimuth_rad, out.block, sine);
         for (int r = 0; r < out.block.height; ++r) {
             horizon_sines(sine.row(r), sine.row(r));
             const HorizonPair horizon{sine.row(r), sine.row(r)};
             const NormalRow normal{out.east.row(r), out.north.row(r), out.up.row(r)};
-            add_suns({&sun.beam, 1}, horizon, normal, {out.light[i].row(r), out.hours[i].row(r)});
-            add_suns({&sun.circumsolar, 1}, horizon, normal, {out.light[i + 1].row(r), out.hours[i + 1].row(r)});
+            add_suns({&sun.placed, 1}, horizon, normal,
+                     {out.beam[sun.band].row(r), out.hours[sun.band].row(r), out.around[sun.band].row(r)});
         }
     }
 }
@@ -240,11 +239,9 @@ void BlockShader::shade(const Window& block, std::size_t first_band, std::size_t
     s.read_slopes(block);
     s.normals(*frame, out);
     out.sky_view = sky_view ? Plane<float>(block.width, block.height) : Plane<float>();
-    out.light.clear();
-    out.hours.clear();
-    for (std::size_t i = 0; i < sun_kinds * bands; ++i) {
-        out.light.emplace_back(block.width, block.height);
-        out.hours.emplace_back(block.width, block.height);
+    for (auto* planes : {&out.beam, &out.around, &out.hours}) {
+        planes->clear();
+        for (std::size_t i = 0; i < bands; ++i) planes->emplace_back(block.width, block.height);
     }
     std::shared_ptr<const SunSectors> sectors;
     out.whole.clear();
@@ -258,7 +255,7 @@ void BlockShader::shade(const Window& block, std::size_t first_band, std::size_t
             out.whole = few.whole;
         } else {
             sectors = s.shared.sectors(block, first_band, bands, *s.light, s.thread, s.elevation);
-            for (std::size_t i = 0; i < sun_kinds * bands; ++i) out.whole.push_back(sectors->whole(i));
+            out.whole = sectors->whole();
         }
     }
     if (sectors || sky_view) s.cast_all_round(*frame, sectors.get(), sky_view, out);

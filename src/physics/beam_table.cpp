@@ -3,6 +3,7 @@
 #include <algorithm>
 #include <cassert>
 #include <cmath>
+#include <cstring>
 
 #include "sunbudget/base/simd.hpp"
 
@@ -44,39 +45,42 @@ void positions(const float* before, const float* after, float weight, Positions&
     }
 }
 
-using Looked = std::array<BeamTable::Entry, chunk>;
+/// Eight lanes side by side. Only plain vector arithmetic, so that every CPU gives the same bits.
+using Lanes = float __attribute__((vector_size(32)));
+using Pick = int __attribute__((vector_size(32)));
 
-/// One entry between two of a table; four values side by side, so the compiler takes one vector each.
-inline BeamTable::Entry looked_up(const BeamTable::Entry* table, int index, float share) noexcept {
-    const auto& low = table[index];
-    const auto& high = table[index + 1];
-    BeamTable::Entry entry;
-    for (std::size_t k = 0; k < entry.size(); ++k) entry[k] = low[k] + share * (high[k] - low[k]);
-    return entry;
-}
+struct LookUp {
+    const BeamTable::Entry *first, *second;  ///< of the table's two halves
+    const Positions *at_first, *at_second;
+    const float *east, *north, *up;
+    float *beam, *hours, *around;  ///< around may be null
+};
 
-void look_up(const BeamTable& table, const std::array<Positions, 2>& at, Looked& found,
-             std::size_t count) noexcept {
-    const auto* first = table.half(0);
-    const auto* second = table.half(1);
-    for (std::size_t i = 0; i < count; ++i) {
-        const auto a = looked_up(first, at[0].index[i], at[0].share[i]);
-        const auto b = looked_up(second, at[1].index[i], at[1].share[i]);
-        for (std::size_t k = 0; k < a.size(); ++k) found[i][k] = a[k] + b[k];
-    }
-}
-
+/// Looks up both halves' entries between two of a table, and adds their product with the normals: beam
+/// in the lower four lanes, light from around the sun in the upper four.
 SUNBUDGET_CLONES
-void add_looked_up(const Looked& found, const float* east, const float* north, const float* up,
-                   float* __restrict beam, float* __restrict hours, std::size_t count) noexcept {
+void add_from_table(const LookUp& t, std::size_t count) noexcept {
     for (std::size_t i = 0; i < count; ++i) {
-        beam[i] += (east[i] * found[i][0] + north[i] * found[i][1]) + up[i] * found[i][2];
-        hours[i] += found[i][3];
+        Lanes low, high, other_low, other_high;
+        std::memcpy(&low, t.first + t.at_first->index[i], sizeof low);
+        std::memcpy(&high, t.first + t.at_first->index[i] + 1, sizeof high);
+        std::memcpy(&other_low, t.second + t.at_second->index[i], sizeof other_low);
+        std::memcpy(&other_high, t.second + t.at_second->index[i] + 1, sizeof other_high);
+        const Lanes found = (low + t.at_first->share[i] * (high - low)) +
+                            (other_low + t.at_second->share[i] * (other_high - other_low));
+        const Lanes normal{t.east[i], t.north[i], t.up[i], 1.0F, t.east[i], t.north[i], t.up[i], 0.0F};
+        const Lanes parts = found * normal;
+        const Lanes level = parts + __builtin_shuffle(parts, Pick{1, 1, 1, 1, 5, 5, 5, 5});
+        const Lanes whole = level + __builtin_shuffle(parts, Pick{2, 2, 2, 2, 6, 6, 6, 6});
+        t.beam[i] += whole[0];
+        t.hours[i] += parts[3];
+        if (t.around != nullptr) t.around[i] += whole[4];
     }
 }
 
 struct OneSun {
     float east, north, up, hours;
+    float around_east, around_north, around_up;
     float high;      ///< sine of the highest elevation
     float per_sine;  ///< 1 / (highest - lowest)
     float share;     ///< between the directions
@@ -88,23 +92,48 @@ OneSun one_sun(const PlacedSun& placed) noexcept {
     const double rise = std::max(sun.sine_high - sun.sine_low, 1e-30);
     return {static_cast<float>(sun.beam[0]),   static_cast<float>(sun.beam[1]),
             static_cast<float>(sun.beam[2]),   static_cast<float>(sun.hours),
+            static_cast<float>(sun.around[0]), static_cast<float>(sun.around[1]),
+            static_cast<float>(sun.around[2]),
             static_cast<float>(sun.sine_high), static_cast<float>(1 / rise),
             static_cast<float>(placed.share)};
 }
 
+struct SunRows {
+    const float *before, *after, *east, *north, *up;
+    float *beam, *hours, *around;
+};
+
 SUNBUDGET_CLONES
-void add_one(const OneSun sun, const float* before, const float* after, const float* east,
-             const float* north, const float* up, float* __restrict beam, float* __restrict hours,
-             std::size_t count) noexcept {
+void add_one(const OneSun sun, const SunRows row, std::size_t count) noexcept {
+    const auto* before = row.before;
+    const auto* after = row.after;
+    float* __restrict beam = row.beam;
+    float* __restrict hours = row.hours;
     for (std::size_t i = 0; i < count; ++i) {
         const float horizon = before[i] + sun.share * (after[i] - before[i]);
         const float above = (sun.high - horizon) * sun.per_sine;
         const float capped = above > 1 ? 1.0F : above;
         const float lit = capped < 0 ? 0.0F : capped;  // NaN stays
-        const float facing = (east[i] * sun.east + north[i] * sun.north) + up[i] * sun.up;
+        const float facing = (row.east[i] * sun.east + row.north[i] * sun.north) + row.up[i] * sun.up;
         const float front = facing < 0 ? 0.0F : facing;
         beam[i] += lit * front;
         hours[i] += lit * sun.hours;
+    }
+}
+
+SUNBUDGET_CLONES
+void add_one_around(const OneSun sun, const SunRows row, std::size_t count) noexcept {
+    const auto* before = row.before;
+    const auto* after = row.after;
+    float* __restrict around = row.around;
+    for (std::size_t i = 0; i < count; ++i) {
+        const float horizon = before[i] + sun.share * (after[i] - before[i]);
+        const float above = (sun.high - horizon) * sun.per_sine;
+        const float capped = above > 1 ? 1.0F : above;
+        const float lit = capped < 0 ? 0.0F : capped;
+        const float facing =
+            (row.east[i] * sun.around_east + row.north[i] * sun.around_north) + row.up[i] * sun.around_up;
+        around[i] += lit * (facing < 0 ? 0.0F : facing);
     }
 }
 
@@ -128,7 +157,8 @@ void BeamTable::add(const SunStep& sun, double share) {
     whole_.resize(2 * size);
     ++suns_;
     const std::size_t start = share < 0.5 ? 0 : size;
-    const Sum sum{sun.beam[0], sun.beam[1], sun.beam[2], sun.hours};
+    const Sum sum{sun.beam[0],   sun.beam[1],   sun.beam[2],  sun.hours,
+                  sun.around[0], sun.around[1], sun.around[2]};
     const auto add_to = [&](Sum& target, double times) {
         for (std::size_t k = 0; k < sum.size(); ++k) target[k] += times * sum[k];
     };
@@ -151,7 +181,7 @@ void BeamTable::finish() {
             const auto at = static_cast<std::size_t>(which * (bins + 1) + entry);
             for (std::size_t k = 0; k < above.size(); ++k) {
                 above[k] += whole_[at][k];
-                entries_[at][k] = static_cast<float>(above[k] + part_[at][k]);
+                entries_[at].lane[k] = static_cast<float>(above[k] + part_[at][k]);
             }
         }
     }
@@ -164,7 +194,6 @@ void add_beams(std::span<const BeamTable> tables, const HorizonPair& horizon,
     assert(tables.size() == sums.size() && horizon.before.size() == horizon.after.size());
     const std::size_t width = horizon.before.size();
     std::array<Positions, 2> at;
-    Looked found;
     for (std::size_t from = 0; from < width; from += chunk) {
         const std::size_t count = std::min(chunk, width - from);
         for (std::size_t half = 0; half < 2; ++half)
@@ -172,10 +201,11 @@ void add_beams(std::span<const BeamTable> tables, const HorizonPair& horizon,
                       at[half], count);
         for (std::size_t period = 0; period < tables.size(); ++period) {
             if (tables[period].empty()) continue;
-            look_up(tables[period], at, found, count);
-            add_looked_up(found, normal.east.data() + from, normal.north.data() + from,
-                          normal.up.data() + from, sums[period].beam.data() + from,
-                          sums[period].hours.data() + from, count);
+            const auto& sum = sums[period];
+            add_from_table({tables[period].half(0), tables[period].half(1), &at[0], &at[1], normal.east.data() + from,
+                            normal.north.data() + from, normal.up.data() + from, sum.beam.data() + from,
+                            sum.hours.data() + from, sum.around.empty() ? nullptr : sum.around.data() + from},
+                           count);
         }
     }
 }
@@ -187,10 +217,17 @@ void add_suns(std::span<const PlacedSun> suns, const HorizonPair& horizon, const
     assert(sums.hours.size() == width && normal.up.size() == width);
     for (std::size_t from = 0; from < width; from += sun_chunk) {
         const std::size_t count = std::min(sun_chunk, width - from);
-        for (const auto& placed : suns)
-            add_one(one_sun(placed), horizon.before.data() + from, horizon.after.data() + from,
-                    normal.east.data() + from, normal.north.data() + from, normal.up.data() + from,
-                    sums.beam.data() + from, sums.hours.data() + from, count);
+        const SunRows row{horizon.before.data() + from,
+                          horizon.after.data() + from,
+                          normal.east.data() + from,
+                          normal.north.data() + from,
+                          normal.up.data() + from,
+                          sums.beam.data() + from,
+                          sums.hours.data() + from,
+                          sums.around.empty() ? nullptr : sums.around.data() + from};
+        for (const auto& placed : suns) add_one(one_sun(placed), row, count);
+        if (row.around != nullptr)
+            for (const auto& placed : suns) add_one_around(one_sun(placed), row, count);
     }
 }
 

@@ -29,13 +29,6 @@ struct OpenLight {
     static constexpr std::size_t values = 9;
 };
 
-/// The sun's way over one place in one band: what the shadows are worked out with. Weights are such
-/// that the sums are those of OpenLight.
-struct SunPath {
-    std::vector<SunStep> beam;         ///< hours: for each 24 h of the period
-    std::vector<SunStep> circumsolar;  ///< the same steps, the sky light that comes with the sun
-};
-
 /// The light of every band at one place, computed without any table: what LightField interpolates
 /// and what the tests hold it to. Safe to call from several threads.
 class PointLight {
@@ -48,7 +41,10 @@ class PointLight {
     [[nodiscard]] OpenLight at(std::size_t band, double latitude_rad, double longitude_rad, double height_m) const;
     /// About how many suns the paths of some bands hold, anywhere on Earth: known without looking.
     [[nodiscard]] std::size_t most_suns(std::size_t first_band, std::size_t bands) const;
-    [[nodiscard]] SunPath path(std::size_t band, double latitude_rad, double longitude_rad, double height_m) const;
+    /// The sun's way over the place in one band: what the shadows are worked out with. Beam, light from
+    /// around the sun and hours (for each 24 h of the period) add up to those of at().
+    [[nodiscard]] std::vector<SunStep> path(std::size_t band, double latitude_rad, double longitude_rad,
+                                            double height_m) const;
 
   private:
     struct Work;

@@ -53,9 +53,10 @@ struct ShadedBlock {
     Plane<float> east, north, up;  ///< unit normals
     Plane<float> sky_view;         ///< empty unless asked for
     std::size_t first_band = 0;
-    std::vector<Plane<float>> light;  ///< by accumulator: on the inclined surface, over the reference place
-    std::vector<Plane<float>> hours;
-    std::vector<WholeSun> whole;      ///< by accumulator, of the reference place
+    /// By band, over the reference place, on the inclined surface: beam, light from around the sun, and
+    /// hours in the sun.
+    std::vector<Plane<float>> beam, around, hours;
+    std::vector<WholeSun> whole;  ///< by band, of the reference place
 };
 
 /// One thread's horizons and shadows, block by block.

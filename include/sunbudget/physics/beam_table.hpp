@@ -19,17 +19,20 @@ struct SunStep {
     /// length for sums: W m-2 or J m-2.
     std::array<double, 3> beam{};
     double hours = 0;
+    /// The same of the sky light that comes from around the sun and is shaded with it.
+    std::array<double, 3> around{};
 };
 
 /// Sines of the horizons' elevation from their tangents: what the suns are compared with.
 /// nodata  NaN goes through
 void horizon_sines(std::span<const float> tangent, std::span<float> sine) noexcept;
 
-/// Beam of a pixel and hours in the sun, accumulated over directions: two rows of one length.
-/// A plane that the sun only grazes may end a hair below 0: take max(0, sum) after the last direction.
+/// Beam of a pixel, hours in the sun and the light from around the sun, accumulated over directions:
+/// rows of one length; without a row for the last it is left out. A plane that the sun only grazes may end a hair below 0: take max(0, sum) after the last direction.
 struct BeamSums {
     std::span<float> beam;
     std::span<float> hours;
+    std::span<float> around{};
 };
 
 /// The horizons of a row of pixels at the two directions that enclose some suns: sines of elevation.
@@ -61,15 +64,17 @@ class BeamTable {
     /// No sun was added: the table need not be looked up.
     [[nodiscard]] bool empty() const noexcept { return suns_ == 0; }
 
-    /// East, north, up, hours.
-    using Entry = std::array<float, 4>;
+    /// Beam east, north, up; hours; from around the sun east, north, up; unused: one wide vector.
+    struct alignas(32) Entry {
+        std::array<float, 8> lane{};
+    };
     /// bins + 1 entries of the first (0) or second (1) half.
     [[nodiscard]] const Entry* half(int which) const noexcept {
         return entries_.data() + static_cast<std::size_t>(which) * (bins + 1);
     }
 
   private:
-    using Sum = std::array<double, 4>;
+    using Sum = std::array<double, 7>;
     std::vector<Sum>
         part_;  ///< suns that rise within the bins next to an entry, for that entry alone
     std::vector<Sum> whole_;  ///< suns that stand above an entry and all before it
