@@ -1,6 +1,7 @@
 #pragma once
 
 #include <cstdint>
+#include <filesystem>
 #include <memory>
 #include <string>
 #include <vector>
@@ -40,8 +41,11 @@ void add_tables(CLI::App& app);
 struct RunFlags {
     std::string out;         ///< folder; empty: the plan's
     std::string single_file; ///< one-line jobs: the one file to write, no sidecars
+    std::string save_plan;   ///< one-line jobs: a file for the plan, once it has proved good
     bool fresh = false;
 };
+/// The folder of a file that may be named without one.
+[[nodiscard]] std::filesystem::path absolute_parent(const std::filesystem::path& file);
 void run_plan(Plan plan, const RunFlags& flags, const Common& common, Terminal& terminal);
 
 }  // namespace sunbudget

@@ -18,6 +18,8 @@ namespace fs = std::filesystem;
 /// What the flags of a one-line job say; each fills a key of a plan.
 struct JobFlags {
     std::string cover, classes, default_class, albedo, elevation, like;
+    std::vector<std::string> bands;
+    std::string sensor, product, scene, quality;
     std::string at, from, to, step, hours, zone, totals, turbidity, unit;
     std::string out;
     std::vector<std::string> set;
@@ -36,6 +38,35 @@ void put(Json& map, const char* key, const std::string& text) {
     if (!text.empty()) map[key] = scalar(text);
 }
 
+/// "blue=F,red=F": NAME=FILE, and a piece without a name belongs to the file before it.
+std::vector<std::pair<std::string, std::string>> named_bands(const std::vector<std::string>& flags) {
+    std::vector<std::pair<std::string, std::string>> bands;
+    for (const auto& flag : flags)
+        for (const auto& piece : split(flag, ',')) {
+            const auto equals = piece.find('=');
+            if (equals != piece.npos && equals > 0 && piece.find('/') > equals)
+                bands.emplace_back(piece.substr(0, equals), piece.substr(equals + 1));
+            else if (!bands.empty())
+                bands.back().second += "," + piece;
+            else
+                throw Error(Cause::usage, "\"" + piece + "\" names no band", "--bands", "write blue=FILE,red=FILE,...");
+        }
+    return bands;
+}
+
+Json reflectance_of(const JobFlags& flags) {
+    Json image = Json::object();
+    put(image, "sensor", flags.sensor);
+    for (const auto& [name, file] : named_bands(flags.bands)) {
+        if (image["bands"].contains(name))
+            throw Error(Cause::usage, "the band " + name + " is given twice", "--bands", "keep one of the two");
+        image["bands"][name] = file;
+    }
+    for (const auto& [key, text] : {std::pair{"scene", &flags.scene}, {"quality", &flags.quality}, {"product", &flags.product}})
+        if (!text->empty()) image[key] = *text;
+    return image;
+}
+
 /// The plan that the flags stand for, as text; JSON is YAML.
 std::string plan_text_of(const JobFlags& flags, const std::string& layer) {
     Json plan{{"sunbudget", 1}};
@@ -46,6 +77,10 @@ std::string plan_text_of(const JobFlags& flags, const std::string& layer) {
         put(surface["cover"], "default_class", flags.default_class);
     }
     if (!flags.albedo.empty()) surface["albedo"][parse_number(flags.albedo) ? "value" : "raster"] = scalar(flags.albedo);
+    if (const auto image = reflectance_of(flags); !image.empty()) {
+        surface["reflectance"] = image;
+        if (!flags.cover.empty()) surface["reflectance"]["fill"] = "cover";
+    }
     if (!surface.empty()) plan["surface"] = surface;
     if (!flags.like.empty()) plan["grid"]["like"] = flags.like;
     if (!flags.elevation.empty()) plan["terrain"]["elevation"] = flags.elevation;
@@ -63,11 +98,20 @@ std::string plan_text_of(const JobFlags& flags, const std::string& layer) {
 
 /// A job may not write over what it reads.
 void refuse_overwriting(const JobFlags& flags) {
-    for (const auto* input : {&flags.cover, &flags.albedo, &flags.elevation, &flags.like}) {
+    std::vector<std::string> inputs{flags.cover, flags.albedo, flags.elevation, flags.like, flags.quality};
+    for (const auto& band : named_bands(flags.bands)) inputs.push_back(band.second);
+    if (!flags.scene.empty()) {
         std::error_code ignored;
-        if (!input->empty() && fs::equivalent(raster_name(*input).path, flags.out, ignored))
-            throw Error(Cause::usage, flags.out + " is an input of this job", "--output", "name another file");
+        for (const auto& entry : fs::directory_iterator(flags.scene, ignored)) inputs.push_back(entry.path().string());
     }
+    for (const auto& [flag, output] : {std::pair{"--output", &flags.out}, {"--save-plan", &flags.run.save_plan}})
+        for (const auto& input : inputs) {
+            std::error_code ignored;
+            if (!input.empty() && !output->empty() && fs::equivalent(raster_name(input).path, *output, ignored))
+                throw Error(Cause::usage, *output + " is an input of this job", flag, "name another file");
+        }
+    if (!flags.run.save_plan.empty() && fs::absolute(flags.run.save_plan).lexically_normal() == fs::absolute(flags.out).lexically_normal())
+        throw Error(Cause::usage, "the plan and the raster have the same name", "--save-plan", "name another file");
 }
 
 void add_time_flags(CLI::App& command, JobFlags& flags) {
@@ -87,7 +131,20 @@ void add_surface_flags(CLI::App& command, JobFlags& flags) {
     command.add_option("--cover", flags.cover, "Land-cover raster")->type_name("FILE");
     command.add_option("--classes", flags.classes, "Its class table: worldcover, nlcd, corine, lcz or a CSV file")->type_name("TABLE");
     command.add_option("--default-class", flags.default_class, "Class for codes that the table does not have")->type_name("CODE");
+    command.add_option("--bands", flags.bands, "Bands of surface reflectance: blue=F,red=F,nir=F,swir1=F,swir2=F (F: PATH, PATH:N)")
+        ->type_name("NAME=FILE,...")->expected(1)->take_all()->allow_extra_args(false);
+    command.add_option("--scene", flags.scene, "Or the folder of a product, whose bands and quality are found by name")->type_name("DIR");
+    command.add_option("--sensor", flags.sensor, "How their numbers are stored: landsat-oli-c2, or generic (more by --set)")->type_name("NAME");
+    command.add_option("--product", flags.product, "Declares what they are: surface-reflectance [recognised by names]")->type_name("WHAT");
+    command.add_option("--quality", flags.quality, "Their quality raster (QA_PIXEL); with --cover such pixels are filled from it")->type_name("FILE");
     command.add_option("--albedo", flags.albedo, "Albedo as given: a raster or a number")->type_name("FILE|NUMBER");
+}
+
+/// The plan as it reads in the file it will be saved in. Its output folder is left to the default: a
+/// whole run writes more than one file, and shall not do so where a job put its one.
+Plan saved_plan(Plan plan, const std::string& file) {
+    plan.outputs.directory.reset();
+    return parse_plan({file, plan_text(plan, absolute_parent(file)), {}});
 }
 
 void add_job(CLI::App& app, const char* name, const char* text, const std::string& layer, bool surface, bool light,
@@ -99,6 +156,7 @@ void add_job(CLI::App& app, const char* name, const char* text, const std::strin
     command->add_option("-o,--output", flags->out, "The raster to write: one layer, no files beside it")->type_name("OUT.tif")->required();
     command->add_option("--set", flags->set, "Set any other key of the plan behind this job; may be repeated")
         ->type_name("key.path=value")->expected(1)->take_all()->allow_extra_args(false);
+    command->add_option("--save-plan", flags->run.save_plan, "Write the plan behind this job, for \"sunbudget run\"")->type_name("PLAN");
     add_common_flags(*command, flags->common);
     command->add_option("--like", flags->like, "A raster whose grid to use [that of the surface, else the elevation]")->type_name("FILE");
     command->footer(fmt::format("Example: {}", example));
@@ -107,14 +165,17 @@ void add_job(CLI::App& app, const char* name, const char* text, const std::strin
         refuse_overwriting(*flags);
         flags->run.single_file = flags->out;
         // The name has no folder, so that paths are relative to where the command was given.
-        run_plan(parse_plan({"command line", plan_text_of(*flags, layer), flags->set}), flags->run, flags->common, terminal);
+        auto plan = parse_plan({"command line", plan_text_of(*flags, layer), flags->set});
+        // What is written down is what is done: a digest counts files by the names the plan gives them.
+        if (const auto& file = flags->run.save_plan; !file.empty()) plan = saved_plan(std::move(plan), file);
+        run_plan(std::move(plan), flags->run, flags->common, terminal);
     });
 }
 
 }  // namespace
 
 void add_one_line_jobs(CLI::App& app) {
-    add_job(app, "albedo", "Albedo from a land-cover raster and a class table", "albedo", true, false,
+    add_job(app, "albedo", "Albedo from land cover and a class table, or from an image's reflectance", "albedo", true, false,
             "sunbudget albedo --cover cover.tif --classes worldcover -o albedo.tif");
     add_job(app, "insolation", "Clear-sky insolation of flat ground", "insolation", false, true,
             "sunbudget insolation --elevation dem.tif --from 2025-06-01 --to 2025-08-31 --unit kWh/m2 -o insolation.tif");

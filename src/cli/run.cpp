@@ -2,6 +2,8 @@
 
 #include <chrono>
 #include <filesystem>
+#include <fstream>
+#include <iterator>
 #include <memory>
 
 #include "context.hpp"
@@ -71,7 +73,21 @@ void publish_single(const Execution& execution, const fs::path& file, OutputSet&
     outputs.publish({name});
 }
 
+/// A plan that somebody has written is not lost to a slip of the pen; the same plan again is no loss.
+void save_plan(const Plan& plan, const fs::path& file) {
+    const auto text = plan_text(plan, absolute_parent(file));
+    std::ifstream former(file, std::ios::binary);
+    if (former) {
+        if (std::string(std::istreambuf_iterator<char>(former), {}) == text) return;
+        throw Error(Cause::output, "the file is there already and holds something else", file.string(),
+                    "name another with --save-plan, or remove it");
+    }
+    write_text_file(file, text);
+}
+
 }  // namespace
+
+fs::path absolute_parent(const fs::path& file) { return fs::absolute(file).parent_path(); }
 
 void run_plan(Plan plan, const RunFlags& flags, const Common& common, Terminal& terminal) {
     const auto start = std::chrono::steady_clock::now();
@@ -79,7 +95,7 @@ void run_plan(Plan plan, const RunFlags& flags, const Common& common, Terminal& 
     if (!flags.out.empty()) plan.outputs.directory = Given<PlanPath>{{flags.out, flags.out}, {"--out", 0, ""}};
     const Plan complete = with_defaults(plan);
     const bool single = !flags.single_file.empty();
-    const fs::path folder = single ? fs::absolute(flags.single_file).parent_path() : complete.outputs.directory->value.file;
+    const fs::path folder = single ? absolute_parent(flags.single_file) : complete.outputs.directory->value.file;
 
     EngineOptions options{common.threads(), common.memory_bytes(), {}};
     options.progress = [&](const Progress& p) { terminal.progress(p.step, p.done, p.total, p.unit); };
@@ -89,6 +105,7 @@ void run_plan(Plan plan, const RunFlags& flags, const Common& common, Terminal& 
         terminal.note(folder.string() + " is complete already for this plan and these inputs: nothing to do (--fresh does it again)");
         return;
     }
+    if (!flags.save_plan.empty()) save_plan(plan, flags.save_plan);
     OutputSet outputs(folder, single ? OutputSet::Mark::none : OutputSet::Mark::checksums);
     const auto execution = execute(run, options, outputs);
     if (single)
@@ -96,6 +113,7 @@ void run_plan(Plan plan, const RunFlags& flags, const Common& common, Terminal& 
     else
         publish_run(run, execution, outputs);
     terminal.end_progress();
+    for (const auto& warning : closing_warnings(run, execution)) terminal.warning(warning);
     for (const auto& line : summary(run, execution)) terminal.note(line);
     const double seconds = std::chrono::duration<double>(std::chrono::steady_clock::now() - start).count();
     const double pixels = static_cast<double>(run.grid.width) * run.grid.height;

@@ -104,6 +104,44 @@ std::size_t overview_bytes(const Run& run, std::uint64_t memory_bytes) {
     return static_cast<std::size_t>(memory_bytes / 4 / std::max<std::size_t>(1, run.layers.size()));
 }
 
+/// What reading the inputs takes: all of them decoded, and planes for one pixel of a window.
+struct InputSizes {
+    std::uint64_t decoded_bytes = 0;
+    std::uint64_t bytes_per_pixel = 0;
+};
+
+InputSizes input_sizes(const Run& run) {
+    InputSizes sizes;
+    const auto add = [&](const Source& source) {
+        sizes.decoded_bytes += source.info().decoded_bytes;
+        sizes.bytes_per_pixel += sizeof(float);
+    };
+    if (const auto* cover = std::get_if<CoverSurface>(&run.surface)) add(cover->codes);
+    if (const auto* given = std::get_if<GivenSurface>(&run.surface))
+        if (const auto* raster = std::get_if<Source>(&given->albedo)) add(*raster);
+    if (const auto* image = std::get_if<ReflectanceSurface>(&run.surface)) {
+        for (const auto& one : image->bands) add(one.reflectance);
+        for (const auto& one : image->quality) add(one.codes);
+        if (image->fill) add(image->fill->codes);
+    }
+    if (run.terrain) {
+        for (const auto& heights : run.terrain->elevation) add(heights);
+        if (const auto* other = std::get_if<std::vector<Source>>(&run.terrain->slope_from))
+            for (const auto& heights : *other) add(heights);
+    }
+    return sizes;
+}
+
+/// Every overview tile of every layer, decoded: what waits is never more.
+std::uint64_t all_overview_bytes(const Run& run) {
+    std::uint64_t bytes = 0;
+    for (const auto& layer : run.layers) {
+        const auto layout = layout_of(layer.file);
+        bytes += (layout.tile_count() - layout.tile_count(0)) * layout.tile_bytes();
+    }
+    return bytes;
+}
+
 /// What they come to: a row of tiles at every level above a band's own, and a few inside it.
 std::uint64_t waiting_bytes(const Run& run, std::uint64_t memory_bytes) {
     const auto tile = static_cast<std::uint64_t>(run.tile);
@@ -139,9 +177,18 @@ std::uint64_t raster_cache_bytes(std::uint64_t memory_bytes) {
 }
 
 std::uint64_t memory_needed(const Run& run, const EngineOptions& options) {
-    const auto unit = static_cast<std::uint64_t>(unit_px(run));
-    return raster_cache_bytes(options.memory_bytes) + waiting_bytes(run, options.memory_bytes) +
-           static_cast<std::uint64_t>(options.threads) * unit * unit * bytes_per_pixel(run);
+    // Program and libraries with their tables, before the first pixel (measured).
+    constexpr std::uint64_t process_bytes = 54u << 20;
+    const auto side = [&](int pixels) { return static_cast<std::uint64_t>(std::min(unit_px(run), pixels)); };
+    const auto window = side(run.grid.width) * side(run.grid.height);
+    const auto windows = (static_cast<std::uint64_t>(run.grid.width) * static_cast<std::uint64_t>(run.grid.height) - 1) / window + 1;
+    const auto busy = std::min(static_cast<std::uint64_t>(options.threads), windows);
+    // With terrain: sun tables, and coarse heights around the windows out to the reach (measured).
+    constexpr std::uint64_t terrain_bytes = 40u << 20;
+    const auto input = input_sizes(run);
+    return process_bytes + (run.terrain ? terrain_bytes : 0) + std::min(raster_cache_bytes(options.memory_bytes), input.decoded_bytes) +
+           std::min(waiting_bytes(run, options.memory_bytes), all_overview_bytes(run)) +
+           busy * window * (bytes_per_pixel(run) + input.bytes_per_pixel);
 }
 
 Execution execute(const Run& run, const EngineOptions& options, const OutputSet& outputs) {

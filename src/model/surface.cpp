@@ -5,6 +5,7 @@
 #include <limits>
 #include <optional>
 
+#include "reflectance.hpp"
 #include "sunbudget/tables/quality.hpp"
 
 namespace sunbudget {
@@ -24,16 +25,24 @@ void resize(Plane<T>& plane, const Window& window) {
 struct SurfaceReader::State {
     const Run& run;
     std::optional<Reader> reader;
+    std::optional<ReflectanceReader> image;
     Plane<std::int32_t> codes;
+    Plane<float> fill_albedo;
+    Plane<std::uint16_t> fill_flags;
 
     explicit State(const Run& r) : run(r) {
         if (const auto* cover = std::get_if<CoverSurface>(&run.surface)) reader.emplace(cover->codes);
+        if (const auto* surface = std::get_if<ReflectanceSurface>(&run.surface)) {
+            image.emplace(*surface);
+            if (surface->fill) reader.emplace(surface->fill->codes);
+        }
         if (const auto* given = std::get_if<GivenSurface>(&run.surface))
             if (const auto* raster = std::get_if<Source>(&given->albedo)) reader.emplace(*raster);
     }
 
     void read_cover(const CoverSurface& cover, const Window& window, Plane<float>& albedo, Plane<std::uint16_t>& flags);
     void read_given(const GivenSurface& given, const Window& window, Plane<float>& albedo, Plane<std::uint16_t>& flags);
+    void fill_from(const CoverSurface& cover, const Window& window, Plane<float>& albedo, Plane<std::uint16_t>& flags);
 };
 
 void SurfaceReader::State::read_cover(const CoverSurface& cover, const Window& window, Plane<float>& albedo,
@@ -79,6 +88,24 @@ void SurfaceReader::State::read_given(const GivenSurface& given, const Window& w
     }
 }
 
+/// Where the image gives no albedo the land cover does; the flags keep the reason.
+void SurfaceReader::State::fill_from(const CoverSurface& cover, const Window& window, Plane<float>& albedo,
+                                     Plane<std::uint16_t>& flags) {
+    resize(fill_albedo, window);
+    resize(fill_flags, window);
+    fill_albedo.fill(nan_value);
+    read_cover(cover, window, fill_albedo, fill_flags);
+    for (int r = 0; r < window.height; ++r) {
+        const auto a = albedo.row(r), filling = fill_albedo.row(r);
+        const auto flag = flags.row(r);
+        for (std::size_t i = 0; i < a.size(); ++i) {
+            if (!std::isnan(a[i]) || std::isnan(filling[i])) continue;
+            a[i] = filling[i];
+            flag[i] |= quality::filled;
+        }
+    }
+}
+
 SurfaceReader::SurfaceReader(const Run& run) : state_(std::make_unique<State>(run)) {}
 SurfaceReader::~SurfaceReader() = default;
 SurfaceReader::SurfaceReader(SurfaceReader&&) noexcept = default;
@@ -91,8 +118,14 @@ void SurfaceReader::read(const Window& window, Plane<float>& albedo, Plane<std::
     const auto& surface = state_->run.surface;
     if (const auto* cover = std::get_if<CoverSurface>(&surface)) state_->read_cover(*cover, window, albedo, flags);
     if (const auto* given = std::get_if<GivenSurface>(&surface)) state_->read_given(*given, window, albedo, flags);
+    if (const auto* image = std::get_if<ReflectanceSurface>(&surface)) {
+        state_->image->read(window, albedo, flags);
+        if (image->fill) state_->fill_from(*image->fill, window, albedo, flags);
+    }
 }
 
-std::uint64_t SurfaceReader::infinities() const { return state_->reader ? state_->reader->infinities() : 0; }
+std::uint64_t SurfaceReader::infinities() const {
+    return (state_->reader ? state_->reader->infinities() : 0) + (state_->image ? state_->image->infinities() : 0);
+}
 
 }  // namespace sunbudget

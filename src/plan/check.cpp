@@ -4,6 +4,7 @@
 
 #include <algorithm>
 
+#include "resolve_parts.hpp"
 #include "sunbudget/base/text.hpp"
 #include "sunbudget/raster/grid_build.hpp"
 
@@ -33,6 +34,16 @@ std::string classes_text(const Run& run, bool scanned_everything) {
         text += fmt::format("  {:>5}  {:<44} {:>6.2f} %  {}\n", use.code, use.name,
                             static_cast<double>(use.pixels) / static_cast<double>(std::max<std::uint64_t>(1, all)) * 100,
                             use.albedo ? fmt::format("albedo {:.3f}", *use.albedo) : std::string("no data"));
+    return text;
+}
+
+std::string image_text(const Run& run) {
+    const auto* image = std::get_if<ReflectanceSurface>(&run.surface);
+    if (image == nullptr) return {};
+    std::string text = heading("Image");
+    for (const auto& [key, value] : reflectance_metadata(*image)) text += fmt::format("  {}: {}\n", key, value);
+    if (const auto& facts = image->facts; facts.sun_elevation_deg && facts.sun_azimuth_deg)
+        text += fmt::format("  sun: {:.2f} deg high, azimuth {:.2f} deg\n", *facts.sun_elevation_deg, *facts.sun_azimuth_deg);
     return text;
 }
 
@@ -82,7 +93,7 @@ std::string estimate_text(const Estimate& estimate) {
 std::string check_text(const Run& run, const Estimate& estimate, bool scanned_everything) {
     std::string text = run.title.empty() ? std::string() : run.title + "\n";
     text += "Grid\n  " + describe(run.grid) + "\n";
-    text += inputs_text(run) + classes_text(run, scanned_everything) + time_text(run) + layers_text(run) + methods_text(run);
+    text += inputs_text(run) + image_text(run) + classes_text(run, scanned_everything) + time_text(run) + layers_text(run) + methods_text(run);
     if (!run.assumptions.empty()) {
         text += heading("Assumed");
         for (const auto& line : run.assumptions) text += "  " + line + "\n";

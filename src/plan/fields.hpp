@@ -4,6 +4,36 @@
 
 namespace sunbudget {
 
+/// The bands that are named, whatever there is for each.
+template <class Bands, class Visitor>
+void visit_bands(Bands& bands, Visitor& v) {
+    for (std::size_t i = 0; i < plan_band_names.size(); ++i)
+        v.value(plan_band_names[i], bands.of[i]);
+}
+
+template <class Reflectance, class Visitor>
+void visit_reflectance(Reflectance& reflectance, Visitor& v) {
+    v.value("sensor", reflectance.sensor);
+    v.map("bands", reflectance.bands, [&](auto& bands) { visit_bands(bands, v); });
+    v.value("scene", reflectance.scene);
+    v.value("scale", reflectance.scale);
+    v.value("offset", reflectance.offset);
+    v.value("nodata", reflectance.nodata);
+    v.value("method", reflectance.method);
+    v.map("weights", reflectance.weights, [&](auto& weights) {
+        visit_bands(weights.bands, v);
+        v.value("constant", weights.constant);
+    });
+    v.value("quality", reflectance.quality);
+    v.value("saturation", reflectance.saturation);
+    v.value("aerosol", reflectance.aerosol);
+    v.value("reject", reflectance.reject);
+    v.value("fill", reflectance.fill);
+    v.value("product", reflectance.product);
+    v.value("mtl", reflectance.mtl);
+    v.value("implausible", reflectance.implausible);
+}
+
 /// Names every member of a Plan by its key, once for reading, writing and filling in defaults.
 /// A visitor has `value(name, member)`, `duration(name, member)` and `map(name, visit_inside)`.
 template <class P, class Visitor>
@@ -21,6 +51,8 @@ void visit_plan(P& plan, Visitor& v) {
             v.value("classes", cover.classes);
             v.value("default_class", cover.default_class);
         });
+        v.map("reflectance", plan.surface.reflectance,
+              [&](auto& reflectance) { visit_reflectance(reflectance, v); });
         v.map("albedo", plan.surface.albedo, [&](auto& albedo) {
             v.value("raster", albedo.raster);
             v.value("scale", albedo.scale);

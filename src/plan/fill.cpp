@@ -8,6 +8,7 @@
 #include "keys.hpp"
 #include "names.hpp"
 #include "scalars.hpp"
+#include "sunbudget/tables/sensors.hpp"
 
 namespace sunbudget {
 
@@ -41,6 +42,9 @@ class Typed {
 
   private:
     static void get(const Node& node, std::string& value) { value = node.text; }
+    static void get(const Node& node, std::vector<std::string>& value) {
+        for (const auto& item : node.children) value.push_back(item.text);
+    }
     static void get(const Node& node, double& value) { value = *read_number(node); }
     static void get(const Node& node, int& value) { value = static_cast<int>(*read_integer(node)); }
     static void get(const Node& node, CivilDate& value) { value = *parse_date(node.text); }
@@ -144,12 +148,18 @@ class Filler {
     template <class Section, class Inside>
     void map(const char* name, std::optional<Section>& section, const Inside& visit_inside) {
         map(name, [&] {
-            section.emplace().place = node_->place;
+            place_of(section.emplace()) = node_->place;
             visit_inside(*section);
         });
     }
 
   private:
+    template <class Section>
+    static Place& place_of(Section& section) {
+        return section.place;
+    }
+    static Place& place_of(PlanWeights& weights) { return weights.bands.place; }
+
     const Node* node_;
     Typed typed_;
 };
@@ -211,6 +221,9 @@ Plan with_defaults(Plan plan) {
     // How the ground is looked at belongs to an elevation raster.
     const auto& elevation = plan.terrain.elevation;
     if (!elevation || std::holds_alternative<PlanLength>(**elevation)) plan.terrain = {elevation, {}, {}, {}, {}};
+    // Weights of one's own stand in the place of a method, and a sensor of one's own has none.
+    if (auto& image = plan.surface.reflectance; image && image->method && image->method->place.is_default)
+        if (image->weights || weight_set_names(*image->sensor).empty()) image->method.reset();
     // Steps, days and totals belong to a period.
     if (!written.from) plan.time = written;
     return plan;

@@ -8,6 +8,7 @@
 #include "sunbudget/tables/class_table.hpp"
 #include "sunbudget/tables/layers.hpp"
 #include "sunbudget/tables/methods.hpp"
+#include "sunbudget/tables/sensors.hpp"
 
 namespace sunbudget {
 
@@ -98,10 +99,85 @@ Form albedo_form() {
                 needs("offset", {"raster"})});
 }
 
+/// The names of all sensors' quality tests, but for "fill", which no plan can choose.
+std::vector<std::string> quality_test_names() {
+    std::vector<std::string> names;
+    for (const auto& sensor : sensors())
+        for (const auto& test : sensor.tests)
+            if (test.name != "fill" && std::ranges::find(names, test.name) == names.end())
+                names.push_back(test.name);
+    return names;
+}
+
+std::vector<std::string> method_of_weights_names() {
+    std::vector<std::string> names;
+    for (const auto& set : weight_sets())
+        if (std::ranges::find(names, set.name) == names.end()) names.push_back(set.name);
+    return names;
+}
+
+std::vector<Key> one_key_a_band(const Form& form, const std::string& doc) {
+    std::vector<Key> keys;
+    for (const auto* name : plan_band_names) keys.push_back({name, {form}, doc});
+    return keys;
+}
+
+Form weights_form() {
+    auto keys = one_key_a_band(number(), "of this band's reflectance");
+    keys.push_back({"constant", {number()}, "added to the sum", "0"});
+    return map(std::move(keys));
+}
+
+Form reflectance_form() {
+    const Form raster = of(ValueKind::raster);
+    const auto methods = method_of_weights_names();
+    return map(
+        {{"sensor",
+          {choice(sensor_names())},
+          "how the numbers are stored; generic: as scale, offset, nodata and weights say",
+          {},
+          true},
+         {"bands",
+          {map(one_key_a_band(raster, "surface reflectance"))},
+          "a raster for each band; one that the method does not need is left alone"},
+         {"scene", {of(ValueKind::path)}, "a product's folder, whose files are found by name"},
+         {"scale",
+          {number_above(0)},
+          "reflectance = stored value * scale + offset; default: the file's own, else the sensor's"},
+         {"offset", {number()}, "see scale; default beside a scale: the sensor's"},
+         {"nodata", {number()}, "no data; default: the file's own, else the sensor's"},
+         {"method", {choice(methods)}, "published weights of the bands", methods.front()},
+         {"weights",
+          {weights_form()},
+          "weights of one's own: albedo = constant + sum of weight * reflectance"},
+         {"quality", {raster}, "the product's quality bits (Landsat: QA_PIXEL)"},
+         {"saturation", {raster}, "bands that were blinded (Landsat: QA_RADSAT)"},
+         {"aerosol", {raster}, "quality of the aerosol (Landsat: SR_QA_AEROSOL)"},
+         {"reject",
+          {list(choice(quality_test_names()), 0, {}, true)},
+          "what the image's pixels are not used for; default: all but snow, which is a surface"},
+         {"fill",
+          {choice(fill_names)},
+          "what pixels without an image get: no data, or the albedo of surface.cover",
+          "nodata"},
+         {"product",
+          {choice(product_names)},
+          "what the numbers are; auto: recognised by names and metadata, else refused",
+          "auto"},
+         {"mtl", {of(ValueKind::path)}, "the scene's metadata file; default: found beside the bands"},
+         {"implausible",
+          {choice(implausible_names)},
+          "values unlike surface reflectance stop the run, or warn",
+          "stop"}},
+        {exactly_one({"bands", "scene"}), at_most_one({"method", "weights"}),
+         needs("offset", {"scale"})});
+}
+
 Form surface_form() {
     return map({{"cover", {cover_form()}, "albedo from land cover"},
+                {"reflectance", {reflectance_form()}, "albedo from an image's surface reflectance"},
                 {"albedo", {albedo_form()}, "albedo as given"}},
-               {at_most_one({"cover", "albedo"})});
+               {at_most_one({"cover", "albedo"}), at_most_one({"reflectance", "albedo"})});
 }
 
 Form terrain_form() {

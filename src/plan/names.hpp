@@ -15,6 +15,10 @@ inline constexpr std::array<std::string_view, 2> format_names{"cog", "geotiff"};
 inline constexpr std::array<std::string_view, 3> height_unit_names{"m", "ft", "us-ft"};
 inline constexpr std::array<std::string_view, 2> slope_from_names{"elevation", "flat"};
 inline constexpr std::array<std::string_view, 2> day_names{"all", "mid-month"};
+inline constexpr std::array<std::string_view, 3> product_names{"auto", "surface-reflectance",
+                                                               "top-of-atmosphere"};
+inline constexpr std::array<std::string_view, 2> fill_names{"nodata", "cover"};
+inline constexpr std::array<std::string_view, 2> implausible_names{"stop", "allow"};
 
 constexpr const auto& names_for(LikeInput) {
     return like_names;
@@ -33,6 +37,15 @@ constexpr const auto& names_for(SlopeFrom) {
 }
 constexpr const auto& names_for(DayChoice) {
     return day_names;
+}
+constexpr const auto& names_for(ProductChoice) {
+    return product_names;
+}
+constexpr const auto& names_for(FillFrom) {
+    return fill_names;
+}
+constexpr const auto& names_for(Implausible) {
+    return implausible_names;
 }
 
 }  // namespace sunbudget

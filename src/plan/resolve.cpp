@@ -7,6 +7,7 @@
 #include <functional>
 #include <utility>
 
+#include "reflectance.hpp"
 #include "resolve_parts.hpp"
 #include "sunbudget/base/digest.hpp"
 #include "sunbudget/base/error.hpp"
@@ -80,6 +81,10 @@ class Resolver {
     /// The raster whose grid the run takes when the plan gives none of its own.
     std::optional<std::pair<RasterName, Place>> model_raster() {
         const auto surface = [&]() -> std::optional<std::pair<RasterName, Place>> {
+            if (plan_.surface.reflectance) {
+                const auto bands = image_files(*plan_.surface.reflectance).bands;
+                if (!bands.empty()) return std::pair{bands.front().raster, bands.front().place};
+            }
             if (plan_.surface.cover) return std::pair{raster_of(*plan_.surface.cover->raster), plan_.surface.cover->raster.place};
             if (plan_.surface.albedo && plan_.surface.albedo->raster)
                 return std::pair{raster_of(**plan_.surface.albedo->raster), plan_.surface.albedo->raster->place};
@@ -106,7 +111,9 @@ class Resolver {
             return problems_.attempt(grid.crs->place, [&] {
                 run_.grid = grid_from(crs_wkt_of(**grid.crs), *bounds, *cell);
             });
-        const auto model = model_raster();
+        std::optional<std::pair<RasterName, Place>> model;
+        const auto place_of_image = plan_.surface.reflectance ? plan_.surface.reflectance->place : Place{};
+        if (!problems_.attempt(place_of_image, [&] { model = model_raster(); })) return false;
         if (!model) {
             problems_.add(Cause::usage, grid.like ? grid.like->place : Place{plan_.file, 0, "grid"},
                           "the run has no grid: no raster to take it from",
@@ -145,6 +152,11 @@ class Resolver {
 std::vector<std::pair<RasterName, Place>> read_rasters(const Plan& plan) {
     std::vector<std::pair<RasterName, Place>> rasters;
     if (plan.surface.cover) rasters.emplace_back(raster_of(*plan.surface.cover->raster), plan.surface.cover->raster.place);
+    if (plan.surface.reflectance) {
+        const auto files = image_files(*plan.surface.reflectance);
+        for (const auto* list : {&files.bands, &files.quality})
+            for (const auto& file : *list) rasters.emplace_back(file.raster, file.place);
+    }
     if (plan.surface.albedo && plan.surface.albedo->raster)
         rasters.emplace_back(raster_of(**plan.surface.albedo->raster), plan.surface.albedo->raster->place);
     if (plan.terrain.elevation)

@@ -52,6 +52,9 @@ std::map<std::string, std::string> file_metadata(const Layer& layer, const Run& 
     for (std::size_t i = 0; i < run.methods.size(); ++i)
         items[fmt::format("method_{:02}", i + 1)] =
             fmt::format("{} {}: {}", run.methods[i]->family, run.methods[i]->name, run.methods[i]->source);
+    if (const auto* image = std::get_if<ReflectanceSurface>(&run.surface);
+        image != nullptr && (layer.needs_albedo || layer.id == LayerId::quality))
+        items.merge(reflectance_metadata(*image));
     if (layer.needs_sun) {
         if (layer.quantity == Quantity::radiation)
             items["per_area"] = run.terrain ? "square metre of the inclined surface"

@@ -1,6 +1,7 @@
 #pragma once
 
 #include <functional>
+#include <map>
 #include <string>
 #include <utility>
 #include <vector>
@@ -31,7 +32,12 @@ class RunProblems {
 /// Writes an input down for the metadata, with its warnings.
 void add_input(Run& run, const std::string& role, const Source& source);
 
+/// What the files of an image's albedo say of it.
+[[nodiscard]] std::map<std::string, std::string> reflectance_metadata(const ReflectanceSurface& surface);
+
 // The steps of resolve(), in this order; each fills its part of the run.
+/// After the cover, which becomes the fill.
+void resolve_reflectance(const PlanReflectance& image, const ResolveOptions& options, Run& run, RunProblems& problems);
 void resolve_surface(const Plan& plan, const ResolveOptions& options, Run& run, RunProblems& problems);
 void resolve_elevation(const Plan& plan, const ResolveOptions& options, Run& run, RunProblems& problems);
 void resolve_sky(const Plan& plan, Run& run, RunProblems& problems);

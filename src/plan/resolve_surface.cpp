@@ -166,6 +166,7 @@ void resolve_given(const PlanAlbedo& plan, const ResolveOptions& options, Run& r
 
 void resolve_surface(const Plan& plan, const ResolveOptions& options, Run& run, RunProblems& problems) {
     if (plan.surface.cover) resolve_cover(*plan.surface.cover, options, run, problems);
+    if (plan.surface.reflectance) resolve_reflectance(*plan.surface.reflectance, options, run, problems);
     if (plan.surface.albedo) resolve_given(*plan.surface.albedo, options, run, problems);
 }
 

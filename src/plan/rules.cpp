@@ -1,7 +1,9 @@
 #include <algorithm>
 
 #include "fill.hpp"
+#include "reflectance.hpp"
 #include "sunbudget/base/text.hpp"
+#include "sunbudget/tables/sensors.hpp"
 
 namespace sunbudget {
 
@@ -21,6 +23,7 @@ class CrossCheck {
         layers();
         unit();
         directions();
+        if (plan_.surface.reflectance) reflectance(*plan_.surface.reflectance);
     }
 
   private:
@@ -35,7 +38,8 @@ class CrossCheck {
         return root_.find(section)->find(key)->place;
     }
     [[nodiscard]] bool has_surface_raster() const {
-        return written("surface.cover") || written("surface.albedo.raster");
+        return written("surface.cover") || written("surface.reflectance") ||
+               written("surface.albedo.raster");
     }
     [[nodiscard]] bool has_elevation_raster() const {
         const auto& elevation = plan_.terrain.elevation;
@@ -52,6 +56,11 @@ class CrossCheck {
     void layers() const;
     void unit() const;
     void directions() const;
+    void reflectance(const PlanReflectance& image) const;
+    void reflectance_weights(const PlanReflectance& image) const;
+    void quality_tests(const PlanReflectance& image) const;
+    /// Written, and wrong by itself.
+    [[nodiscard]] bool image_is_bad(const char* key) const;
     void layers_without(bool Layer::*need, const std::string& what, const std::string& todo) const;
 
     const Plan& plan_;
@@ -72,7 +81,8 @@ void CrossCheck::grid_source() const {
     const auto* input = like ? std::get_if<LikeInput>(&**like) : nullptr;
     if (input != nullptr && *input == LikeInput::surface && !has_surface_raster())
         mistakes_.add(like->place, "the plan has no surface raster to take the grid from",
-                      "add surface.cover or surface.albedo.raster, or name a raster here");
+                      "add surface.cover, surface.reflectance or surface.albedo.raster, or name a "
+                      "raster here");
     if (input != nullptr && *input == LikeInput::elevation && !has_elevation_raster())
         mistakes_.add(like->place, "the plan has no elevation raster to take the grid from",
                       "add terrain.elevation, or name a raster here");
@@ -142,9 +152,9 @@ void CrossCheck::layers() const {
     if (!written("time"))
         layers_without(&Layer::needs_sun, "the sun, and the plan has no time",
                        "add time with at, or with from and to");
-    if (!written("surface.cover") && !written("surface.albedo"))
+    if (!written("surface.cover") && !written("surface.reflectance") && !written("surface.albedo"))
         layers_without(&Layer::needs_albedo, "an albedo, and the plan has none",
-                       "add surface with cover or albedo");
+                       "add surface with cover, reflectance or albedo");
     if (!has_elevation_raster())
         layers_without(&Layer::needs_terrain, "terrain, and the plan has no elevation raster", "add terrain.elevation");
     for (const auto& id : plan_.outputs.layers)
@@ -164,6 +174,70 @@ void CrossCheck::unit() const {
     if (unit && **unit != OutputUnit::w_m2 && !written("time.from") && !written("time.to"))
         mistakes_.add(unit->place, std::string(name_of(**unit)) + " is a sum and needs a period",
                       "add time.from and time.to, or write unit: W/m2");
+}
+
+void CrossCheck::reflectance(const PlanReflectance& image) const {
+    const bool from_cover = image.fill && **image.fill == FillFrom::cover;
+    if (from_cover && !written("surface.cover"))
+        mistakes_.add(image.fill->place, "there is no land cover to fill from",
+                      "add surface.cover, or write fill: nodata");
+    if (!from_cover && written("surface.cover") && !image_is_bad("fill"))
+        mistakes_.add(image.place, "both cover and reflectance are given, and nothing fills from the cover",
+                      "write fill: cover, or keep one of the two");
+    if (!written("surface.reflectance.sensor") || image_is_bad("sensor")) return;
+    const bool has_names = !sensor(*image.sensor).bands.front().product.empty();
+    if (image.scene && !has_names)
+        mistakes_.add(image.scene->place, "files of the sensor " + *image.sensor + " have no names to find them by",
+                      "name the bands one by one");
+    reflectance_weights(image);
+    quality_tests(image);
+}
+
+bool CrossCheck::image_is_bad(const char* key) const {
+    const auto* node = root_.find("surface")->find("reflectance")->find(key);
+    return node != nullptr && node->bad;
+}
+
+void CrossCheck::reflectance_weights(const PlanReflectance& image) const {
+    if (image.weights) {
+        const auto& weights = image.weights->bands.of;
+        if (std::ranges::none_of(weights, [](const auto& weight) { return weight && **weight != 0; }))
+            mistakes_.add(image.weights->bands.place, "no band has a weight",
+                          "give the weight of each band: {red: 0.5, nir: 0.5, constant: 0}");
+        return;
+    }
+    if (written("surface.reflectance.weights")) return;
+    const auto names = weight_set_names(*image.sensor);
+    if (names.empty())
+        mistakes_.add(image.method ? image.method->place : image.place,
+                      "the sensor " + *image.sensor + " has no weights of its own",
+                      "add weights, such as weights: {red: 0.5, nir: 0.5, constant: 0}");
+    else if (image.method && std::ranges::find(names, **image.method) == names.end())
+        mistakes_.add(image.method->place, "no weights \"" + **image.method + "\" for the sensor " + *image.sensor,
+                      suggestion(**image.method, names));
+}
+
+// Each key, and the raster of the product that it stands for.
+void CrossCheck::quality_tests(const PlanReflectance& image) const {
+    const auto& tests = sensor(*image.sensor).tests;
+    for (const auto& [key, product, given] : quality_rasters(image)) {
+        if (!*given || std::ranges::find(tests, product, &QualityTest::raster) != tests.end()) continue;
+        mistakes_.add((*given)->place, "the bits of this raster have no known meaning for the sensor " + *image.sensor,
+                      "leave it out");
+    }
+    if (!image.reject) return;
+    for (const auto& name : **image.reject) {
+        const auto test = std::ranges::find(tests, name, &QualityTest::name);
+        if (test == tests.end()) {
+            mistakes_.add(image.reject->place, "the sensor " + *image.sensor + " has no quality bits for " + name,
+                          "leave it out");
+            continue;
+        }
+        for (const auto& [key, product, given] : quality_rasters(image))
+            if (product == test->raster && !*given && !image.scene && !written(std::string("surface.reflectance.") + key))
+                mistakes_.add(image.reject->place, name + " is told by " + product + ", which the plan does not name",
+                              std::string("add ") + key + ", or leave it out");
+    }
 }
 
 }  // namespace

@@ -137,6 +137,9 @@ class Writer {
     [[nodiscard]] std::string path_text(const PlanPath& path) const;
 
     [[nodiscard]] Node node_of(const std::string& text) const { return text_node(text); }
+    [[nodiscard]] Node node_of(const std::vector<std::string>& texts) const {
+        return list_of(texts);
+    }
     [[nodiscard]] Node node_of(double number) const { return number_node(number); }
     [[nodiscard]] Node node_of(int number) const { return number_node(number); }
     [[nodiscard]] Node node_of(const CivilDate& date) const { return text_node(format_date(date)); }

@@ -2,10 +2,12 @@
 
 #include <fmt/format.h>
 
+#include <algorithm>
 #include <fstream>
 #include <nlohmann/json.hpp>
 
 #include "sunbudget/base/digest.hpp"
+#include "sunbudget/base/text.hpp"
 #include "sunbudget/base/version.hpp"
 #include "sunbudget/raster/grid_build.hpp"
 #include "sunbudget/tables/quality.hpp"
@@ -104,7 +106,81 @@ Json quality_json(const Execution& execution) {
     return json;
 }
 
+Json image_json(const ReflectanceSurface& surface) {
+    const auto& facts = surface.facts;
+    Json json{{"sensor", facts.sensor}};
+    if (!facts.scene.empty()) json["scene"] = facts.scene;
+    if (facts.acquired_utc) json["acquired"] = format_utc(*facts.acquired_utc);
+    if (!facts.acquired_utc && facts.date) json["acquired"] = format_date(*facts.date);
+    if (facts.sun_elevation_deg) json["sun_elevation_deg"] = *facts.sun_elevation_deg;
+    if (facts.sun_azimuth_deg) json["sun_azimuth_deg"] = *facts.sun_azimuth_deg;
+    for (const auto& band : surface.bands) json["weights"][band.name] = band.weight;
+    json["weights"]["constant"] = surface.weights.constant;
+    json["weights_note"] = surface.weights.text;
+    json["fit_error"] = surface.weights.fit_error;
+    json["rejected"] = facts.rejected;
+    json["fill"] = surface.fill ? "cover" : "nodata";
+    return json;
+}
+
+/// Pixels without the image's albedo, each once: under the first flag of the quality layer's order that
+/// rejects, else as out of range, else as without data.
+using Reasons = std::vector<std::pair<std::string, std::uint64_t>>;
+Reasons reasons_of(const ReflectanceSurface& surface, const Execution& execution) {
+    Reasons reasons;
+    const auto count = [&](const std::string& name, std::uint64_t pixels) {
+        const auto known = std::find_if(reasons.begin(), reasons.end(), [&](const auto& r) { return r.first == name; });
+        if (known == reasons.end())
+            reasons.emplace_back(name, pixels);
+        else
+            known->second += pixels;
+    };
+    for (const auto& [flag, pixels] : execution.flags) {
+        if ((flag & quality::source_mask) == quality::reflectance) continue;
+        const auto mask = static_cast<std::uint16_t>(surface.rejecting | quality::out_of_range);
+        const auto& rows = quality_rows();
+        const auto row = std::find_if(rows.begin(), rows.end(), [&, f = flag](const QualityRow& r) {
+            return r.mask != quality::source_mask && (f & mask & r.mask) != 0;
+        });
+        count(row == rows.end() ? "no_data" : row->name, pixels);
+    }
+    std::sort(reasons.begin(), reasons.end(), [](const auto& a, const auto& b) { return a.second > b.second; });
+    return reasons;
+}
+
+Json reasons_json(const Reasons& reasons) {
+    Json json = Json::object();
+    for (const auto& [name, pixels] : reasons) json[name] = pixels;
+    return json;
+}
+
+double share_without_surface(const Execution& execution) {
+    double all = 0, without = 0;
+    for (const auto& [flag, pixels] : execution.flags) {
+        all += static_cast<double>(pixels);
+        if ((flag & quality::source_mask) == quality::no_surface) without += static_cast<double>(pixels);
+    }
+    return all > 0 ? without / all : 0;
+}
+
+std::string reasons_text(const Reasons& reasons) {
+    std::vector<std::string> texts;
+    for (const auto& [name, pixels] : reasons) texts.push_back(fmt::format("{} {}", name, pixels));
+    return joined(texts, ", ");
+}
+
 }  // namespace
+
+std::vector<std::string> closing_warnings(const Run& run, const Execution& execution) {
+    // Less than a twentieth left is hardly what anybody ran this for.
+    constexpr double nearly_all = 0.95;
+    const double share = share_without_surface(execution);
+    if (!run.has_surface() || share <= nearly_all) return {};
+    auto text = fmt::format("the result is nearly empty: {:.4g} % of the pixels have no albedo", share * 100);
+    if (const auto* image = std::get_if<ReflectanceSurface>(&run.surface))
+        text += " (pixels: " + reasons_text(reasons_of(*image, execution)) + ")";
+    return {text};
+}
 
 std::string run_digest(const Run& run) {
     Sha256 sha;
@@ -132,6 +208,10 @@ std::string run_json(const Run& run, const Execution& execution) {
         json["sky"] = {{"turbidity", run.sky.turbidity}};
     }
     json["inputs"] = inputs_json(run);
+    if (const auto* image = std::get_if<ReflectanceSurface>(&run.surface)) {
+        json["image"] = image_json(*image);
+        json["image"]["unused_pixels"] = reasons_json(reasons_of(*image, execution));
+    }
     if (!run.classes.empty()) json["classes"] = classes_json(run);
     json["methods"] = methods_json(run);
     json["layers"] = layers_json(run, execution);
@@ -139,6 +219,7 @@ std::string run_json(const Run& run, const Execution& execution) {
     json["infinite_numbers_in_inputs"] = execution.infinities;
     json["assumptions"] = run.assumptions;
     json["warnings"] = run.warnings;
+    for (const auto& warning : closing_warnings(run, execution)) json["warnings"].push_back(warning);
     return json.dump(2, ' ', false, Json::error_handler_t::replace) + "\n";
 }
 
@@ -156,6 +237,9 @@ std::vector<std::string> summary(const Run& run, const Execution& execution) {
                                                           band.mean, band.min, band.max, unit, missing));
         }
     }
+    if (const auto* image = std::get_if<ReflectanceSurface>(&run.surface))
+        if (const auto reasons = reasons_of(*image, execution); !reasons.empty())
+            lines.push_back("pixels without the image's albedo, by reason: " + reasons_text(reasons));
     for (const auto& row : quality_rows()) {
         const bool where_from = row.mask == quality::source_mask && row.value != quality::no_surface;
         const auto pixels = pixels_of(row, execution);

@@ -4,14 +4,14 @@
 
 #include "sunbudget/base/error.hpp"
 #include "sunbudget/base/text.hpp"
+#include "sunbudget/tables/sensors.hpp"
 
 namespace sunbudget {
 
 namespace {
 
-/// The first row of a family is its default.
-const std::vector<Method>& table() {
-    static const std::vector<Method> rows{
+std::vector<Method> written_rows() {
+    return {
         {.family = "sun_position",
          .name = "erfa",
          .text = "apparent place of the sun, topocentric, from the standard astronomy routines",
@@ -72,7 +72,27 @@ const std::vector<Method>& table() {
                          .allowed = {0.0, 1.0},
                          .text = "broadband albedo; outside the usual range no natural or built "
                                  "surface is found (Oke 1987, Tables 1.1 and 8.2)"}}},
+        {.family = "albedo",
+         .name = "own-weights",
+         .text = "a sum of the image's reflectance with the plan's own weights; their error is not "
+                 "known, 0.03 is taken",
+         .source = "given by the user",
+         .parameters = {}},
     };
+}
+
+/// The first row of a family is its default.
+const std::vector<Method>& table() {
+    static const std::vector<Method> rows = [] {
+        auto all = written_rows();
+        for (const auto& set : weight_sets())
+            all.push_back({.family = "albedo",
+                           .name = set.name,
+                           .text = "a weighted sum of the image's reflectance; " + set.text,
+                           .source = set.source,
+                           .parameters = {}});
+        return all;
+    }();
     return rows;
 }
 

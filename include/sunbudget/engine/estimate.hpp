@@ -15,7 +15,7 @@ struct Estimate {
     std::uint64_t scratch_bytes = 0;  ///< beside them while the run goes on
 };
 
-/// Computes and encodes up to `windows` windows spread over the grid, twice each, and scales up.
-[[nodiscard]] Estimate estimate(const Run& run, const EngineOptions& options, int windows = 8);
+/// Reads, computes and encodes up to `windows` windows spread over the grid, and scales up.
+[[nodiscard]] Estimate estimate(const Run& run, const EngineOptions& options, int windows = 16);
 
 }  // namespace sunbudget

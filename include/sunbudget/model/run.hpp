@@ -12,11 +12,13 @@
 #include "sunbudget/model/light.hpp"
 #include "sunbudget/model/terrain.hpp"
 #include "sunbudget/model/time_plan.hpp"
+#include "sunbudget/physics/quality_bits.hpp"
 #include "sunbudget/raster/layer_file.hpp"
 #include "sunbudget/raster/source.hpp"
 #include "sunbudget/tables/class_table.hpp"
 #include "sunbudget/tables/layers.hpp"
 #include "sunbudget/tables/methods.hpp"
+#include "sunbudget/tables/sensors.hpp"
 
 namespace sunbudget {
 
@@ -31,6 +33,41 @@ struct CoverSurface {
 /// Albedo as given: a raster, or one number for all.
 struct GivenSurface {
     std::variant<double, Source> albedo;
+};
+
+/// One band of an image and its weight.
+struct ReflectanceBand {
+    std::string name;
+    double weight = 0;
+    Source reflectance;
+};
+
+/// A quality raster of an image and what its codes mean.
+struct QualityRaster {
+    Source codes;
+    std::vector<QualityBits> tests;
+    RejectReason missing = not_rejected;  ///< for pixels without a code
+};
+
+/// What is known of an image besides its pixels.
+struct ImageFacts {
+    std::string sensor;
+    std::string scene;                        ///< the product's id; empty where unknown
+    std::optional<UtcSeconds> acquired_utc;
+    std::optional<CivilDate> date;            ///< where the time is not known
+    std::optional<double> sun_elevation_deg;  ///< in the middle of the scene
+    std::optional<double> sun_azimuth_deg;
+    std::vector<std::string> rejected;        ///< names of the quality tests
+};
+
+/// Albedo from an image: weighted reflectance where the image can be used, else the fill's.
+struct ReflectanceSurface {
+    std::vector<ReflectanceBand> bands;
+    WeightSet weights;
+    std::vector<QualityRaster> quality;
+    std::optional<CoverSurface> fill;
+    std::uint16_t rejecting = 0;  ///< flags that make a pixel lose the image's albedo
+    ImageFacts facts;
 };
 
 /// One file that came out of a run's grid and methods.
@@ -66,7 +103,7 @@ struct Run {
     int tile = 512;
     bool overviews = true;  ///< a plain GeoTIFF has none
 
-    std::variant<std::monostate, CoverSurface, GivenSurface> surface;
+    std::variant<std::monostate, CoverSurface, GivenSurface, ReflectanceSurface> surface;
     std::optional<Terrain> terrain;  ///< without it the ground is level and open
     double constant_height_m = 0;    ///< then
     Sky sky;

@@ -87,9 +87,62 @@ struct PlanAlbedo {
     }
 };
 
-/// At most one of the two.
+/// The plan's names of reflectance bands, in the order of the spectrum.
+inline constexpr std::array<const char*, 6> plan_band_names{"blue", "green", "red",
+                                                            "nir",  "swir1", "swir2"};
+
+/// Something for each of the bands that are named, in the order of `plan_band_names`.
+template <class T>
+struct PlanBands {
+    Place place;
+    std::array<Maybe<T>, plan_band_names.size()> of;
+    friend bool operator==(const PlanBands& a, const PlanBands& b) { return a.of == b.of; }
+};
+
+/// albedo = constant + sum of weight times reflectance.
+struct PlanWeights {
+    PlanBands<double> bands;
+    Maybe<double> constant;
+    friend bool operator==(const PlanWeights&, const PlanWeights&) = default;
+};
+
+enum class ProductChoice { automatic, surface_reflectance, top_of_atmosphere };
+enum class FillFrom { nodata, cover };
+enum class Implausible { stop, allow };
+
+/// Exactly one of `bands` and `scene`; at most one of `method` and `weights`.
+struct PlanReflectance {
+    Place place;
+    Given<std::string> sensor;
+    std::optional<PlanBands<PlanRaster>> bands;
+    Maybe<PlanPath> scene;
+    Maybe<double> scale;
+    Maybe<double> offset;
+    Maybe<double> nodata;
+    Maybe<std::string> method;
+    std::optional<PlanWeights> weights;
+    Maybe<PlanRaster> quality;
+    Maybe<PlanRaster> saturation;
+    Maybe<PlanRaster> aerosol;
+    Maybe<std::vector<std::string>> reject;  ///< names of quality tests; absent: as the sensor says
+    Maybe<FillFrom> fill;
+    Maybe<ProductChoice> product;
+    Maybe<PlanPath> mtl;
+    Maybe<Implausible> implausible;
+    friend bool operator==(const PlanReflectance& a, const PlanReflectance& b) {
+        return a.sensor == b.sensor && a.bands == b.bands && a.scene == b.scene &&
+               a.scale == b.scale && a.offset == b.offset && a.nodata == b.nodata &&
+               a.method == b.method && a.weights == b.weights && a.quality == b.quality &&
+               a.saturation == b.saturation && a.aerosol == b.aerosol && a.reject == b.reject &&
+               a.fill == b.fill && a.product == b.product && a.mtl == b.mtl &&
+               a.implausible == b.implausible;
+    }
+};
+
+/// At most one of them, but for the cover that fills what the image does not show.
 struct PlanSurface {
     std::optional<PlanCover> cover;
+    std::optional<PlanReflectance> reflectance;
     std::optional<PlanAlbedo> albedo;
     friend bool operator==(const PlanSurface&, const PlanSurface&) = default;
 };

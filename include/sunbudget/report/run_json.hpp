@@ -21,4 +21,7 @@ namespace sunbudget {
 /// A short account for people, one line each: the means of each layer, pixels without value and why.
 [[nodiscard]] std::vector<std::string> summary(const Run& run, const Execution& execution);
 
+/// What has to be said when all is done: that nearly nothing came out, and why.
+[[nodiscard]] std::vector<std::string> closing_warnings(const Run& run, const Execution& execution);
+
 }  // namespace sunbudget
