@@ -65,7 +65,7 @@ Sensor landsat_oli() {
                          .bits = 2,
                          .value = 3,
                          .flag = quality::high_aerosol,
-                         .rejects = true,
+                         .rejects = false,
                          .source = landsat_guide});
     return oli;
 }

@@ -176,8 +176,7 @@ Reckoned compare(const RealScene& scene, const Ran& ran, const std::vector<std::
     return result;
 }
 
-const std::vector<std::string> usual_reject{"cloud",        "dilated_cloud", "cirrus",
-                                            "cloud_shadow", "saturated",     "high_aerosol"};
+const std::vector<std::string> usual_reject{"cloud", "dilated_cloud", "cirrus", "cloud_shadow", "saturated"};
 
 void check_counts(const Ran& ran, const Reckoned& reckoned) {
     const auto unused =
