@@ -167,20 +167,23 @@ double sum_of(const std::vector<double>& values) { return std::accumulate(values
 
 Sampled sample_of(const Run& run, const EngineOptions& options, const std::vector<Window>& windows) {
     Sampled sampled;
-    std::vector<std::optional<SurfaceReader>> readers(static_cast<std::size_t>(options.threads));
+    const auto threads = static_cast<std::size_t>(options.threads);
+    std::vector<std::optional<SurfaceReader>> readers(threads);
+    std::vector<Plane<float>> albedo(threads);
+    std::vector<Plane<std::uint16_t>> flags(threads);
+    // One pixel each: files are opened once a thread, however many windows there are.
+    for (std::size_t t = 0; t < threads; ++t)
+        readers[t].emplace(run).read({windows.front().column, windows.front().row, 1, 1}, albedo[t], flags[t]);
     const auto read = timed(windows, options.threads, [&](std::size_t i, int thread) {
-        auto& reader = readers[static_cast<std::size_t>(thread)];
-        if (!reader) reader.emplace(run);
-        Plane<float> albedo;
-        Plane<std::uint16_t> flags;
-        reader->read(windows[i], albedo, flags);
+        readers[static_cast<std::size_t>(thread)]->read(windows[i], albedo[static_cast<std::size_t>(thread)],
+                                                        flags[static_cast<std::size_t>(thread)]);
     });
     sampled.read_s = sum_of(read);
     const auto start = Clock::now();
     const ScratchFolder scratch;
     const SharedLight light(run, options.threads, scratch.path);
     sampled.shared_s = seconds_since(start);
-    std::vector<std::optional<Flow>> flows(static_cast<std::size_t>(options.threads));
+    std::vector<std::optional<Flow>> flows(threads);
     std::vector<std::uint64_t> bytes(windows.size());
     const auto compute = [&](const Window& window, int thread) {
         auto& flow = flows[static_cast<std::size_t>(thread)];
@@ -210,7 +213,7 @@ Sampled sample_of(const Run& run, const EngineOptions& options, const std::vecto
 double decoding_passes(const Run& run, const EngineOptions& options) {
     const auto* cover = std::get_if<CoverSurface>(&run.surface);
     if (cover == nullptr) return 1;
-    return cover->codes.info().decoded_bytes <= raster_cache_bytes(options.memory_bytes) ? 1 : 2;
+    return decoded_bytes(cover->codes) <= raster_cache_bytes(options.memory_bytes) ? 1 : 2;
 }
 
 /// A finished file beside its tiles: directories, tile tables and metadata.
@@ -224,8 +227,10 @@ std::uint64_t header_bytes(const OutputLayer& layer) {
 
 }  // namespace
 
-Estimate estimate(const Run& run, const EngineOptions& options, int windows) {
-    const auto sample = spread(run, windows);
+Estimate estimate(const Run& run, const EngineOptions& options) {
+    // Shade and sky cost a hundred times what a flat pixel does.
+    const int wanted = run.terrain ? 16 : 48;
+    const auto sample = spread(run, wanted);
     const auto sampled = sample_of(run, options, sample);
     const double all_pixels = static_cast<double>(run.grid.width) * run.grid.height;
     const double scale = all_pixels / std::max(1.0, sampled.pixels);

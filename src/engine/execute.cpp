@@ -113,7 +113,7 @@ struct InputSizes {
 InputSizes input_sizes(const Run& run) {
     InputSizes sizes;
     const auto add = [&](const Source& source) {
-        sizes.decoded_bytes += source.info().decoded_bytes;
+        sizes.decoded_bytes += decoded_bytes(source);
         sizes.bytes_per_pixel += sizeof(float);
     };
     if (const auto* cover = std::get_if<CoverSurface>(&run.surface)) add(cover->codes);
@@ -174,6 +174,14 @@ void check_space(const Run& run, const std::filesystem::path& folder) {
 
 std::uint64_t raster_cache_bytes(std::uint64_t memory_bytes) {
     return std::clamp<std::uint64_t>(memory_bytes / 8, 32u << 20, 512u << 20);
+}
+
+std::uint64_t decoded_bytes(const Source& source) {
+    const auto& grid = source.info().grid;
+    const double bytes_per_pixel = static_cast<double>(source.info().decoded_bytes) / grid.width / grid.height;
+    const double pixels = static_cast<double>(source.target().width) * source.target().height * source.coverage() *
+                          source.columns_per_pixel() * source.rows_per_pixel();
+    return std::min(source.info().decoded_bytes, static_cast<std::uint64_t>(pixels * bytes_per_pixel));
 }
 
 std::uint64_t memory_needed(const Run& run, const EngineOptions& options) {

@@ -155,7 +155,7 @@ Form reflectance_form() {
          {"aerosol", {raster}, "quality of the aerosol (Landsat: SR_QA_AEROSOL)"},
          {"reject",
           {list(choice(quality_test_names()), 0, {}, true)},
-          "what the image's pixels are not used for; default: all but snow, which is a surface"},
+          "what the image's pixels are not used for; default: all but snow, which is a surface, and high_aerosol"},
          {"fill",
           {choice(fill_names)},
           "what pixels without an image get: no data, or the albedo of surface.cover",

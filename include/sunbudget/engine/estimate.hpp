@@ -15,7 +15,7 @@ struct Estimate {
     std::uint64_t scratch_bytes = 0;  ///< beside them while the run goes on
 };
 
-/// Reads, computes and encodes up to `windows` windows spread over the grid, and scales up.
-[[nodiscard]] Estimate estimate(const Run& run, const EngineOptions& options, int windows = 16);
+/// Reads, computes and encodes a few dozen windows at most, spread over the grid, and scales up.
+[[nodiscard]] Estimate estimate(const Run& run, const EngineOptions& options);
 
 }  // namespace sunbudget

@@ -42,6 +42,9 @@ struct Execution {
 /// GDAL's share of the memory budget.
 [[nodiscard]] std::uint64_t raster_cache_bytes(std::uint64_t memory_bytes);
 
+/// What a raster takes once it is decoded, as far as the grid covers it.
+[[nodiscard]] std::uint64_t decoded_bytes(const Source& source);
+
 /// Memory the run will hold at its peak, all threads: planes, overviews in the making, GDAL's cache.
 [[nodiscard]] std::uint64_t memory_needed(const Run& run, const EngineOptions& options);
 
