@@ -53,10 +53,26 @@ std::optional<Frame> frame_of(const Window& block, const Locator& locator) {
     return frame;
 }
 
+/// Mean height of pixels spread evenly over the grid; 0 where none of them has one.
+double mean_height_m(const Terrain& terrain, const Grid& grid) {
+    constexpr long samples = 16;
+    ElevationReader reader(terrain.elevation);
+    Plane<float> height_m;
+    double sum = 0, count = 0;
+    for (long r = 0; r < samples; ++r)
+        for (long c = 0; c < samples; ++c) {
+            reader.read({(2 * c + 1) * grid.width / (2 * samples), (2 * r + 1) * grid.height / (2 * samples), 1, 1}, height_m);
+            if (std::isnan(height_m.at(0, 0))) continue;
+            sum += static_cast<double>(height_m.at(0, 0));
+            ++count;
+        }
+    return count > 0 ? sum / count : 0;
+}
+
 }  // namespace
 
 SharedTerrain::SharedTerrain(const Terrain& terrain, const Grid& grid, const std::filesystem::path& scratch_folder)
-    : terrain_(terrain), grid_(grid) {
+    : terrain_(terrain), grid_(grid), middle_height_m_(mean_height_m(terrain, grid)) {
     const Locator locator(grid);
     double step_m = 1e30, cell_m = 0;
     // The finest cells of the grid decide how many levels the reach takes.
@@ -74,7 +90,7 @@ SharedTerrain::SharedTerrain(const Terrain& terrain, const Grid& grid, const std
 SharedTerrain::~SharedTerrain() = default;
 
 std::shared_ptr<const SunSectors> SharedTerrain::sectors(const Window& block, std::size_t first_band, std::size_t bands,
-                                                         const LightField& light, int thread, ElevationReader& reader) {
+                                                         const LightField& light, int thread) {
     const Key key{block.column / region_px_, block.row / region_px_, first_band};
     std::shared_ptr<Entry> entry;
     {
@@ -98,10 +114,8 @@ std::shared_ptr<const SunSectors> SharedTerrain::sectors(const Window& block, st
         const auto place = middle ? middle
                                   : light.locator(thread).at(static_cast<double>(block.column) + block.width / 2.0,
                                                              static_cast<double>(block.row) + block.height / 2.0);
-        Plane<float> height_m;
-        reader.read({column, row, 1, 1}, height_m);
-        const double h = std::isnan(height_m.at(0, 0)) ? 0 : static_cast<double>(height_m.at(0, 0));
-        entry->sectors = std::make_shared<const SunSectors>(light.point(), *place, h, first_band, bands, terrain_.directions);
+        entry->sectors = std::make_shared<const SunSectors>(light.point(), *place, middle_height_m_, first_band, bands,
+                                                            terrain_.directions);
     });
     return entry->sectors;
 }
@@ -246,15 +260,13 @@ void BlockShader::shade(const Window& block, std::size_t first_band, std::size_t
     std::shared_ptr<const SunSectors> sectors;
     out.whole.clear();
     if (bands > 0) {
-        // The middle pixel's height: a hole there counts as sea level, the light is corrected anyway.
-        const float middle = s.patch.height_m.at(near_steps + block.width / 2, near_steps + block.height / 2);
-        const double height_m = is_ground(middle) ? static_cast<double>(middle) : 0;
+        const double height_m = s.shared.middle_height_m();
         if (s.light->point().most_suns(first_band, bands) <= static_cast<std::size_t>(s.shared.terrain().directions)) {
             const auto few = few_suns(s.light->point(), frame->place, height_m, first_band, bands);
             s.cast_own(*frame, few, out);
             out.whole = few.whole;
         } else {
-            sectors = s.shared.sectors(block, first_band, bands, *s.light, s.thread, s.elevation);
+            sectors = s.shared.sectors(block, first_band, bands, *s.light, s.thread);
             out.whole = sectors->whole();
         }
     }
