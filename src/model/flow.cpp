@@ -70,6 +70,14 @@ struct BandPlanes {
     Plane<float> direct, diffuse, reflected, hours;
 };
 
+/// Adds a flag where there is no value, unless another flag says why already. Without branches.
+void flag_nan(std::span<const float> values, std::span<std::uint16_t> flags, std::uint16_t flag, std::uint16_t unless) {
+    for (std::size_t i = 0; i < values.size(); ++i) {
+        const bool missing = (values[i] != values[i]) & ((flags[i] & unless) == 0);
+        flags[i] = static_cast<std::uint16_t>(flags[i] | (missing ? flag : 0));
+    }
+}
+
 }  // namespace
 
 SharedLight::SharedLight(const Run& run, int threads, const std::filesystem::path& scratch_folder) {
@@ -125,9 +133,7 @@ struct Flow::State {
 void Flow::State::read_heights() {
     if (!run.terrain) return;
     shader->heights(window, heights_m);
-    for (int r = 0; r < window.height; ++r)
-        for (std::size_t i = 0; i < heights_m.row(r).size(); ++i)
-            if (std::isnan(heights_m.row(r)[i])) flags.row(r)[i] |= quality::no_elevation;
+    for (int r = 0; r < window.height; ++r) flag_nan(heights_m.row(r), flags.row(r), quality::no_elevation, 0);
 }
 
 void Flow::State::prepare_light() {
@@ -139,15 +145,17 @@ void Flow::State::prepare_light() {
 /// Light is missing where the height is, or where the projection has no place on Earth.
 void Flow::State::flag_missing_light(const Plane<float>& light) {
     for (int r = 0; r < light.height(); ++r)
-        for (std::size_t i = 0; i < light.row(r).size(); ++i)
-            if (std::isnan(light.row(r)[i]) && (flags.row(r)[i] & quality::no_elevation) == 0)
-                flags.row(r)[i] |= quality::outside_projection;
+        flag_nan(light.row(r), flags.row(r), quality::outside_projection, quality::no_elevation);
 }
 
-/// Flags come in runs: the map is asked once a run, not once a pixel.
+/// Flags come in runs, often of whole rows: the map is asked once a run, not once a pixel.
 void Flow::State::count_flags() {
     for (int r = 0; r < flags.height(); ++r) {
         const auto row = flags.row(r);
+        if (std::count(row.begin(), row.end(), row.front()) == static_cast<std::ptrdiff_t>(row.size())) {
+            flag_counts[row.front()] += row.size();
+            continue;
+        }
         for (auto first = row.begin(); first != row.end();) {
             const auto last = std::find_if(first, row.end(), [&](auto flag) { return flag != *first; });
             flag_counts[*first] += static_cast<std::uint64_t>(last - first);

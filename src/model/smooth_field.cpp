@@ -118,6 +118,24 @@ void fill_row_at_one_height(float* __restrict out, int count, float first_u, flo
     }
 }
 
+/// The height cells that a window's pixels lie in. Neighbours mostly share one: the set is asked
+/// only where the height leaves it.
+std::set<int> height_cells_of(const Window& window, const Window& frame, const Plane<float>& heights_m) {
+    std::set<int> cells;
+    const auto left = static_cast<std::size_t>(window.column - frame.column);
+    const int top = static_cast<int>(window.row - frame.row);
+    float floor_m = 0, ceiling_m = 0;
+    for (int r = 0; r < window.height; ++r)
+        for (const float height_m : heights_m.row(top + r).subspan(left, static_cast<std::size_t>(window.width))) {
+            if ((height_m >= floor_m && height_m < ceiling_m) || !std::isfinite(height_m)) continue;
+            const double cell = std::floor(static_cast<double>(height_m) / height_cell_m);
+            cells.insert(static_cast<int>(cell));
+            floor_m = static_cast<float>(cell * height_cell_m);
+            ceiling_m = static_cast<float>((cell + 1) * height_cell_m);
+        }
+    return cells;
+}
+
 }  // namespace
 
 struct SmoothField::Work {
@@ -279,7 +297,8 @@ void SmoothField::Block::fill(std::size_t value, const Plane<float>& heights_m, 
     const auto& window = cells_->window;
     const auto left = static_cast<std::size_t>(window.column - cells_->frame.column);
     const int top = static_cast<int>(window.row - cells_->frame.row);
-    for (int r = 0; r < window.height; ++r)
+    // At one height the pieces cover every pixel; else a height may be missing.
+    for (int r = 0; cells_->varies_in_height && r < window.height; ++r)
         std::fill_n(out.row(top + r).data() + left, window.width, nan_value);
     for (const auto& piece : cells_->pieces) {
         if (piece.cell.size <= 2)
@@ -302,17 +321,7 @@ SmoothField::Block SmoothField::prepare(const Window& window, const Window& fram
     cells.frame = frame;
     cells.varies_in_height = work_->varies_in_height();
     cells.own = std::make_unique<Nodes>(work_->shape, work_->function);
-    std::set<int> height_cells;
-    if (cells.varies_in_height) {
-        const auto left = static_cast<std::size_t>(window.column - frame.column);
-        const int top = static_cast<int>(window.row - frame.row);
-        for (int r = 0; r < window.height; ++r)
-            for (const float height_m : heights_m.row(top + r).subspan(left, static_cast<std::size_t>(window.width)))
-                if (std::isfinite(height_m))
-                    height_cells.insert(static_cast<int>(std::floor(static_cast<double>(height_m) / height_cell_m)));
-    } else {
-        height_cells.insert(0);
-    }
+    const auto height_cells = cells.varies_in_height ? height_cells_of(window, frame, heights_m) : std::set<int>{0};
     const int column = static_cast<int>(window.column) / largest_cell_px * largest_cell_px;
     const int row = static_cast<int>(window.row) / largest_cell_px * largest_cell_px;
     for (const int height_cell : height_cells)

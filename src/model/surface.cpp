@@ -29,6 +29,7 @@ struct SurfaceReader::State {
     Plane<std::int32_t> codes;
     Plane<float> fill_albedo;
     Plane<std::uint16_t> fill_flags;
+    std::vector<float> sources;  // scratch: a row of the quality layer's source numbers
 
     explicit State(const Run& r) : run(r) {
         if (const auto* cover = std::get_if<CoverSurface>(&run.surface)) reader.emplace(cover->codes);
@@ -56,15 +57,13 @@ void SurfaceReader::State::read_cover(const CoverSurface& cover, const Window& w
         return;
     }
     reader->read_codes(window, codes);
+    sources.resize(static_cast<std::size_t>(window.width));
     for (int r = 0; r < window.height; ++r) {
-        const auto code = codes.row(r);
-        const auto a = albedo.row(r);
-        const auto flag = flags.row(r);
-        for (std::size_t i = 0; i < code.size(); ++i) {
-            a[i] = cover.albedo.of(code[i]);
-            const float source = cover.quality.of(code[i]);
-            flag[i] = std::isnan(source) ? quality::no_surface : static_cast<std::uint16_t>(source);
-        }
+        cover.albedo.of_row(codes.row(r), albedo.row(r));
+        cover.quality.of_row(codes.row(r), sources);
+        std::transform(sources.begin(), sources.end(), flags.row(r).begin(), [](float source) {
+            return std::isnan(source) ? quality::no_surface : static_cast<std::uint16_t>(source);
+        });
     }
 }
 

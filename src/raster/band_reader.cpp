@@ -2,9 +2,11 @@
 
 #include <gdal_priv.h>
 
+#include <algorithm>
 #include <cmath>
 #include <type_traits>
 
+#include "convert.hpp"
 #include "sunbudget/base/error.hpp"
 #include "sunbudget/base/text.hpp"
 #include "sunbudget/raster/gdal_setup.hpp"
@@ -72,13 +74,15 @@ void BandReader::read(const Window& window, Plane<float>& out) {
 }
 
 void BandReader::read_codes(const Window& window, Plane<std::int32_t>& out) {
+    if (info_.type == PixelType::u8) return read_pieces<std::uint8_t>(window, out);
     if (fits_int32(info_.type)) return read_pieces<std::int32_t>(window, out);
     read_pieces<double>(window, out);
 }
 
 std::span<const std::uint8_t> BandReader::bytes(const Window& inside) {
-    fetch(*band_, stored_window(inside), bytes_);
-    return bytes_;
+    auto& values = buffer<std::uint8_t>();
+    fetch(*band_, stored_window(inside), values);
+    return values;
 }
 
 /// Cuts the window into pieces that lie on the raster, one for each turn round the globe.
@@ -86,6 +90,10 @@ template <typename Stored, typename Value>
 void BandReader::read_pieces(const Window& window, Plane<Value>& out) {
     if (out.width() != window.width || out.height() != window.height)
         out = Plane<Value>(window.width, window.height);
+    const bool whole = period_ == 0 && window.column >= 0 &&
+                       window.column + window.width <= info_.grid.width && window.row >= 0 &&
+                       window.row + window.height <= info_.grid.height;
+    if (whole) return read_inside<Stored>(window, 0, 0, out);
     out.fill(none<Value>());
     const long top = std::max(0L, window.row);
     const long bottom = std::min<long>(info_.grid.height, window.row + window.height);
@@ -122,6 +130,7 @@ void BandReader::fetch(GDALRasterBand& band, const Window& stored, std::vector<S
                       gdal_type<Stored>(), 0, 0, nullptr);
     if (done != CE_None || messages.failed())
         throw_read_error(info_, stored, messages.first_failure());
+    if (whole_blocks(stored)) band.FlushCache(false);
     // GDAL before 3.7 reads signed bytes as if they had no sign.
     if (&band == band_ && info_.type == PixelType::i8)
         for (auto& value : values)
@@ -129,59 +138,62 @@ void BandReader::fetch(GDALRasterBand& band, const Window& stored, std::vector<S
                 value = static_cast<Stored>(value - Stored{127} - Stored{127} - Stored{2});
 }
 
+/// The whole of what a thread reads of blocks it will not see again: they need not be kept, and the
+/// next ones find their memory still warm.
+bool BandReader::whole_blocks(const Window& stored) const noexcept {
+    const auto ends = [](long first, int count, int block, int size) {
+        return first % block == 0 && ((first + count) % block == 0 || first + count == size);
+    };
+    return ends(stored.column, stored.width, info_.block_width, info_.grid.width) &&
+           ends(stored.row, stored.height, info_.block_height, info_.grid.height);
+}
+
 template <typename Stored, typename Value>
 void BandReader::read_inside(const Window& inside, int to_column, int to_row, Plane<Value>& out) {
-    auto& values = [this]() -> std::vector<Stored>& {
-        if constexpr (std::is_same_v<Stored, float>) return floats_;
-        if constexpr (std::is_same_v<Stored, double>) return doubles_;
-        if constexpr (std::is_same_v<Stored, std::int32_t>) return integers_;
-    }();
+    auto& values = buffer<Stored>();
     const Window stored = stored_window(inside);
     fetch(*band_, stored, values);
-    if (mask_ != nullptr) fetch(*mask_, stored, bytes_);
+    if (mask_ != nullptr) fetch(*mask_, stored, mask_values_);
     const auto width = static_cast<std::size_t>(inside.width);
     for (int r = 0; r < inside.height; ++r) {
         const int stored_row = south_up_ ? inside.height - 1 - r : r;
         const std::size_t first = static_cast<std::size_t>(stored_row) * width;
-        auto row = out.row(to_row + r).subspan(static_cast<std::size_t>(to_column), width);
-        for (std::size_t c = 0; c < width; ++c) {
-            const std::size_t from = first + (mirrored_ ? width - 1 - c : c);
-            const bool masked = mask_ != nullptr && bytes_[from] == 0;
-            if (!masked && !is_nodata(values[from])) convert(values[from], row[c]);
-        }
+        Stored* row = values.data() + first;
+        std::uint8_t* mask = mask_ == nullptr ? nullptr : mask_values_.data() + first;
+        if (mirrored_) std::reverse(row, row + width);
+        if (mirrored_ && mask != nullptr) std::reverse(mask, mask + width);
+        convert_row(row, mask, width, out.row(to_row + r).data() + to_column);
     }
 }
 
+/// A masked pixel is no number before it is converted: an infinite one there is not counted.
 template <typename Stored>
-bool BandReader::is_nodata(Stored value) const noexcept {
-    if constexpr (std::is_floating_point_v<Stored>)
-        if (std::isnan(value)) return true;
+void BandReader::convert_row(Stored* row, const std::uint8_t* mask, std::size_t count, float* out) {
+    constexpr Stored nan = std::numeric_limits<Stored>::quiet_NaN();
+    if (mask != nullptr) drop_masked(mask, count, nan, row);
     // Compared in the stored type: a double in the header stands for the float nearest to it.
-    return nodata_ && !std::isnan(*nodata_) && value == static_cast<Stored>(*nodata_);
+    const Stored nodata = nodata_ ? static_cast<Stored>(*nodata_) : nan;
+    infinities_ += physical_row(row, count, nodata, scaling_, out);
 }
 
 template <typename Stored>
-void BandReader::convert(Stored value, float& out) noexcept {
-    const auto physical =
-        static_cast<float>(static_cast<double>(value) * scaling_.scale + scaling_.offset);
-    if (std::isfinite(physical))
-        out = physical;
-    else
-        ++infinities_;
-}
-
-template <typename Stored>
-void BandReader::convert(Stored value, std::int32_t& out) const {
-    if constexpr (std::is_floating_point_v<Stored>) {
-        const auto number = static_cast<double>(value);
-        if (number != std::floor(number) || std::abs(number) > 2147483647.0)
-            throw Error(Cause::input,
-                        "the band holds " + shortest(number) + ", which is no class code",
-                        text_of(info_.name), "name a raster of whole-number codes");
-        out = static_cast<std::int32_t>(number);
+void BandReader::convert_row(Stored* row, const std::uint8_t* mask, std::size_t count,
+                             std::int32_t* out) {
+    if constexpr (std::is_same_v<Stored, double>) {
+        std::transform(row, row + count, out, [this](double value) { return code_of(value); });
     } else {
-        out = value;
+        const auto nodata = nodata_ ? static_cast<std::int32_t>(*nodata_) : no_code;
+        code_row(row, count, nodata, out);
     }
+    if (mask != nullptr) drop_masked(mask, count, no_code, out);
+}
+
+std::int32_t BandReader::code_of(double value) const {
+    if (std::isnan(value) || (nodata_ && value == *nodata_)) return no_code;
+    if (value != std::floor(value) || std::abs(value) > 2147483647.0)
+        throw Error(Cause::input, "the band holds " + shortest(value) + ", which is no class code",
+                    text_of(info_.name), "name a raster of whole-number codes");
+    return static_cast<std::int32_t>(value);
 }
 
 }  // namespace sunbudget

@@ -1,6 +1,7 @@
 #pragma once
 
 #include <cstdint>
+#include <tuple>
 #include <vector>
 
 #include "dataset.hpp"
@@ -33,6 +34,10 @@ class BandReader {
     [[nodiscard]] std::uint64_t infinities() const noexcept { return infinities_; }
 
   private:
+    template <typename Stored>
+    [[nodiscard]] std::vector<Stored>& buffer() noexcept {
+        return std::get<std::vector<Stored>>(values_);
+    }
     template <typename Stored, typename Value>
     void read_pieces(const Window& window, Plane<Value>& out);
     template <typename Stored, typename Value>
@@ -40,11 +45,11 @@ class BandReader {
     template <typename Stored>
     void fetch(GDALRasterBand& band, const Window& stored, std::vector<Stored>& values);
     template <typename Stored>
-    [[nodiscard]] bool is_nodata(Stored value) const noexcept;
+    void convert_row(Stored* row, const std::uint8_t* mask, std::size_t count, float* out);
     template <typename Stored>
-    void convert(Stored value, float& out) noexcept;
-    template <typename Stored>
-    void convert(Stored value, std::int32_t& out) const;
+    void convert_row(Stored* row, const std::uint8_t* mask, std::size_t count, std::int32_t* out);
+    [[nodiscard]] std::int32_t code_of(double value) const;
+    [[nodiscard]] bool whole_blocks(const Window& stored) const noexcept;
     [[nodiscard]] Window stored_window(const Window& inside) const noexcept;
 
     RasterInfo info_;
@@ -57,10 +62,11 @@ class BandReader {
     bool south_up_;
     bool mirrored_;
     std::uint64_t infinities_ = 0;
-    std::vector<float> floats_;
-    std::vector<double> doubles_;
-    std::vector<std::int32_t> integers_;
-    std::vector<std::uint8_t> bytes_;  // the mask, or a band of bytes
+    /// The pixels of one fetch as GDAL gives them; one of these is in use.
+    std::tuple<std::vector<float>, std::vector<double>, std::vector<std::int32_t>,
+               std::vector<std::uint8_t>>
+        values_;
+    std::vector<std::uint8_t> mask_values_;
 };
 
 }  // namespace sunbudget

@@ -15,19 +15,18 @@
 namespace sunbudget {
 
 namespace {
-inline double nearest_multiple(double value, double quantum) {
-    return std::nearbyint(value / quantum) * quantum + 0.0;  // + 0.0 turns -0 into 0
+/// Quanta are powers of two: their inverse is exact, and multiplying by it is dividing.
+inline double nearest_multiple(double value, double quantum, double inverse) {
+    return std::nearbyint(value * inverse) * quantum + 0.0;  // + 0.0 turns -0 into 0
 }
 
 /// NaN where no pixel is valid.
 inline double mean_of_valid(float a, float b, float c, float d) {
-    double sum = 0;
-    double valid = 0;
-    for (const float value : {a, b, c, d}) {
-        sum += value == value ? static_cast<double>(value) : 0.0;
-        valid += value == value ? 1.0 : 0.0;
-    }
-    return sum / valid;
+    const auto value = [](float v) { return static_cast<double>(zero_if_nan(v)); };
+    const double sum = 0.0 + value(a) + value(b) + value(c) + value(d);
+    const int valid =
+        zero_or_one(a == a) + zero_or_one(b == b) + zero_or_one(c == c) + zero_or_one(d == d);
+    return sum / static_cast<double>(valid);
 }
 
 SUNBUDGET_CLONES void fold_rows(const float* upper, const float* lower, std::size_t count,
@@ -39,15 +38,18 @@ SUNBUDGET_CLONES void fold_rows(const float* upper, const float* lower, std::siz
 
 SUNBUDGET_CLONES void fold_rows_rounded(const float* upper, const float* lower, std::size_t count,
                                         double quantum, float* out) {
+    const double inverse = 1 / quantum;
     for (std::size_t i = 0; i < count; ++i)
         out[i] = static_cast<float>(nearest_multiple(
-            mean_of_valid(upper[2 * i], upper[2 * i + 1], lower[2 * i], lower[2 * i + 1]),
-            quantum));
+            mean_of_valid(upper[2 * i], upper[2 * i + 1], lower[2 * i], lower[2 * i + 1]), quantum,
+            inverse));
 }
 
 SUNBUDGET_CLONES void round_values(float* row, std::size_t count, double quantum) {
+    const double inverse = 1 / quantum;
     for (std::size_t i = 0; i < count; ++i)
-        row[i] = static_cast<float>(nearest_multiple(static_cast<double>(row[i]), quantum));
+        row[i] =
+            static_cast<float>(nearest_multiple(static_cast<double>(row[i]), quantum, inverse));
 }
 
 /// Folds a whole tile into one quarter of its parent.

@@ -28,9 +28,7 @@ namespace {
 void values_of(const Plane<std::int32_t>& codes, const CodeValues& values, Plane<float>& out) {
     if (out.width() != codes.width() || out.height() != codes.height())
         out = Plane<float>(codes.width(), codes.height());
-    for (int r = 0; r < codes.height(); ++r)
-        std::transform(codes.row(r).begin(), codes.row(r).end(), out.row(r).begin(),
-                       [&values](std::int32_t code) { return values.of(code); });
+    for (int r = 0; r < codes.height(); ++r) values.of_row(codes.row(r), out.row(r));
 }
 
 }  // namespace

@@ -8,6 +8,7 @@
 #include "overlay.hpp"
 #include "pixel_map.hpp"
 #include "sunbudget/base/error.hpp"
+#include "sunbudget/base/simd.hpp"
 #include "sunbudget/base/text.hpp"
 #include "sunbudget/raster/grid_build.hpp"
 
@@ -96,6 +97,13 @@ ChosenNodata choose_nodata(const SourceSpec& spec, const RasterInfo& info) {
     return {};
 }
 
+/// Codes beyond the table, negative ones among them, get its last value.
+SUNBUDGET_CLONES void look_up(const std::int32_t* codes, std::size_t count, const float* table,
+                              std::uint32_t last, float* values) noexcept {
+    for (std::size_t i = 0; i < count; ++i)
+        values[i] = table[std::min(static_cast<std::uint32_t>(codes[i]), last)];
+}
+
 }  // namespace
 
 CodeValues::CodeValues(std::span<const std::pair<std::int32_t, float>> values) {
@@ -103,13 +111,23 @@ CodeValues::CodeValues(std::span<const std::pair<std::int32_t, float>> values) {
     std::int32_t highest = -1;
     for (const auto& [code, value] : values)
         if (code <= most_dense) highest = std::max(highest, code);
-    dense_.assign(static_cast<std::size_t>(highest + 1), std::numeric_limits<float>::quiet_NaN());
+    dense_.assign(static_cast<std::size_t>(highest + 2), std::numeric_limits<float>::quiet_NaN());
     for (const auto& [code, value] : values) {
         if (code >= 0 && code <= most_dense)
             dense_[static_cast<std::size_t>(code)] = value;
         else
             others_[code] = value;
     }
+}
+
+void CodeValues::of_row(std::span<const std::int32_t> codes,
+                        std::span<float> values) const noexcept {
+    look_up(codes.data(), codes.size(), dense_.data(),
+            static_cast<std::uint32_t>(dense_.size() - 1), values.data());
+    if (others_.empty()) return;
+    for (std::size_t i = 0; i < codes.size(); ++i)
+        if (codes[i] < 0 || static_cast<std::size_t>(codes[i]) + 1 >= dense_.size())
+            values[i] = of(codes[i]);
 }
 
 Source Source::open(const SourceSpec& spec, const Grid& target) {

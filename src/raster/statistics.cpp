@@ -15,35 +15,41 @@ constexpr std::size_t strands = 16;
 
 struct Strands {
     std::array<double, strands> sum{};
-    std::array<double, strands> count{};
+    std::array<std::int32_t, strands> count{};
     std::array<float, strands> min{};
     std::array<float, strands> max{};
 };
 
-SUNBUDGET_CLONES void first_pass(const float* row, std::size_t size, Strands& s) {
+SUNBUDGET_CLONES Strands first_pass(const float* row, std::size_t size) {
+    Strands s;  // its own, so that it may stay in registers
+    s.min.fill(std::numeric_limits<float>::infinity());
+    s.max.fill(-std::numeric_limits<float>::infinity());
     for (std::size_t first = 0; first < size; first += strands)
         for (std::size_t k = 0; k < strands; ++k) {
             const float value = row[first + k];
-            const bool valid = value == value;
-            s.sum[k] += valid ? static_cast<double>(value) : 0.0;
-            s.count[k] += valid ? 1.0 : 0.0;
+            s.sum[k] += static_cast<double>(zero_if_nan(value));
+            s.count[k] += zero_or_one(value == value);
             s.min[k] = value < s.min[k] ? value : s.min[k];
             s.max[k] = value > s.max[k] ? value : s.max[k];
         }
+    return s;
 }
 
-SUNBUDGET_CLONES void second_pass(const float* row, std::size_t size, double mean,
-                                  std::array<double, strands>& squares) {
+SUNBUDGET_CLONES std::array<double, strands> second_pass(const float* row, std::size_t size,
+                                                         double mean) {
+    std::array<double, strands> squares{};
     for (std::size_t first = 0; first < size; first += strands)
         for (std::size_t k = 0; k < strands; ++k) {
-            const double difference = static_cast<double>(row[first + k]) - mean;
-            squares[k] += difference == difference ? difference * difference : 0.0;
+            const double difference = zero_if_nan(static_cast<double>(row[first + k]) - mean);
+            squares[k] += difference * difference;
         }
+    return squares;
 }
 
-double total(const std::array<double, strands>& parts) {
+template <typename Number>
+double total(const std::array<Number, strands>& parts) {
     double sum = 0;
-    for (const double part : parts) sum += part;
+    for (const auto part : parts) sum += static_cast<double>(part);
     return sum;
 }
 
@@ -62,15 +68,11 @@ void merge(BlockStatistics& into, const BlockStatistics& other) noexcept {
 
 /// Figures of up to `piece` pixels, a multiple of `strands`; what is missing there is NaN.
 BlockStatistics of_piece(const float* row, std::size_t size) noexcept {
-    Strands s;
-    s.min.fill(std::numeric_limits<float>::infinity());
-    s.max.fill(-std::numeric_limits<float>::infinity());
-    first_pass(row, size, s);
+    const Strands s = first_pass(row, size);
     const double count = total(s.count);
     if (count == 0) return {};
     const double mean = total(s.sum) / count;
-    std::array<double, strands> squares{};
-    second_pass(row, size, mean, squares);
+    const auto squares = second_pass(row, size, mean);
     return {static_cast<std::uint64_t>(count),
             static_cast<double>(*std::min_element(s.min.begin(), s.min.end())),
             static_cast<double>(*std::max_element(s.max.begin(), s.max.end())), mean,

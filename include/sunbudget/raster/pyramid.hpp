@@ -12,7 +12,8 @@
 
 namespace sunbudget {
 
-/// Rounds to the nearest multiple of `quantum` (halves to the even one); 0 leaves the row as it is.
+/// Rounds to the nearest multiple of `quantum` (halves to the even one), a power of two; 0 leaves the
+/// row as it is.
 /// Never gives -0. NaN stays NaN.
 void round_row(std::span<float> row, float quantum) noexcept;
 

@@ -61,15 +61,19 @@ class CodeValues {
     CodeValues() = default;
     explicit CodeValues(std::span<const std::pair<std::int32_t, float>> values);
     [[nodiscard]] float of(std::int32_t code) const noexcept {
-        if (code >= 0 && static_cast<std::size_t>(code) < dense_.size())
+        if (code >= 0 && static_cast<std::size_t>(code) + 1 < dense_.size())
             return dense_[static_cast<std::size_t>(code)];
         if (others_.empty()) return std::numeric_limits<float>::quiet_NaN();
         const auto found = others_.find(code);
         return found == others_.end() ? std::numeric_limits<float>::quiet_NaN() : found->second;
     }
 
+    /// The same for a row.
+    void of_row(std::span<const std::int32_t> codes, std::span<float> values) const noexcept;
+
   private:
-    std::vector<float> dense_;
+    std::vector<float> dense_{
+        std::numeric_limits<float>::quiet_NaN()};  ///< its last stands for all beyond
     std::unordered_map<std::int32_t, float> others_;
 };
 
