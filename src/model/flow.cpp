@@ -301,7 +301,7 @@ void Flow::State::put_surface_layers(Sink& sink) {
 }
 
 void Flow::State::put_light_layers(std::size_t band, const BandPlanes& planes, Sink& sink) {
-    Plane<float> from_around = planes.diffuse.empty() ? Plane<float>() : Plane<float>(window.width, window.height);
+    Plane<float> from_around = run.terrain ? Plane<float>(window.width, window.height) : Plane<float>();
     for (std::size_t n = 0; n < run.layers.size(); ++n) {
         const auto& layer = run.layers[n];
         if (!layer.layer->needs_sun) continue;
