@@ -91,8 +91,9 @@ std::optional<std::string> nearest_name(std::string_view name,
             found = &candidate;
         }
     }
-    // A third of the letters may be wrong; more than that is another word.
-    if (found == nullptr || best > std::max<std::size_t>(1, wanted.size() / 3)) return std::nullopt;
+    // A third of the letters may be wrong; more than that is another word, and so is another letter.
+    const bool is_near = best <= wanted.size() / 3 || (best == 1 && wanted.size() > 1);
+    if (found == nullptr || !is_near) return std::nullopt;
     return *found;
 }
 
@@ -138,7 +139,7 @@ std::string printable(std::string_view text) {
     std::string clean;
     for (const char c : text) {
         const auto byte = static_cast<unsigned char>(c);
-        if ((byte < 0x20 && c != '\n' && c != '\t') || byte == 0x7f)
+        if (byte < 0x20 || byte == 0x7f)
             clean += fmt::format("\\x{:02x}", byte);
         else
             clean += c;

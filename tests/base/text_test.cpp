@@ -27,11 +27,13 @@ TEST_CASE("nearest_name: finds slips, not other words", "[base]") {
     const std::vector<std::string> keys{"turbidity", "model", "diffuse"};
     CHECK(nearest_name("turbidty", keys) == "turbidity");
     CHECK(nearest_name("modle", keys) == "model");
+    CHECK_FALSE(nearest_name("b", std::vector<std::string>{"a"}));
     CHECK_FALSE(nearest_name("albedo", keys));
 }
 
 TEST_CASE("printable: control characters cannot reach the terminal", "[base]") {
     CHECK(printable("a\x1b[31mb") == "a\\x1b[31mb");
+    CHECK(printable("a\nb\tc\x7f") == "a\\x0ab\\x09c\\x7f");
 }
 
 TEST_CASE("shortest: reads back as the same double", "[base][property]") {
