@@ -1,6 +1,7 @@
 #include <csignal>
 #include <cstdlib>
 #include <exception>
+#include <sstream>
 
 #include <CLI/App.hpp>
 #include <CLI/Config.hpp>
@@ -18,9 +19,23 @@ extern "C" void on_signal(int signal) {
 }
 
 void handle_signals() {
-    for (const int signal : {SIGINT, SIGTERM, SIGHUP, SIGXCPU}) std::signal(signal, on_signal);
+    for (const int signal : {SIGINT, SIGTERM, SIGHUP, SIGXCPU})
+        // Whoever started us deaf to a signal (nohup) wants it so.
+        if (std::signal(signal, on_signal) == SIG_IGN) std::signal(signal, SIG_IGN);
     // A closed pipe and a file size limit become ordinary write errors.
     for (const int signal : {SIGPIPE, SIGXFSZ}) std::signal(signal, SIG_IGN);
+}
+
+int shown(const CLI::App& app, const CLI::Success& asked, sunbudget::Terminal& terminal) {
+    std::ostringstream text;
+    app.exit(asked, text, text);
+    try {
+        sunbudget::print_result(text.str());
+        return 0;
+    } catch (const sunbudget::Error& error) {
+        terminal.error(error);
+        return static_cast<int>(error.cause());
+    }
 }
 
 }  // namespace
@@ -46,12 +61,15 @@ int main(int argc, char** argv) {
         app.parse(argc, argv);
         return 0;
     } catch (const CLI::Success& asked) {
-        return app.exit(asked);  // --help and --version, on stdout
+        return shown(app, asked, terminal);  // --help and --version
     } catch (const CLI::ParseError& wrong) {
         terminal.error(wrong.what() + std::string(" (command line): see \"sunbudget --help\""));
         return static_cast<int>(Cause::usage);
     } catch (const Error& error) {
-        if (stop_signal.load() != 0) return 128 + stop_signal.load();
+        if (stop_signal.load() != 0) {
+            terminal.error(Error(Cause::temporary, "stopped by a signal, nothing was published", {}, "run again"));
+            return 128 + stop_signal.load();
+        }
         terminal.error(error);
         return static_cast<int>(error.cause());
     } catch (const std::bad_alloc&) {

@@ -1,7 +1,6 @@
 #include <fmt/format.h>
 
 #include <cmath>
-#include <cstdio>
 #include <memory>
 #include <nlohmann/json.hpp>
 
@@ -33,7 +32,29 @@ double number(const std::string& text, const char* flag, double low, double high
     return *value;
 }
 
-SunPlace place_of(const Flags& flags) {
+/// What `read` returns; its errors name the flag.
+template <class Read>
+auto from_flag(const char* flag, const Read& read) {
+    try {
+        return read();
+    } catch (const Error& error) {
+        throw error.at(flag);
+    }
+}
+
+double turbidity_of(const Flags& flags, Terminal& terminal) {
+    const auto* parameter = method("clear_sky", "esra2000").parameter("turbidity");
+    if (flags.turbidity.empty()) return *parameter->default_value;
+    const double turbidity = number(flags.turbidity, "--turbidity", -1e9, 1e9);
+    const auto verdict = judge(*parameter, turbidity);
+    if (verdict == Verdict::refused)
+        throw Error(Cause::usage, "turbidity " + shortest(turbidity) + ", expected a number " + parameter->allowed.text(), "--turbidity");
+    if (verdict == Verdict::unusual)
+        terminal.warning("--turbidity: " + shortest(turbidity) + " is outside the usual " + parameter->usual.text());
+    return turbidity;
+}
+
+SunPlace place_of(const Flags& flags, Terminal& terminal) {
     const auto parts = split(flags.at, ',');
     if (parts.size() != 2)
         throw Error(Cause::usage, "\"" + flags.at + "\" is no place", "--at", "write LAT,LON in degrees, north and east positive: 52.5,13.4");
@@ -41,12 +62,7 @@ SunPlace place_of(const Flags& flags) {
     place.latitude_rad = rad_from_deg(number(parts[0], "--at, latitude", -90, 90));
     place.longitude_rad = rad_from_deg(number(parts[1], "--at, longitude", -180, 180));
     if (!flags.height.empty()) place.height_m = number(flags.height, "--height", -500, 9000);
-    const auto* parameter = method("clear_sky", "esra2000").parameter("turbidity");
-    double turbidity = *parameter->default_value;
-    if (!flags.turbidity.empty()) turbidity = number(flags.turbidity, "--turbidity", -1e9, 1e9);
-    if (judge(*parameter, turbidity) == Verdict::refused)
-        throw Error(Cause::usage, "turbidity " + shortest(turbidity) + " is outside " + parameter->allowed.text(), "--turbidity");
-    place.sky.turbidity.fill(turbidity);
+    place.sky.turbidity.fill(turbidity_of(flags, terminal));
     return place;
 }
 
@@ -151,14 +167,18 @@ std::string text_of_rows(const Json& rows) {
     return text;
 }
 
-Json rows_of(const Flags& flags) {
-    const auto place = place_of(flags);
-    const auto zone = Zone::parse(flags.zone);
+UtcSeconds instant_of(const Flags& flags, const Zone& zone, double longitude_rad) {
+    const auto written = parse_instant(flags.time);
+    const auto utc = resolve(written, zone, longitude_rad);
+    return zone.kind() == ZoneKind::solar_true && !written.offset_s ? utc_from_true_solar(utc) : utc;
+}
+
+Json rows_of(const Flags& flags, Terminal& terminal) {
+    const auto place = place_of(flags, terminal);
+    const auto zone = from_flag("--zone", [&] { return Zone::parse(flags.zone); });
     Json rows = Json::array();
     if (!flags.time.empty()) {
-        const auto written = parse_instant(flags.time);
-        auto utc = resolve(written, zone, place.longitude_rad);
-        if (zone.kind() == ZoneKind::solar_true && !written.offset_s) utc = utc_from_true_solar(utc);
+        const auto utc = from_flag("--time", [&] { return instant_of(flags, zone, place.longitude_rad); });
         rows.push_back(json_of(sun_moment(place, zone, utc)));
         return rows;
     }
@@ -199,11 +219,12 @@ void add_sun(CLI::App& app) {
                     "Example: sunbudget sun --at 40,-105 --time 2025-06-21T12:00-07:00\n"
                     "         sunbudget sun --at 40,-105 --from 2025-01-01 --to 2025-12-31 --csv");
     command->callback([flags] {
-        const auto rows = rows_of(*flags);
+        Terminal terminal(false);
+        const auto rows = rows_of(*flags, terminal);
         const auto text = flags->format() == Format::json ? rows.dump(2) + "\n"
                           : flags->format() == Format::csv ? csv_of(rows)
                                                            : text_of_rows(rows);
-        std::fwrite(text.data(), 1, text.size(), stdout);
+        print_result(text);
     });
 }
 

@@ -1,6 +1,5 @@
 #include <fmt/format.h>
 
-#include <cstdio>
 #include <memory>
 
 #include "context.hpp"
@@ -41,7 +40,7 @@ void add_tables(CLI::App& app) {
     command->callback([flags] {
         const auto format = flags->csv ? TableFormat::csv : flags->json ? TableFormat::json : TableFormat::text;
         const auto text = table(flags->name, format);
-        std::fwrite(text.data(), 1, text.size(), stdout);
+        print_result(text);
     });
 }
 

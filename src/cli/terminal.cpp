@@ -5,7 +5,9 @@
 #include <unistd.h>
 
 #include <algorithm>
+#include <cerrno>
 #include <cstdlib>
+#include <cstring>
 #include <string_view>
 
 #include "sunbudget/base/text.hpp"
@@ -36,6 +38,19 @@ std::string time_left(double seconds) {
 }
 
 }  // namespace
+
+void print_result(const std::string& text) {
+    std::size_t done = 0;
+    while (done < text.size()) {
+        const auto wrote = write(STDOUT_FILENO, text.data() + done, text.size() - done);
+        if (wrote >= 0) {
+            done += static_cast<std::size_t>(wrote);
+            continue;
+        }
+        if (errno == EPIPE) return;
+        if (errno != EINTR) throw Error(Cause::output, std::string("cannot write the result: ") + std::strerror(errno), "standard output");
+    }
+}
 
 Terminal::Terminal(bool quiet) : quiet_(quiet) {
     const char* term = std::getenv("TERM");

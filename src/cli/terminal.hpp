@@ -8,6 +8,10 @@
 
 namespace sunbudget {
 
+/// Writes a result that was asked for to stdout. A reader who has seen enough and left is no failure.
+/// Throws Error(output) when it cannot be written.
+void print_result(const std::string& text);
+
 /// The one writer to stderr: errors, warnings, notes and the progress bar never mix.
 class Terminal {
   public:

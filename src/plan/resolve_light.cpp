@@ -141,7 +141,7 @@ void resolve_sky(const Plan& plan, Run& run, RunProblems& problems) {
             return;
         }
         problems.add(Cause::usage, plan.sky.turbidity->place,
-                     fmt::format("turbidity {} is outside {}", value, parameter->allowed.text()), parameter->text);
+                     fmt::format("turbidity {}, expected a number {}", value, parameter->allowed.text()), parameter->text);
         return;
     }
 }
