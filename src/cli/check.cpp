@@ -1,7 +1,6 @@
 #include <fmt/format.h>
 
 #include <chrono>
-#include <cstdio>
 #include <memory>
 
 #include "context.hpp"
@@ -32,13 +31,13 @@ void add_check(CLI::App& app) {
         prepare(flags->common);
         const EngineOptions options{flags->common.threads(), flags->common.memory_bytes(), {}};
         const auto start = std::chrono::steady_clock::now();
-        const Run run = resolve(read_plan(flags->plan, flags->set), {options.threads, options.memory_bytes, flags->full});
+        const Run run = resolve(read_plan(flags->plan, flags->set), {options.threads, options.memory_bytes, flags->full, {}});
         for (const auto& warning : run.warnings) terminal.warning(warning);
         const double resolving_s = std::chrono::duration<double>(std::chrono::steady_clock::now() - start).count();
         auto estimated = estimate(run, options);
         estimated.seconds += resolving_s;  // a run does that too
         const auto text = check_text(run, estimated, flags->full);
-        std::fwrite(text.data(), 1, text.size(), stdout);
+        print_result(text);
     });
 }
 

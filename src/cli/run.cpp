@@ -99,7 +99,7 @@ void run_plan(Plan plan, const RunFlags& flags, const Common& common, Terminal& 
 
     EngineOptions options{common.threads(), common.memory_bytes(), {}};
     options.progress = [&](const Progress& p) { terminal.progress(p.step, p.done, p.total, p.unit); };
-    const Run run = resolve(complete, {options.threads, options.memory_bytes, true});
+    const Run run = resolve(complete, {options.threads, options.memory_bytes, true, flags.single_file});
     for (const auto& warning : run.warnings) terminal.warning(warning);
     if (!single && !flags.fresh && already_complete(folder, run)) {
         terminal.note(folder.string() + " is complete already for this plan and these inputs: nothing to do (--fresh does it again)");

@@ -31,6 +31,10 @@ constexpr const char* staging_prefix = ".sunbudget-";
     throw Error(Cause::output, what + ": " + std::strerror(errno), where.string(), todo);
 }
 
+std::string elsewhere(OutputSet::Mark mark) {
+    return mark == OutputSet::Mark::checksums ? "name another folder with --out" : "name another file with --output";
+}
+
 std::string read_small(int descriptor) {
     std::string text(200, '\0');
     const auto got = pread(descriptor, text.data(), text.size(), 0);
@@ -46,13 +50,13 @@ OutputSet::OutputSet(fs::path folder, Mark mark) : folder_(std::move(folder)), m
     made_folder_ = fs::create_directories(folder_, failure);
     if (failure)
         throw Error(Cause::output, "cannot make the output folder: " + failure.message(),
-                    folder_.string(), "name another with --out");
+                    folder_.string(), elsewhere(mark_));
     folder_descriptor_ = open(folder_.c_str(), O_RDONLY | O_DIRECTORY | O_CLOEXEC);
     if (folder_descriptor_ < 0) cannot("cannot open the output folder", folder_);
     lock();
     remove_leftovers();
     std::string pattern = (folder_ / (std::string(staging_prefix) + "XXXXXX")).string();
-    if (mkdtemp(pattern.data()) == nullptr) cannot("cannot write to the output folder", folder_, "name another with --out");
+    if (mkdtemp(pattern.data()) == nullptr) cannot("cannot write to the output folder", folder_, elsewhere(mark_));
     staging_ = pattern;
 }
 
@@ -74,12 +78,12 @@ void OutputSet::lock() {
     for (;;) {
         const int descriptor = openat(folder_descriptor_, lock_file,
                                       O_RDWR | O_CREAT | O_NOFOLLOW | O_CLOEXEC, 0644);
-        if (descriptor < 0) cannot("cannot write to the output folder", folder_, "name another with --out");
+        if (descriptor < 0) cannot("cannot write to the output folder", folder_, elsewhere(mark_));
         if (flock(descriptor, LOCK_EX | LOCK_NB) != 0) {
             const auto holder = read_small(descriptor);
             close(descriptor);
             throw Error(Cause::output, "another run is writing here: " + holder, folder_.string(),
-                        "wait for it, or name another folder with --out");
+                        "wait for it, or " + elsewhere(mark_));
         }
         struct stat opened {}, named {};
         const bool same = fstat(descriptor, &opened) == 0 &&

@@ -126,19 +126,35 @@ class Resolver {
         return problems_.attempt(place, [&] { run_.grid = cropped(info.grid, bounds, cell); });
     }
 
+    [[nodiscard]] std::vector<fs::path> outputs() const {
+        if (!options_.single_file.empty()) return {options_.single_file};
+        std::vector<fs::path> files;
+        if (plan_.outputs.directory)
+            for (const auto& layer : run_.layers)
+                files.push_back(plan_.outputs.directory->value.file / (layer.file.name + ".tif"));
+        return files;
+    }
+
+    [[nodiscard]] std::vector<std::pair<fs::path, Place>> inputs() const {
+        std::vector<std::pair<fs::path, Place>> files;
+        for (const auto& [name, place] : read_rasters(plan_)) files.emplace_back(name.path, place);
+        if (plan_.grid.like)
+            if (const auto* path = std::get_if<PlanPath>(&**plan_.grid.like)) files.emplace_back(path->file, plan_.grid.like->place);
+        if (plan_.surface.cover)
+            if (const auto* path = std::get_if<PlanPath>(&*plan_.surface.cover->classes))
+                files.emplace_back(path->file, plan_.surface.cover->classes.place);
+        return files;
+    }
+
     /// No output may take the place of an input: the run would destroy what it stands on.
     void refuse_overwriting_inputs() {
-        if (!plan_.outputs.directory) return;
-        const auto& directory = plan_.outputs.directory->value.file;
-        for (const auto& layer : run_.layers) {
-            const auto file = directory / (layer.file.name + ".tif");
-            for (const auto& [name, place] : read_rasters(plan_)) {
+        for (const auto& output : outputs())
+            for (const auto& [input, place] : inputs()) {
                 std::error_code ignored;
-                if (fs::equivalent(file, name.path, ignored))
-                    problems_.add(Cause::usage, place, "the run would write over its own input " + name.path.string(),
-                                  "name another output directory");
+                if (fs::equivalent(output, input, ignored))
+                    problems_.add(Cause::usage, place, "the run would write over its own input " + input.string(),
+                                  "name another output");
             }
-        }
     }
 
     const Plan& plan_;

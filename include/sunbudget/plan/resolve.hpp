@@ -1,6 +1,7 @@
 #pragma once
 
 #include <cstdint>
+#include <filesystem>
 
 #include "sunbudget/model/run.hpp"
 #include "sunbudget/plan/plan.hpp"
@@ -12,6 +13,8 @@ struct ResolveOptions {
     std::uint64_t memory_bytes = std::uint64_t{1} << 30;
     /// Count the classes of every pixel (a run, `check --full`), or of a sample of blocks (`check`).
     bool scan_everything = true;
+    /// The one file that is written, where it is not a folder of them.
+    std::filesystem::path single_file{};
 };
 
 /// Opens and checks everything a plan names and fixes the run.
