@@ -16,7 +16,7 @@ namespace {
 std::string class_text(std::int32_t code, std::uint64_t pixels, const RasterInfo& info) {
     const auto name = info.class_names.find(code);
     const auto called = name == info.class_names.end() || name->second.empty() ? "" : " \"" + name->second + "\"";
-    return fmt::format("{}{} ({} pixels)", code, called, pixels);
+    return fmt::format("{}{} ({} {})", code, called, pixels, pixels == 1 ? "pixel" : "pixels");
 }
 
 /// Table rows and the raster's classes brought together.

@@ -219,9 +219,10 @@ Listing listing(const std::string& name) {
     for (const auto& own : own_tables)
         if (name == own.name) return own.make();
     std::error_code ignored;
-    if (is_shipped(name) || std::filesystem::exists(name, ignored))
+    const bool is_path = name.find('/') != std::string::npos;
+    if (is_shipped(name) || is_path || std::filesystem::exists(name, ignored))
         return class_listing(class_table(name));
-    throw Error(Cause::input, "no table \"" + name + "\"", {}, suggestion(name, table_names()));
+    throw Error(Cause::usage, "no table \"" + name + "\"", {}, suggestion(name, table_names()));
 }
 
 std::string as_csv(const Listing& list) {
