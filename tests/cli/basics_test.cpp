@@ -4,7 +4,8 @@
 
 using sunbudget::test::Outcome;
 
-TEST_CASE("sunbudget: help and version go to stdout, mistakes to stderr with exit code 2", "[cli]") {
+TEST_CASE("sunbudget: help and version go to stdout, mistakes to stderr with exit code 2",
+          "[cli]") {
     const auto version = sunbudget::test::sunbudget({"--version"});
     CHECK(version.exit_code == 0);
     CHECK_THAT(version.out, Catch::StartsWith("sunbudget "));

@@ -1,0 +1,94 @@
+// The plans in pipelines/, run on the demo town.
+#include <fcntl.h>
+#include <sys/file.h>
+#include <unistd.h>
+#include <catch2/catch.hpp>
+#include <nlohmann/json.hpp>
+
+#include "program.hpp"
+
+using namespace sunbudget::test;
+using Catch::Contains;
+namespace fs = std::filesystem;
+
+namespace {
+const fs::path pipelines = fs::path(SUNBUDGET_SOURCE_DIR) / "pipelines";
+
+/// Made once a build folder; whoever comes second waits.
+fs::path demo_town() {
+    const fs::path town = fs::path(SUNBUDGET_BUILD_DIR) / "demo-town";
+    const auto generator = pipelines / "make_demo_town";
+    const int lock = open((town.string() + ".lock").c_str(), O_RDWR | O_CREAT | O_CLOEXEC, 0644);
+    REQUIRE(flock(lock, LOCK_EX) == 0);
+    if (!fs::exists(town) || fs::last_write_time(town) < fs::last_write_time(generator)) {
+        const auto part = town.string() + ".part";
+        fs::remove_all(part);
+        const auto made = shell("/usr/bin/python3 " + word(generator) + " " + word(part));
+        CAPTURE(made.out, made.err);
+        REQUIRE(made.exit_code == 0);
+        fs::remove_all(town);
+        fs::rename(part, town);
+    }
+    close(lock);
+    return town;
+}
+
+/// Every input's digest is a SHA-256 in full or a table's; the run is named by one of its own.
+void check_run_json(const fs::path& file) {
+    const auto json = nlohmann::json::parse(content(file));
+    CHECK(json.at("run_digest").get<std::string>().size() == 64);
+    REQUIRE_FALSE(json.at("inputs").empty());
+    for (const auto& input : json.at("inputs")) {
+        CAPTURE(input.dump());
+        CHECK_THAT(input.at("digest").get<std::string>(), Catch::Matches("(sha256:)?[0-9a-f]{64}"));
+    }
+    for (const auto& layer : json.at("layers"))
+        if (layer.contains("bands"))
+            for (const auto& band : layer.at("bands"))
+                CHECK(band.at("valid_pixels").get<long>() > 0);
+}
+
+void check_folder(const fs::path& folder) {
+    const auto sums = shell("cd " + word(folder) + " && sha256sum -c SHA256SUMS");
+    CAPTURE(sums.out, sums.err);
+    CHECK(sums.exit_code == 0);
+    check_run_json(folder / "run.json");
+    for (const auto& name : names_in(folder)) {
+        if (!name.ends_with(".tif")) continue;
+        const auto verdict =
+            shell("/usr/bin/python3 -m osgeo_utils.samples.validate_cloud_optimized_geotiff " +
+                  word(folder / name) + " 2>&1");
+        CAPTURE(name, verdict.out);
+        CHECK(verdict.exit_code == 0);
+        CHECK_THAT(verdict.out, Contains("is a valid cloud optimized GeoTIFF") &&
+                                    !Contains("warning", Catch::CaseSensitive::No));
+        CHECK(shell("gdalinfo " + word(folder / name) + " 2>&1 >/dev/null").out.empty());
+    }
+}
+}  // namespace
+
+TEST_CASE("pipelines: every plan is checked and runs, and its folder is whole and valid",
+          "[cli][pipelines]") {
+    const auto town = demo_town();
+    const TemporaryFolder folder;
+    fs::create_directory_symlink(town, folder.path() / "demo-town");
+    int plans = 0;
+    for (const auto& name : names_in(pipelines)) {
+        if (!name.ends_with(".yaml")) continue;
+        CAPTURE(name);
+        ++plans;
+        fs::copy_file(pipelines / name, folder.path() / name);
+        const auto out = (folder.path() / (name + ".out")).string();
+        const auto checked = sunbudget::test::sunbudget({"check", (folder.path() / name).string()});
+        CAPTURE(checked.err);
+        CHECK(checked.exit_code == 0);
+        CHECK_THAT(checked.out, Contains("Layers\n") && Contains("Estimate"));
+        const auto ran =
+            sunbudget::test::sunbudget({"run", (folder.path() / name).string(), "--out", out});
+        CAPTURE(ran.err);
+        REQUIRE(ran.exit_code == 0);
+        check_folder(out);
+        fs::remove_all(out);
+    }
+    CHECK(plans >= 5);
+}
