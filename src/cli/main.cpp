@@ -1,5 +1,3 @@
-#include <csignal>
-#include <cstdlib>
 #include <exception>
 #include <sstream>
 
@@ -8,23 +6,11 @@
 #include <CLI/Formatter.hpp>
 
 #include "context.hpp"
+#include "process.hpp"
 #include "sunbudget/base/parallel.hpp"
 #include "sunbudget/base/version.hpp"
 
 namespace {
-
-/// The first signal asks the loops to stop; a second one ends the program at once.
-extern "C" void on_signal(int signal) {
-    if (sunbudget::stop_signal.exchange(signal) != 0) std::_Exit(128 + signal);
-}
-
-void handle_signals() {
-    for (const int signal : {SIGINT, SIGTERM, SIGHUP, SIGXCPU})
-        // Whoever started us deaf to a signal (nohup) wants it so.
-        if (std::signal(signal, on_signal) == SIG_IGN) std::signal(signal, SIG_IGN);
-    // A closed pipe and a file size limit become ordinary write errors.
-    for (const int signal : {SIGPIPE, SIGXFSZ}) std::signal(signal, SIG_IGN);
-}
 
 int shown(const CLI::App& app, const CLI::Success& asked, sunbudget::Terminal& terminal) {
     std::ostringstream text;
@@ -42,7 +28,7 @@ int shown(const CLI::App& app, const CLI::Success& asked, sunbudget::Terminal& t
 
 int main(int argc, char** argv) {
     using namespace sunbudget;
-    handle_signals();
+    prepare_process();
     CLI::App app{"How much of the sun's energy the ground keeps: albedo, insolation and net shortwave rasters.\n"
                  "Screening figures for planning, not design values.",
                  "sunbudget"};

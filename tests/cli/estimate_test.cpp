@@ -11,6 +11,7 @@
 
 #include "program.hpp"
 #include "support/vectors.hpp"
+#include "town.hpp"
 
 using namespace sunbudget::test;
 
@@ -87,16 +88,14 @@ void compare(const std::string& plan) {
 TEST_CASE("check: disk and memory are within 30 % of what the demo's runs take", "[cli][vector]") {
     const TemporaryFolder folder;
     const std::string pipelines = SUNBUDGET_SOURCE_DIR "/pipelines/";
-    if (shell("/usr/bin/python3 -c 'import numpy; from osgeo import gdal'").exit_code != 0) {
+    const auto town = demo_town();
+    if (!town) {
         WARN("SKIPPED: the demo town needs python3-numpy and python3-gdal");
         return;
     }
     for (const std::string name : {"demo.yaml", "demo-coarse.yaml"})
         fs::copy(pipelines + name, folder.path() / name);
-    const auto made = shell("PYTHONDONTWRITEBYTECODE=1 '" + pipelines + "make_demo_town' '" +
-                            (folder.path() / "demo-town").string() + "'");
-    INFO(made.err);
-    REQUIRE(made.exit_code == 0);
+    fs::create_directory_symlink(*town, folder.path() / "demo-town");
     compare((folder.path() / "demo.yaml").string());
     compare((folder.path() / "demo-coarse.yaml").string());
 }

@@ -15,8 +15,10 @@ void make_heights(const std::filesystem::path& file) {
 }
 
 std::string plan(const std::string& layer, const std::string& unit) {
-    return "sunbudget: 1\n"
-           "surface: {cover: {raster: cover.tif, classes: worldcover}}\n"
+    // The job has no cover, so that the ground in view reflects the usual share.
+    const std::string surface =
+        layer == "insolation" ? "" : "surface: {cover: {raster: cover.tif, classes: worldcover}}\n";
+    return "sunbudget: 1\n" + surface +
            "terrain: {elevation: dem.tif}\n"
            "sky: {turbidity: 4}\n"
            "time: {from: 2025-06-01, to: 2025-07-10, step: 20 min, hours: 10-16, zone: \"+02:00\", "

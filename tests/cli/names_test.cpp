@@ -1,4 +1,6 @@
 // File names as odd as the system allows.
+#include <sys/stat.h>
+
 #include <catch2/catch.hpp>
 
 #include "desk.hpp"
@@ -64,10 +66,12 @@ TEST_CASE("sunbudget: a name in a message cannot steer the terminal", "[cli][edg
     CHECK(well_formed(outcome.err));
 }
 
-TEST_CASE("albedo: an output that is a folder is refused", "[cli][edge]") {
+TEST_CASE("albedo: an output that is a folder, a link to one or a pipe is refused", "[cli][edge]") {
     const Desk desk;
     fs::create_directory(desk.path("folder"));
-    for (const auto* out : {"folder", "folder/", "new/", ".", ""}) {
+    fs::create_directory_symlink("folder", desk.path("link"));
+    REQUIRE(mkfifo(desk.path("pipe").c_str(), 0600) == 0);
+    for (const auto* out : {"folder", "folder/", "new/", "link", "pipe", ".", ""}) {
         const auto outcome =
             desk.run({"albedo", "--cover", "cover.tif", "--classes", "worldcover", "-o", out});
         CAPTURE(out, outcome.err);
@@ -75,4 +79,5 @@ TEST_CASE("albedo: an output that is a folder is refused", "[cli][edge]") {
         CHECK_THAT(outcome.err, Contains("--output"));
         CHECK(names_in(desk.path("folder")).empty());
     }
+    CHECK(fs::is_fifo(desk.path("pipe")));
 }

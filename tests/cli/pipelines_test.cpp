@@ -1,11 +1,9 @@
 // The plans in pipelines/, run on the demo town.
-#include <fcntl.h>
-#include <sys/file.h>
-#include <unistd.h>
 #include <catch2/catch.hpp>
 #include <nlohmann/json.hpp>
 
 #include "program.hpp"
+#include "town.hpp"
 
 using namespace sunbudget::test;
 using Catch::Contains;
@@ -13,25 +11,6 @@ namespace fs = std::filesystem;
 
 namespace {
 const fs::path pipelines = fs::path(SUNBUDGET_SOURCE_DIR) / "pipelines";
-
-/// Made once a build folder; whoever comes second waits.
-fs::path demo_town() {
-    const fs::path town = fs::path(SUNBUDGET_BUILD_DIR) / "demo-town";
-    const auto generator = pipelines / "make_demo_town";
-    const int lock = open((town.string() + ".lock").c_str(), O_RDWR | O_CREAT | O_CLOEXEC, 0644);
-    REQUIRE(flock(lock, LOCK_EX) == 0);
-    if (!fs::exists(town) || fs::last_write_time(town) < fs::last_write_time(generator)) {
-        const auto part = town.string() + ".part";
-        fs::remove_all(part);
-        const auto made = shell("/usr/bin/python3 " + word(generator) + " " + word(part));
-        CAPTURE(made.out, made.err);
-        REQUIRE(made.exit_code == 0);
-        fs::remove_all(town);
-        fs::rename(part, town);
-    }
-    close(lock);
-    return town;
-}
 
 /// Every input's digest is a SHA-256 in full or a table's; the run is named by one of its own.
 void check_run_json(const fs::path& file) {
@@ -70,8 +49,12 @@ void check_folder(const fs::path& folder) {
 TEST_CASE("pipelines: every plan is checked and runs, and its folder is whole and valid",
           "[cli][pipelines]") {
     const auto town = demo_town();
+    if (!town) {
+        WARN("SKIPPED: the demo town needs python3-numpy and python3-gdal");
+        return;
+    }
     const TemporaryFolder folder;
-    fs::create_directory_symlink(town, folder.path() / "demo-town");
+    fs::create_directory_symlink(*town, folder.path() / "demo-town");
     int plans = 0;
     for (const auto& name : names_in(pipelines)) {
         if (!name.ends_with(".yaml")) continue;

@@ -30,14 +30,6 @@ const std::array<int, 5> oli_bands{2, 4, 5, 6, 7};
 // Stored values are multiples of 2^-13; float arithmetic on five bands stays far below 1e-6.
 constexpr double half_quantum = 0.5 / 8192 + 1e-6;
 
-std::string content(const fs::path& file) {
-    std::ifstream stream(file, std::ios::binary);
-    return {std::istreambuf_iterator<char>(stream), {}};
-}
-void write(const fs::path& file, const std::string& text) {
-    std::ofstream(file) << text;
-}
-
 /// A band's numbers as GDAL's own tools read them.
 std::vector<double> pixels(const fs::path& file, int band = 1) {
     const TemporaryFolder folder;
@@ -176,7 +168,8 @@ Reckoned compare(const RealScene& scene, const Ran& ran, const std::vector<std::
     return result;
 }
 
-const std::vector<std::string> usual_reject{"cloud", "dilated_cloud", "cirrus", "cloud_shadow", "saturated"};
+const std::vector<std::string> usual_reject{"cloud", "dilated_cloud", "cirrus", "cloud_shadow",
+                                            "saturated"};
 
 void check_counts(const Ran& ran, const Reckoned& reckoned) {
     const auto unused =
@@ -294,7 +287,7 @@ TEST_CASE("save-plan: insolation and net give the same bytes from their saved pl
         for (const auto& word : {std::string("-o"), at("job.tif"), std::string("--save-plan"),
                                  at("plans/" + layer + ".yaml")})
             words.push_back(word);
-        const auto job = sunbudget::test::sunbudget(words, folder.path().string());
+        const auto job = sunbudget::test::sunbudget(words, {folder.path().string(), {}});
         INFO(job.err);
         REQUIRE(job.exit_code == 0);
         const auto run = sunbudget::test::sunbudget(

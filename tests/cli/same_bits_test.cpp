@@ -22,15 +22,15 @@ void make_inputs(const Desk& desk) {
         return c > 300 && r > 250 ? -9999 : 500 + 400 * std::sin(c / 23.0) * std::cos(r / 31.0);
     }};
     make_raster(desk.path("dem.tif"), heights);
-    write(
-        desk.path("plan.yaml"),
-        "sunbudget: 1\n"
-        "grid: {crs: EPSG:3035, bounds: [4683000, 2939000, 4710000, 2960000], cell: 30}\n"
-        "surface: {cover: {raster: cover.tif, classes: worldcover}}\n"
-        "terrain: {elevation: dem.tif}\n"
-        "sky: {turbidity: [2.6, 2.8, 3.1, 3.4, 3.6, 3.7, 3.7, 3.6, 3.3, 3.0, 2.7, 2.6]}\n"
-        "time: {from: 2025-01-01, to: 2025-12-31, step: 30 min, zone: solar-mean, totals: month}\n"
-        "outputs: {directory: out, layers: [albedo, insolation, net_shortwave, quality]}\n");
+    write(desk.path("plan.yaml"),
+          "sunbudget: 1\n"
+          "grid: {crs: EPSG:3035, bounds: [4683000, 2939000, 4710000, 2960000], cell: 30}\n"
+          "surface: {cover: {raster: cover.tif, classes: worldcover}}\n"
+          "terrain: {elevation: dem.tif, directions: 16, reach: 5 km}\n"
+          "sky: {turbidity: [2.6, 2.8, 3.1, 3.4, 3.6, 3.7, 3.7, 3.6, 3.3, 3.0, 2.7, 2.6]}\n"
+          "time: {from: 2025-01-01, to: 2025-12-31, step: 30 min, days: mid-month, zone: "
+          "solar-mean, totals: month}\n"
+          "outputs: {directory: out, layers: [albedo, insolation, net_shortwave, quality]}\n");
 }
 
 const std::vector<std::string> files{"albedo.tif", "insolation.tif", "net_shortwave.tif",

@@ -103,3 +103,16 @@ TEST_CASE("sunbudget: results that cannot be written to stdout end with 4", "[cl
         CHECK_THAT(outcome.err, StartsWith("sunbudget: error: "));
     }
 }
+
+TEST_CASE("sunbudget: started without its streams it writes the same files, and no result unseen",
+          "[cli][edge]") {
+    const Desk desk;
+    REQUIRE(desk.run({"run", "plan.yaml"}).exit_code == 0);
+    const auto start = "cd " + word(desk.path()) + " && " SUNBUDGET_PROGRAM " ";
+    CHECK(shell(start + "run plan.yaml --out bare <&- >&- 2>&-").exit_code == 0);
+    CHECK(content(desk.path("bare/SHA256SUMS")) == content(desk.path("out/SHA256SUMS")));
+    CHECK(
+        shell("cd " + word(desk.path("bare")) + " && sha256sum -c --quiet SHA256SUMS").exit_code ==
+        0);
+    CHECK(shell(start + "check plan.yaml >&-").exit_code == 4);
+}
