@@ -211,7 +211,11 @@ void Flow::State::keep_ground(const ShadedBlock& part) {
         const auto slope = over(slope_deg, window, part.block, r), aspect = over(aspect_deg, window, part.block, r);
         slope_and_aspect(part.east.row(r), part.north.row(r), part.up.row(r), slope, aspect);
         for (auto& value : slope) value *= static_cast<float>(180 / std::numbers::pi);
-        for (auto& value : aspect) value *= static_cast<float>(180 / std::numbers::pi);
+        for (auto& value : aspect) {
+            value *= static_cast<float>(180 / std::numbers::pi);
+            // North is 0, also for what the stored step would round up to 360.
+            if (value > 360 - 1.0F / 128) value = 0;
+        }
         if (!part.sky_view.empty()) {
             const auto from = part.sky_view.row(r);
             std::copy(from.begin(), from.end(), over(sky_view, window, part.block, r).begin());

@@ -78,6 +78,7 @@ OutputLayer output_layer(const Layer& layer, const Run& run) {
     file.grid = run.grid;
     file.tile = run.tile;
     file.overviews = run.overviews;
+    file.nearest = layer.id == LayerId::aspect;
     file.sample = layer.sample == SampleType::float32 ? Sample::float32 : Sample::uint16;
     file.unit = unit_of(layer, run.unit);
     const std::size_t bands = layer.needs_sun ? run.times->bands() : 1;

@@ -53,19 +53,21 @@ SUNBUDGET_CLONES void round_values(float* row, std::size_t count, double quantum
 }
 
 /// Folds a whole tile into one quarter of its parent.
-void fold(const Plane<float>& child, int left, int top, float quantum, Plane<float>& parent) {
+void fold(const Plane<float>& child, int left, int top, float quantum, bool nearest, Plane<float>& parent) {
     const auto half = static_cast<std::size_t>(child.width() / 2);
     for (int r = 0; r < child.height() / 2; ++r) {
         const auto upper = child.row(2 * r), lower = child.row(2 * r + 1);
         float* out = parent.row(top + r).data() + left;
-        if (quantum > 0)
+        if (nearest)
+            for (std::size_t i = 0; i < half; ++i) out[i] = upper[2 * i];
+        else if (quantum > 0)
             fold_rows_rounded(upper.data(), lower.data(), half, static_cast<double>(quantum), out);
         else
             fold_rows(upper.data(), lower.data(), half, out);
     }
 }
 
-void fold(const Plane<std::uint16_t>& child, int left, int top, float,
+void fold(const Plane<std::uint16_t>& child, int left, int top, float, bool,
           Plane<std::uint16_t>& parent) {
     for (int r = 0; r < child.height() / 2; ++r) {
         const auto in = child.row(2 * r);
@@ -95,6 +97,7 @@ class Folder {
     Folder(const LayerFile& layer, Spool& spool, std::size_t most_bytes)
         : layout_(spool.layout()),
           quantum_(layer.quantum),
+          nearest_(layer.nearest),
           most_held_(most_bytes / layout_.tile_bytes()),
           spool_(spool) {}
 
@@ -119,6 +122,7 @@ class Folder {
 
     const Layout layout_;
     const float quantum_;
+    const bool nearest_;
     const std::size_t most_held_;
     Spool& spool_;
     mutable std::mutex lock_;  // of what follows; the pixels of a parent are written without it
@@ -173,7 +177,7 @@ void Folder<T>::climb(TileKey key, const Plane<T>& pixels) {
         if (spool_.has(parent)) return;  // from an earlier run, made of the same pixels
         const int half = layout_.tile / 2;
         if (auto* pixels_above = parent_pixels(parent))
-            fold(*child, key.column % 2 * half, key.row % 2 * half, quantum_, *pixels_above);
+            fold(*child, key.column % 2 * half, key.row % 2 * half, quantum_, nearest_, *pixels_above);
         whole = taken_if_whole(parent);
         if (whole.empty()) return;
         spool_.append(parent, encode_tile(whole));
@@ -205,7 +209,7 @@ Plane<T> Folder<T>::made_from_spool(const TileKey& parent) const {
         for (const int across : {0, 1}) {
             const TileKey child{parent.level - 1, parent.band, 2 * parent.column + across, 2 * parent.row + down};
             if (!layout_.has(child)) continue;
-            fold(decode_tile<T>(spool_.read(child), layout_.tile), across * half, down * half, quantum_, pixels);
+            fold(decode_tile<T>(spool_.read(child), layout_.tile), across * half, down * half, quantum_, nearest_, pixels);
         }
     return pixels;
 }

@@ -31,6 +31,7 @@ struct LayerFile {
     Sample sample = Sample::float32;
     int tile = 512;               ///< side of the file's tiles, a multiple of 16
     bool overviews = true;        ///< false: full resolution alone
+    bool nearest = false;         ///< overviews take one pixel of four: angles have no plain mean
     std::vector<BandText> bands;  ///< at least one
     std::string unit;
     std::map<std::string, std::string> metadata;
