@@ -111,7 +111,7 @@ TEST_CASE("sunbudget: a plan that is missing, a folder or no YAML is refused", "
     }
 }
 
-TEST_CASE("--set: changes keys, and its mistakes name the flag", "[cli]") {
+TEST_CASE("run --set: changes keys, and its mistakes name the flag", "[cli]") {
     const Desk desk;
     REQUIRE(desk.run({"run", "plan.yaml", "--set", "sky.turbidity=5", "--set",
                       "outputs.directory=here", "--set", "outputs.layers=[albedo, direct]"})

@@ -38,7 +38,7 @@ TEST_CASE("run: stdout stays empty, stderr holds lines of one form without escap
     CHECK(wrong.out.empty());
 }
 
-TEST_CASE("--quiet: prints nothing but warnings and errors", "[cli]") {
+TEST_CASE("run --quiet: prints nothing but warnings and errors", "[cli]") {
     const Desk desk;
     const auto silent = desk.run({"run", "plan.yaml", "--quiet"});
     CHECK(silent.exit_code == 0);
