@@ -79,11 +79,15 @@ void thin_days(const Plan& plan, const Run& run, TimePlan& times, RunProblems& p
     for (auto& period : times.periods) period = with_mid_month_days(period);
 }
 
+bool needs_sun(const Plan& plan) {
+    return std::any_of(plan.outputs.layers.begin(), plan.outputs.layers.end(),
+                       [](const auto& name) { return layer(*name).needs_sun; });
+}
+
 }  // namespace
 
 void resolve_elevation(const Plan& plan, const ResolveOptions& options, Run& run, RunProblems& problems) {
-    const bool needed = std::any_of(plan.outputs.layers.begin(), plan.outputs.layers.end(),
-                                    [](const auto& name) { return layer(*name).needs_sun; });
+    const bool needed = needs_sun(plan);
     if (!plan.terrain.elevation) {
         if (needed) run.assumptions.emplace_back("no terrain.elevation: the ground is level and open, at 0 m");
         return;
@@ -149,6 +153,10 @@ void resolve_sky(const Plan& plan, Run& run, RunProblems& problems) {
 void resolve_time(const Plan& plan, Run& run, RunProblems& problems) {
     const auto& time = plan.time;
     if (!time.at && !time.from) return;
+    if (!needs_sun(plan)) {
+        run.assumptions.emplace_back("no layer needs the sun: the plan's time is not used");
+        return;
+    }
     TimePlan times;
     if (time.zone) times.zone = (**time.zone).zone;
     if (time.step_s) times.step_s = **time.step_s;

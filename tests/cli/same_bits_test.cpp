@@ -11,8 +11,8 @@ using namespace sunbudget::test;
 namespace fs = std::filesystem;
 
 namespace {
-/// Cover and heights in UTM, to be warped onto a grid of about 900 x 700 cells in another CRS.
-void make_inputs(const Desk& desk) {
+/// Cover and heights in UTM, to be warped onto a grid in another CRS.
+void make_inputs(const Desk& desk, const std::string& cell, const std::string& last_day) {
     make_cover(desk.path("cover.tif"), 1000, 800,
                [](int c, int r) { return (c * r) % 97 == 0 ? 0 : patchy(c, r); });
     MadeRaster heights;
@@ -24,13 +24,17 @@ void make_inputs(const Desk& desk) {
     make_raster(desk.path("dem.tif"), heights);
     write(desk.path("plan.yaml"),
           "sunbudget: 1\n"
-          "grid: {crs: EPSG:3035, bounds: [4683000, 2939000, 4710000, 2960000], cell: 30}\n"
-          "surface: {cover: {raster: cover.tif, classes: worldcover}}\n"
-          "terrain: {elevation: dem.tif, directions: 16, reach: 5 km}\n"
-          "sky: {turbidity: [2.6, 2.8, 3.1, 3.4, 3.6, 3.7, 3.7, 3.6, 3.3, 3.0, 2.7, 2.6]}\n"
-          "time: {from: 2025-01-01, to: 2025-12-31, step: 30 min, days: mid-month, zone: "
-          "solar-mean, totals: month}\n"
-          "outputs: {directory: out, layers: [albedo, insolation, net_shortwave, quality]}\n");
+          "grid: {crs: EPSG:3035, bounds: [4683000, 2939000, 4710000, 2960000], cell: " +
+              cell +
+              "}\n"
+              "surface: {cover: {raster: cover.tif, classes: worldcover}}\n"
+              "terrain: {elevation: dem.tif, directions: 16, reach: 5 km}\n"
+              "sky: {turbidity: [2.6, 2.8, 3.1, 3.4, 3.6, 3.7, 3.7, 3.6, 3.3, 3.0, 2.7, 2.6]}\n"
+              "time: {from: 2025-01-01, to: " +
+              last_day +
+              ", step: 30 min, days: mid-month, zone: "
+              "solar-mean, totals: month}\n"
+              "outputs: {directory: out, layers: [albedo, insolation, net_shortwave, quality]}\n");
 }
 
 const std::vector<std::string> files{"albedo.tif", "insolation.tif", "net_shortwave.tif",
@@ -56,14 +60,14 @@ nlohmann::json statistics(const fs::path& folder) {
 TEST_CASE("run: the same bits for any threads and memory, the same pixels for any tile",
           "[cli][differential]") {
     const Desk desk;
-    make_inputs(desk);
+    make_inputs(desk, "30", "2025-12-31");
     std::vector<std::vector<double>> expected;
     nlohmann::json numbers;
     for (const int tile : {128, 256, 512}) {
-        const auto sums = made(desk, "a" + std::to_string(tile), tile, 1, "2G");
+        const auto sums = made(desk, "a" + std::to_string(tile), tile, tile == 512 ? 2 : 1, "2G");
         CAPTURE(tile);
-        CHECK(made(desk, "b", tile, 2, "128M") == sums);
-        CHECK(made(desk, "c", tile, 5, "2G") == sums);
+        CHECK(made(desk, "b", tile, 5, "128M") == sums);
+        if (tile == 256) CHECK(made(desk, "c", tile, 2, "128M") == sums);
         const auto folder = desk.path("a" + std::to_string(tile));
         for (std::size_t i = 0; i < files.size(); ++i) {
             CAPTURE(files[i]);
@@ -84,7 +88,7 @@ TEST_CASE("run: the same bits for any threads and memory, the same pixels for an
 
 TEST_CASE("run: the same bits in any locale and time zone", "[cli][differential]") {
     const Desk desk;
-    make_inputs(desk);
+    make_inputs(desk, "120", "2025-02-28");
     const std::vector<std::string> locales{"de_DE", "tr_TR"};
     for (const auto& name : locales)
         if (shell("localedef -i " + name + " -f UTF-8 " + word(desk.path(name + ".UTF-8")))

@@ -65,6 +65,8 @@ TEST_CASE("check: prints the resolved run on stdout and warnings on stderr", "[c
                                 Contains("Classes in the raster") && Contains("kasten-young1989") &&
                                 Contains("rounded to 0.0625") && Contains("Estimate"));
     CHECK_THAT(outcome.err, StartsWith("sunbudget: warning: sky.turbidity: 8"));
+    CHECK_THAT(desk.run({"check", "plan.yaml", "--set", "outputs.layers=[albedo]"}).out,
+               Contains("the plan's time is not used"));
     CHECK(names_in(desk.path()) == std::vector<std::string>{"cover.tif", "plan.yaml"});
 }
 
