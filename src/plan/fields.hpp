@@ -34,6 +34,38 @@ void visit_reflectance(Reflectance& reflectance, Visitor& v) {
     v.value("implausible", reflectance.implausible);
 }
 
+/// The quantities of a weather table that are named, whatever there is for each.
+template <class Names, class Visitor>
+void visit_quantities(Names& names, Visitor& v) {
+    for (std::size_t i = 0; i < weather_quantities; ++i) v.value(weather_names[i], names.of[i]);
+}
+
+template <class Weather, class Visitor>
+void visit_weather(Weather& weather, Visitor& v) {
+    v.value("table", weather.table);
+    v.map("columns", weather.columns, [&](auto& columns) {
+        for (std::size_t i = 0; i < weather_time_names.size(); ++i) v.value(weather_time_names[i], columns.of_time[i]);
+        visit_quantities(columns, v);
+    });
+    v.map("units", weather.units, [&](auto& units) { visit_quantities(units, v); });
+    v.map("flags", weather.flags, [&](auto& flags) { visit_quantities(flags, v); });
+    v.value("good_flags", weather.good_flags);
+    v.value("missing", weather.missing);
+    v.value("separator", weather.separator);
+    v.value("decimal", weather.decimal);
+    v.value("header", weather.header);
+    v.value("skip", weather.skip);
+    v.value("comment", weather.comment);
+    v.value("time_form", weather.time_form);
+    v.value("stamp", weather.stamp);
+    v.duration("interval", weather.interval_s);
+    v.value("zone", weather.zone);
+    v.value("years", weather.years);
+    v.value("gaps", weather.gaps);
+    v.value("station", weather.station);
+    v.value("station_elevation", weather.station_elevation);
+}
+
 /// Names every member of a Plan by its key, once for reading, writing and filling in defaults.
 /// A visitor has `value(name, member)`, `duration(name, member)` and `map(name, visit_inside)`.
 template <class P, class Visitor>
@@ -72,6 +104,7 @@ void visit_plan(P& plan, Visitor& v) {
         v.value("turbidity", plan.sky.turbidity);
         v.value("diffuse", plan.sky.diffuse);
     });
+    v.map("weather", plan.weather, [&](auto& weather) { visit_weather(weather, v); });
     v.map("time", [&] {
         v.value("at", plan.time.at);
         v.value("from", plan.time.from);

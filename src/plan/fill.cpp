@@ -47,6 +47,16 @@ class Typed {
     }
     static void get(const Node& node, double& value) { value = *read_number(node); }
     static void get(const Node& node, int& value) { value = static_cast<int>(*read_integer(node)); }
+    static void get(const Node& node, WeatherColumn& value) {
+        if (const auto number = read_integer(node))
+            value.number = static_cast<int>(*number);
+        else
+            value.name = node.text;
+    }
+    static void get(const Node& node, std::vector<double>& value) {
+        if (node.shape == Node::Shape::scalar) value.push_back(*read_number(node));
+        for (const auto& item : node.children) value.push_back(*read_number(item));
+    }
     static void get(const Node& node, CivilDate& value) { value = *parse_date(node.text); }
     static void get(const Node& node, HourWindow& value) { value = *read_hours(node); }
     static void get(const Node& node, OutputUnit& value) { value = *output_unit_named(node.text); }
@@ -224,6 +234,20 @@ Plan with_defaults(Plan plan) {
     // Weights of one's own stand in the place of a method, and a sensor of one's own has none.
     if (auto& image = plan.surface.reflectance; image && image->method && image->method->place.is_default)
         if (image->weights || weight_set_names(*image->sensor).empty()) image->method.reset();
+    // How a table is read belongs to a table.
+    if (plan.weather && !plan.weather->table) {
+        auto& weather = *plan.weather;
+        weather.good_flags.reset();
+        weather.separator.reset();
+        weather.decimal.reset();
+        weather.header.reset();
+        weather.skip.reset();
+        weather.comment.reset();
+        weather.stamp.reset();
+        weather.zone.reset();
+        weather.years.reset();
+        weather.gaps.reset();
+    }
     // Steps, days and totals belong to a period.
     if (!written.from) plan.time = written;
     return plan;

@@ -214,6 +214,60 @@ Form sky_form() {
                  "hay-davies1980"}});
 }
 
+std::vector<Key> one_key_a_quantity(const std::vector<Form>& forms, const std::string& doc) {
+    std::vector<Key> keys;
+    for (const auto* name : weather_names) keys.push_back({name, forms, doc});
+    return keys;
+}
+
+Form weather_columns_form() {
+    const std::vector<Form> column{of(ValueKind::text), integer(1, 10000)};
+    std::vector<Key> keys;
+    for (const auto* name : weather_time_names)
+        keys.push_back({name, column, std::string(name) == "time" ? "instants, or days" : "a part of the time"});
+    const auto quantities = one_key_a_quantity(column, "by name in the header, or by number from 1");
+    keys.insert(keys.end(), quantities.begin(), quantities.end());
+    return map(std::move(keys));
+}
+
+Form weather_units_form() {
+    std::vector<Key> keys;
+    for (std::size_t i = 0; i < weather_quantities; ++i)
+        keys.push_back({weather_names[i], {choice(weather_units(static_cast<Weather>(i)))}, "of the column; energies are sums over the interval"});
+    return map(std::move(keys));
+}
+
+// Steps from a minute to a day; heights as of the terrain.
+Form weather_form() {
+    std::vector<Rule> rules;
+    for (const auto* key : {"columns", "units", "flags", "good_flags", "missing", "separator", "decimal", "header", "skip", "comment",
+                            "time_form", "stamp", "interval", "zone", "years", "gaps", "station", "station_elevation"})
+        rules.push_back(needs(key, {"table"}));
+    return map(
+        {{"table", {of(ValueKind::path)}, "a station's record, rows in order of time"},
+         {"columns", {weather_columns_form()}, "which columns to take; default: those with the names of quantities"},
+         {"units", {weather_units_form()}, "of the columns; default: what stands in brackets in the header, as in air_temperature [degC]"},
+         {"flags",
+          {map(one_key_a_quantity({of(ValueKind::text), integer(1, 10000)}, "the column with this quantity's quality"))},
+          "columns of quality numbers: values with other ones than good_flags are missing"},
+         {"good_flags", {number(), list(number(), 1)}, "flags of values that count", "0"},
+         {"missing", {number(), list(number(), 1)}, "numbers that mean no value, such as -9999; empty cells and NaN always do"},
+         {"separator", {choice(separator_names)}, "between cells", "auto"},
+         {"decimal", {choice(decimal_names)}, "sign in numbers", "point"},
+         {"header", {choice(header_names)}, "none: columns go by their numbers", "line"},
+         {"skip", {integer(0, 10000)}, "lines in front that are left out", "0"},
+         {"comment", {of(ValueKind::text)}, "lines that begin so are left out", "#"},
+         {"time_form", {of(ValueKind::text)}, "how times are written, such as DD/MM/YYYY hh:mm; default: 2025-06-21T12:00 or 202506211200"},
+         {"stamp", {choice(stamp_names)}, "what a row's time is of its interval", "start"},
+         {"interval", {duration(60, 86400)}, "length of a row's interval; default: as the rows are apart"},
+         {"zone", {of(ValueKind::zone)}, "of the rows' times: UTC, an offset, an IANA name, solar-mean or solar-true", "UTC"},
+         {"years", {choice(years_names)}, "typical: the rows stand for every year, whatever theirs is", "own"},
+         {"gaps", {choice(gaps_names)}, "hours without a value: see the rule for thin days and months, or stop", "report"},
+         {"station", {list(number(-180, 180), 2, 2)}, "[latitude, longitude] in degrees; default: the middle of the grid"},
+         {"station_elevation", {length(-500, 9000)}, "height above sea level; default: that of the ground where it is one height"}},
+        std::move(rules));
+}
+
 Form period_form() {
     return map({{"name", {of(ValueKind::text)}, "becomes the band's description", {}, true},
                 {"from", {of(ValueKind::date)}, "first day", {}, true},
@@ -274,6 +328,7 @@ const Form& plan_form() {
              {"surface", {surface_form()}, "where albedo comes from"},
              {"terrain", {terrain_form()}, "default: flat ground at 0 m"},
              {"sky", {sky_form()}, "the cloudless atmosphere"},
+             {"weather", {weather_form()}, "what was measured"},
              {"time", {time_form()}, "needed by every layer of radiation"},
              {"outputs", {outputs_form()}, "what to write", {}, true},
              {"engine", {engine_form()}, "rarely needed"}});

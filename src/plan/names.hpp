@@ -19,6 +19,12 @@ inline constexpr std::array<std::string_view, 3> product_names{"auto", "surface-
                                                                "top-of-atmosphere"};
 inline constexpr std::array<std::string_view, 2> fill_names{"nodata", "cover"};
 inline constexpr std::array<std::string_view, 2> implausible_names{"stop", "allow"};
+inline constexpr std::array<std::string_view, 5> separator_names{"auto", "comma", "semicolon", "tab", "blanks"};
+inline constexpr std::array<std::string_view, 2> decimal_names{"point", "comma"};
+inline constexpr std::array<std::string_view, 2> header_names{"line", "none"};
+inline constexpr std::array<std::string_view, 3> stamp_names{"start", "middle", "end"};
+inline constexpr std::array<std::string_view, 2> years_names{"own", "typical"};
+inline constexpr std::array<std::string_view, 2> gaps_names{"report", "stop"};
 
 constexpr const auto& names_for(LikeInput) {
     return like_names;
@@ -46,6 +52,24 @@ constexpr const auto& names_for(FillFrom) {
 }
 constexpr const auto& names_for(Implausible) {
     return implausible_names;
+}
+constexpr const auto& names_for(Separator) {
+    return separator_names;
+}
+constexpr const auto& names_for(DecimalSign) {
+    return decimal_names;
+}
+constexpr const auto& names_for(HeaderChoice) {
+    return header_names;
+}
+constexpr const auto& names_for(Stamp) {
+    return stamp_names;
+}
+constexpr const auto& names_for(Years) {
+    return years_names;
+}
+constexpr const auto& names_for(Gaps) {
+    return gaps_names;
 }
 
 }  // namespace sunbudget

@@ -70,6 +70,7 @@ class Resolver {
         resolve_elevation(plan_, options_, run_, problems_);
         resolve_sky(plan_, run_, problems_);
         resolve_time(plan_, run_, problems_);
+        resolve_weather(plan_, options_, run_, problems_);
         problems_.throw_if_any();
         resolve_layers(plan_, run_, problems_);
         refuse_overwriting_inputs();
@@ -140,6 +141,7 @@ class Resolver {
         for (const auto& [name, place] : read_rasters(plan_)) files.emplace_back(name.path, place);
         if (plan_.grid.like)
             if (const auto* path = std::get_if<PlanPath>(&**plan_.grid.like)) files.emplace_back(path->file, plan_.grid.like->place);
+        if (plan_.weather && plan_.weather->table) files.emplace_back((**plan_.weather->table).file, plan_.weather->table->place);
         if (plan_.surface.cover)
             if (const auto* path = std::get_if<PlanPath>(&*plan_.surface.cover->classes))
                 files.emplace_back(path->file, plan_.surface.cover->classes.place);

@@ -44,12 +44,6 @@ Source open_elevation(RasterName name, std::optional<HeightUnit> unit, const Res
     return Source::open(spec, run.grid);
 }
 
-Geodetic middle_of(const Grid& grid) {
-    const auto place = Locator(grid).at(grid.width / 2.0, grid.height / 2.0);
-    // A projection may have no answer in the middle (a view of the globe has, its corners do not).
-    return place.value_or(Geodetic{});
-}
-
 Totals totals_of(const PlanTime& time) {
     if (!time.totals) return Totals::whole;
     const auto* kind = std::get_if<Totals>(&**time.totals);
@@ -85,6 +79,12 @@ bool needs_sun(const Plan& plan) {
 }
 
 }  // namespace
+
+Geodetic middle_of(const Grid& grid) {
+    const auto place = Locator(grid).at(grid.width / 2.0, grid.height / 2.0);
+    // A projection may have no answer in the middle (a view of the globe has, its corners do not).
+    return place.value_or(Geodetic{});
+}
 
 void resolve_elevation(const Plan& plan, const ResolveOptions& options, Run& run, RunProblems& problems) {
     const bool needed = needs_sun(plan);

@@ -9,6 +9,7 @@
 #include "sunbudget/base/error.hpp"
 #include "sunbudget/base/text.hpp"
 #include "sunbudget/plan/resolve.hpp"
+#include "sunbudget/raster/locator.hpp"
 
 namespace sunbudget {
 
@@ -32,6 +33,9 @@ class RunProblems {
 /// Writes an input down for the metadata, with its warnings.
 void add_input(Run& run, const std::string& role, const Source& source);
 
+/// The middle of the grid, or 0, 0 where its projection has no answer there.
+[[nodiscard]] Geodetic middle_of(const Grid& grid);
+
 /// What the files of an image's albedo say of it.
 [[nodiscard]] std::map<std::string, std::string> reflectance_metadata(const ReflectanceSurface& surface);
 
@@ -42,6 +46,8 @@ void resolve_surface(const Plan& plan, const ResolveOptions& options, Run& run, 
 void resolve_elevation(const Plan& plan, const ResolveOptions& options, Run& run, RunProblems& problems);
 void resolve_sky(const Plan& plan, Run& run, RunProblems& problems);
 void resolve_time(const Plan& plan, Run& run, RunProblems& problems);
+/// After the time, which a typical year is laid over.
+void resolve_weather(const Plan& plan, const ResolveOptions& options, Run& run, RunProblems& problems);
 void resolve_layers(const Plan& plan, Run& run, RunProblems& problems);
 
 }  // namespace sunbudget

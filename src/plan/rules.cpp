@@ -1,4 +1,5 @@
 #include <algorithm>
+#include <cmath>
 
 #include "fill.hpp"
 #include "reflectance.hpp"
@@ -23,6 +24,7 @@ class CrossCheck {
         layers();
         unit();
         directions();
+        if (plan_.weather) weather(*plan_.weather);
         if (plan_.surface.reflectance) reflectance(*plan_.surface.reflectance);
     }
 
@@ -56,6 +58,7 @@ class CrossCheck {
     void layers() const;
     void unit() const;
     void directions() const;
+    void weather(const PlanWeather& weather) const;
     void reflectance(const PlanReflectance& image) const;
     void reflectance_weights(const PlanReflectance& image) const;
     void quality_tests(const PlanReflectance& image) const;
@@ -90,6 +93,14 @@ void CrossCheck::grid_source() const {
         !has_elevation_raster())
         mistakes_.add(root_.place, "nothing says which grid the outputs have",
                       "add grid with crs, bounds and cell, or an input raster");
+}
+
+void CrossCheck::weather(const PlanWeather& weather) const {
+    if (!weather.table && !written("weather.table"))
+        mistakes_.add(weather.place, "the weather has no table", "add table: FILE, or remove weather");
+    if (weather.station && std::abs((**weather.station)[0]) > 90)
+        mistakes_.add(weather.station->place, "no place has the latitude " + shortest((**weather.station)[0]),
+                      "write [latitude, longitude], such as [52.5, 13.4]");
 }
 
 void CrossCheck::instant_zone() const {

@@ -140,6 +140,13 @@ class Writer {
     [[nodiscard]] Node node_of(const std::vector<std::string>& texts) const {
         return list_of(texts);
     }
+    [[nodiscard]] Node node_of(const WeatherColumn& column) const {
+        return column.number > 0 ? number_node(column.number) : text_node(column.name);
+    }
+    [[nodiscard]] Node node_of(const std::vector<double>& numbers) const {
+        return numbers.size() == 1 ? number_node(numbers.front()) : list_of(numbers);
+    }
+    [[nodiscard]] Node node_of(const std::array<double, 2>& place) const { return list_of(place); }
     [[nodiscard]] Node node_of(double number) const { return number_node(number); }
     [[nodiscard]] Node node_of(int number) const { return number_node(number); }
     [[nodiscard]] Node node_of(const CivilDate& date) const { return text_node(format_date(date)); }

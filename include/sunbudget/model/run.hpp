@@ -12,6 +12,7 @@
 #include "sunbudget/model/light.hpp"
 #include "sunbudget/model/terrain.hpp"
 #include "sunbudget/model/time_plan.hpp"
+#include "sunbudget/model/weather_record.hpp"
 #include "sunbudget/physics/quality_bits.hpp"
 #include "sunbudget/raster/layer_file.hpp"
 #include "sunbudget/raster/source.hpp"
@@ -94,6 +95,13 @@ struct ClassUse {
     std::optional<double> albedo;
 };
 
+/// A weather table of a run.
+struct RunWeather {
+    WeatherRecord record;
+    Station station;
+    bool stop_at_gaps = false;
+};
+
 /// Everything a plan comes to: resolved, checked and fixed. Shared by all threads.
 struct Run {
     std::string title;
@@ -107,6 +115,7 @@ struct Run {
     std::optional<Terrain> terrain;  ///< without it the ground is level and open
     double constant_height_m = 0;    ///< then
     Sky sky;
+    std::shared_ptr<const RunWeather> weather;  ///< nothing without a table
     std::optional<TimePlan> times;
     OutputUnit unit = OutputUnit::w_m2;
     std::vector<OutputLayer> layers;

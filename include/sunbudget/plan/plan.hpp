@@ -9,6 +9,7 @@
 
 #include "sunbudget/base/time.hpp"
 #include "sunbudget/model/time_plan.hpp"
+#include "sunbudget/model/weather_record.hpp"
 #include "sunbudget/plan/place.hpp"
 #include "sunbudget/tables/layers.hpp"
 
@@ -172,6 +173,61 @@ struct PlanSky {
     friend bool operator==(const PlanSky&, const PlanSky&) = default;
 };
 
+/// Something for each quantity of a weather table that is named, in the order of `weather_names`; columns
+/// also for the parts of a time.
+template <class T>
+struct PlanOfWeather {
+    Place place;
+    std::array<Maybe<T>, weather_time_names.size()> of_time;
+    std::array<Maybe<T>, weather_quantities> of;
+    friend bool operator==(const PlanOfWeather& a, const PlanOfWeather& b) {
+        return a.of_time == b.of_time && a.of == b.of;
+    }
+};
+
+enum class HeaderChoice { line, none };
+enum class DecimalSign { point, comma };
+enum class Years { own, typical };
+enum class Gaps { report, stop };
+
+struct PlanZone {
+    Zone zone;
+    friend bool operator==(const PlanZone& a, const PlanZone& b) {
+        return a.zone.name() == b.zone.name();
+    }
+};
+
+struct PlanWeather {
+    Place place;
+    Maybe<PlanPath> table;
+    std::optional<PlanOfWeather<WeatherColumn>> columns;
+    std::optional<PlanOfWeather<std::string>> units;
+    std::optional<PlanOfWeather<WeatherColumn>> flags;
+    Maybe<std::vector<double>> good_flags;
+    Maybe<std::vector<double>> missing;
+    Maybe<Separator> separator;
+    Maybe<DecimalSign> decimal;
+    Maybe<HeaderChoice> header;
+    Maybe<int> skip;
+    Maybe<std::string> comment;
+    Maybe<std::string> time_form;
+    Maybe<Stamp> stamp;
+    Maybe<int> interval_s;
+    Maybe<PlanZone> zone;
+    Maybe<Years> years;
+    Maybe<Gaps> gaps;
+    Maybe<std::array<double, 2>> station;  ///< latitude, longitude in degrees
+    Maybe<PlanLength> station_elevation;
+    friend bool operator==(const PlanWeather& a, const PlanWeather& b) {
+        return a.table == b.table && a.columns == b.columns && a.units == b.units && a.flags == b.flags &&
+               a.good_flags == b.good_flags && a.missing == b.missing && a.separator == b.separator &&
+               a.decimal == b.decimal && a.header == b.header && a.skip == b.skip && a.comment == b.comment &&
+               a.time_form == b.time_form && a.stamp == b.stamp && a.interval_s == b.interval_s && a.zone == b.zone &&
+               a.years == b.years && a.gaps == b.gaps && a.station == b.station &&
+               a.station_elevation == b.station_elevation;
+    }
+};
+
 /// Has an offset of its own, or the plan has a zone: never both, never neither.
 struct PlanInstant {
     WrittenInstant written;
@@ -179,13 +235,6 @@ struct PlanInstant {
         return a.written.local.date == b.written.local.date &&
                a.written.local.seconds_of_day == b.written.local.seconds_of_day &&
                a.written.offset_s == b.written.offset_s;
-    }
-};
-
-struct PlanZone {
-    Zone zone;
-    friend bool operator==(const PlanZone& a, const PlanZone& b) {
-        return a.zone.name() == b.zone.name();
     }
 };
 
@@ -223,6 +272,7 @@ struct Plan {
     PlanSurface surface;
     PlanTerrain terrain;
     PlanSky sky;
+    std::optional<PlanWeather> weather;
     PlanTime time;
     PlanOutputs outputs;
     PlanEngine engine;
@@ -230,7 +280,7 @@ struct Plan {
     /// Same values; where they stand does not matter.
     friend bool operator==(const Plan& a, const Plan& b) {
         return a.title == b.title && a.grid == b.grid && a.surface == b.surface &&
-               a.terrain == b.terrain && a.sky == b.sky && a.time == b.time &&
+               a.terrain == b.terrain && a.sky == b.sky && a.weather == b.weather && a.time == b.time &&
                a.outputs == b.outputs && a.engine == b.engine;
     }
 };
