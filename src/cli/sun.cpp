@@ -62,7 +62,7 @@ SunPlace place_of(const Flags& flags, Terminal& terminal) {
     place.latitude_rad = rad_from_deg(number(parts[0], "--at, latitude", -90, 90));
     place.longitude_rad = rad_from_deg(number(parts[1], "--at, longitude", -180, 180));
     if (!flags.height.empty()) place.height_m = number(flags.height, "--height", -500, 9000);
-    place.sky.turbidity.fill(turbidity_of(flags, terminal));
+    place.sky[SkyParameter::turbidity].fill(turbidity_of(flags, terminal));
     return place;
 }
 

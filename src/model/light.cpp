@@ -86,7 +86,8 @@ struct PointLight::Work {
             if (to_sun[2] <= 0) return;
             const int month = times.zone.local(*times.instant, longitude_rad).date.month;
             visit(LitMoment{to_sun, to_sun[2], to_sun[2], 1,
-                            sky_moment(sky, extraterrestrial_normal(sun.distance_au), std::asin(to_sun[2]), month, pressure)});
+                            sky_moment(sky, {*times.instant, month, extraterrestrial_normal(sun.distance_au),
+                                             std::asin(to_sun[2]), height_m, pressure})});
             return;
         }
         const auto& period = times.periods[band];
@@ -98,8 +99,9 @@ struct PointLight::Work {
                     const double begin = frame.to(track.at(sample.utc - sample.duration_s / 2))[2];
                     const double end = frame.to(track.at(sample.utc + sample.duration_s / 2))[2];
                     visit(LitMoment{to_sun, begin, end, sample.duration_s * day.weight / period.duration_s,
-                                    sky_moment(sky, extraterrestrial_normal(sample.sun.distance_au),
-                                               std::asin(to_sun[2]), day.date.month, pressure)});
+                                    sky_moment(sky, {sample.utc, day.date.month,
+                                                     extraterrestrial_normal(sample.sun.distance_au),
+                                                     std::asin(to_sun[2]), height_m, pressure})});
                 });
         }
     }

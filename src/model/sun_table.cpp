@@ -34,10 +34,11 @@ SunMoment sun_moment(const SunPlace& place, const Zone& zone, UtcSeconds utc) {
     moment.extraterrestrial_w_m2 = extraterrestrial_normal(sun.distance_au);
     if (moment.elevation_refracted_rad > 0) moment.air_mass = relative_air_mass(moment.elevation_refracted_rad);
     const int month = zone.local(utc, place.longitude_rad).date.month;
-    const auto light = esra2000(moment.extraterrestrial_w_m2, seen.elevation_rad, place.sky.turbidity_of(month), pressure);
+    if (seen.elevation_rad <= 0) return moment;
+    const auto light = sky_moment(place.sky, {utc, month, moment.extraterrestrial_w_m2, seen.elevation_rad, place.height_m, pressure});
     moment.beam_w_m2 = light.beam_normal_w_m2;
-    moment.diffuse_w_m2 = light.diffuse_horizontal_w_m2;
-    moment.global_w_m2 = light.diffuse_horizontal_w_m2 + light.beam_normal_w_m2 * std::max(0.0, std::sin(seen.elevation_rad));
+    moment.diffuse_w_m2 = light.diffuse_w_m2;
+    moment.global_w_m2 = light.diffuse_w_m2 + light.beam_normal_w_m2 * std::sin(seen.elevation_rad);
     return moment;
 }
 
@@ -50,10 +51,11 @@ std::vector<SunDayRow> sun_days(const SunPlace& place, const Zone& zone, CivilDa
     for (CivilDate date = from; date <= to; date = next_day(date)) {
         const auto span = whole_day(date, zone, place.longitude_rad);
         const auto day = sun_day(track, span.begin, span.end, place.latitude_rad, place.longitude_rad);
-        const double turbidity = place.sky.turbidity_of(date.month);
         const auto light = light_totals(track, span.begin, span.end, step_s, place.latitude_rad, place.longitude_rad,
-                                        [&](UtcSeconds, double normal_w_m2, double elevation_rad) {
-                                            return esra2000(normal_w_m2, elevation_rad, turbidity, pressure);
+                                        [&](UtcSeconds utc, double normal_w_m2, double elevation_rad) {
+                                            const auto sky = sky_moment(place.sky, {utc, date.month, normal_w_m2, elevation_rad,
+                                                                                    place.height_m, pressure});
+                                            return ClearSky{sky.beam_normal_w_m2, sky.diffuse_w_m2};
                                         });
         SunDayRow row{date, day.sunrise, day.transit, day.sunset, day.day_length_s, 0,
                       light.extraterrestrial_j_m2, light.direct_j_m2, light.diffuse_j_m2};

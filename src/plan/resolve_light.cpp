@@ -136,8 +136,8 @@ void resolve_sky(const Plan& plan, Run& run, RunProblems& problems) {
     if (!plan.sky.turbidity) return;
     const auto& chosen = method("clear_sky", **plan.sky.model);
     const auto* parameter = chosen.parameter("turbidity");
-    run.sky.turbidity = **plan.sky.turbidity;
-    for (const double value : run.sky.turbidity) {
+    run.sky[SkyParameter::turbidity] = **plan.sky.turbidity;
+    for (const double value : **plan.sky.turbidity) {
         const auto verdict = judge(*parameter, value);
         if (verdict == Verdict::fine) continue;
         if (verdict == Verdict::unusual) {

@@ -1,5 +1,6 @@
 #include "sunbudget/report/run_json.hpp"
 
+#include <cmath>
 #include <fmt/format.h>
 
 #include <algorithm>
@@ -23,6 +24,13 @@ Json grid_json(const Grid& grid) {
     Json json{{"columns", grid.width}, {"rows", grid.height}, {"affine", grid.affine}, {"crs", crs_name(grid.crs_wkt)}};
     json["bounds"] = {bounds.west, bounds.south, bounds.east, bounds.north};
     json["crs_wkt"] = grid.crs_wkt;
+    return json;
+}
+
+Json sky_json(const Sky& sky) {
+    Json json{{"model", name_of(sky.model)}};
+    for (std::size_t i = 0; i < sky_parameter_count; ++i)
+        if (!std::isnan(sky.parameters[i][0])) json[std::string(name_of(static_cast<SkyParameter>(i)))] = sky.parameters[i];
     return json;
 }
 
@@ -205,7 +213,7 @@ std::string run_json(const Run& run, const Execution& execution) {
     json["grid"] = grid_json(run.grid);
     if (run.times) {
         json["time"] = time_json(*run.times);
-        json["sky"] = {{"turbidity", run.sky.turbidity}};
+        json["sky"] = sky_json(run.sky);
     }
     json["inputs"] = inputs_json(run);
     if (const auto* image = std::get_if<ReflectanceSurface>(&run.surface)) {
