@@ -14,6 +14,10 @@ double year_angle_rad(int day) noexcept {
 }
 }  // namespace
 
+double fao56_clear_share(double height_m) noexcept {
+    return 0.75 + 2e-5 * height_m;
+}
+
 double fao56_inverse_distance(int day) noexcept {
     return 1 + 0.033 * std::cos(year_angle_rad(day));
 }

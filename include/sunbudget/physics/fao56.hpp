@@ -9,6 +9,12 @@ namespace sunbudget {
 /// FAO-56's own solar constant, eq. 21.
 inline constexpr double fao56_solar_constant_mj_m2_min = 0.0820;
 
+/// The same in W m-2.
+inline constexpr double fao56_solar_constant_w_m2 = fao56_solar_constant_mj_m2_min * 1e6 / 60;
+
+/// Clear-sky global over extraterrestrial light on a horizontal plane at a height, eq. 37.
+[[nodiscard]] double fao56_clear_share(double height_m) noexcept;
+
 /// Inverse relative distance Earth-sun, eq. 23.
 [[nodiscard]] double fao56_inverse_distance(int day) noexcept;
 /// Solar declination, eq. 24.
