@@ -30,7 +30,7 @@ Taken taken_by_run(const std::string& plan, const std::string& out) {
     const auto start = std::chrono::steady_clock::now();
     const pid_t child = fork();
     if (child == 0) {
-        execl(SUNBUDGET_PROGRAM, SUNBUDGET_PROGRAM, "run", plan.c_str(), "--out", out.c_str(),
+        execl(program_path().c_str(), "sunbudget", "run", plan.c_str(), "--out", out.c_str(),
               "--threads", "2", "--quiet", static_cast<char*>(nullptr));
         _exit(127);
     }
@@ -87,7 +87,7 @@ void compare(const std::string& plan) {
 
 TEST_CASE("check: disk and memory are within 30 % of what the demo's runs take", "[cli][vector]") {
     const TemporaryFolder folder;
-    const std::string pipelines = SUNBUDGET_SOURCE_DIR "/pipelines/";
+    const std::string pipelines = (source_folder() / "pipelines/").string();
     const auto town = demo_town();
     if (!town) {
         WARN("SKIPPED: the demo town needs python3-numpy and python3-gdal");

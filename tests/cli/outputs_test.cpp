@@ -109,7 +109,7 @@ TEST_CASE("run: a full disk ends with 4 and leaves no half file", "[cli][edge]")
     for (const auto* size : {"16k", "80k"}) {
         const auto outcome = shell("cd " + word(desk.path()) +
                                    " && unshare -m sh -c 'mount -t tmpfs -o size=" + size +
-                                   " none disk && { " SUNBUDGET_PROGRAM
+                                   " none disk && { " + program_path() +
                                    " run plan.yaml --out disk/out --set "
                                    "outputs.layers=[albedo,direct,insolation,net_shortwave]; "
                                    "echo code $?; ls -A disk/out; }'");

@@ -10,7 +10,7 @@ using Catch::Contains;
 namespace fs = std::filesystem;
 
 namespace {
-const fs::path pipelines = fs::path(SUNBUDGET_SOURCE_DIR) / "pipelines";
+const fs::path pipelines = source_folder() / "pipelines";
 
 /// Every input's digest is a SHA-256 in full or a table's; the run is named by one of its own.
 void check_run_json(const fs::path& file) {

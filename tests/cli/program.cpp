@@ -17,10 +17,13 @@ namespace sunbudget::test {
 
 namespace fs = std::filesystem;
 
+std::string program_path() { return SUNBUDGET_PROGRAM; }
+fs::path build_folder() { return SUNBUDGET_BUILD_DIR; }
+
 namespace {
 
 std::vector<std::string> program_and(const std::vector<std::string>& arguments) {
-    std::vector<std::string> words{SUNBUDGET_PROGRAM};
+    std::vector<std::string> words{program_path()};
     words.insert(words.end(), arguments.begin(), arguments.end());
     return words;
 }

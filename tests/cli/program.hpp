@@ -22,6 +22,10 @@ struct Start {
     std::vector<std::string> environment{};  ///< "NAME=VALUE", or "NAME" to take it away
 };
 
+/// The program under test, and the folder it was built in.
+[[nodiscard]] std::string program_path();
+[[nodiscard]] std::filesystem::path build_folder();
+
 /// Runs the program itself. No shell in between.
 [[nodiscard]] Outcome sunbudget(const std::vector<std::string>& arguments, const Start& start = {});
 

@@ -91,7 +91,7 @@ TEST_CASE("run: a terminal gets a progress bar, and colour unless NO_COLOR says 
 TEST_CASE("sunbudget: a reader that goes away does not end the program with a signal",
           "[cli][edge]") {
     const auto outcome =
-        shell("{ " SUNBUDGET_PROGRAM " tables corine --csv; echo code $? >&2; } | true");
+        shell("{ " + program_path() + " tables corine --csv; echo code $? >&2; } | true");
     CAPTURE(outcome.err);
     CHECK_THAT(outcome.err, !Contains("code 141"));
 }
@@ -99,7 +99,7 @@ TEST_CASE("sunbudget: a reader that goes away does not end the program with a si
 TEST_CASE("sunbudget: results that cannot be written to stdout end with 4", "[cli][edge]") {
     for (const auto* command :
          {"tables nlcd --csv", "sun --at 1,2 --time 2025-01-01T00:00Z", "--help", "tables plan"}) {
-        const auto outcome = shell(std::string(SUNBUDGET_PROGRAM " ") + command + " > /dev/full");
+        const auto outcome = shell(program_path() + " " + command + " > /dev/full");
         CAPTURE(command, outcome.err);
         CHECK(outcome.exit_code == 4);
         CHECK_THAT(outcome.err, StartsWith("sunbudget: error: "));
@@ -110,7 +110,7 @@ TEST_CASE("sunbudget: started without its streams it writes the same files, and 
           "[cli][edge]") {
     const Desk desk;
     REQUIRE(desk.run({"run", "plan.yaml"}).exit_code == 0);
-    const auto start = "cd " + word(desk.path()) + " && " SUNBUDGET_PROGRAM " ";
+    const auto start = "cd " + word(desk.path()) + " && " + program_path() + " ";
     CHECK(shell(start + "run plan.yaml --out bare <&- >&- 2>&-").exit_code == 0);
     CHECK(content(desk.path("bare/SHA256SUMS")) == content(desk.path("out/SHA256SUMS")));
     CHECK(

@@ -13,7 +13,7 @@ namespace sunbudget::test {
 namespace fs = std::filesystem;
 
 namespace {
-const fs::path generator = fs::path(SUNBUDGET_SOURCE_DIR) / "pipelines/make_demo_town";
+const fs::path generator = source_folder() / "pipelines/make_demo_town";
 
 bool is_current(const fs::path& town) {
     if (!fs::exists(town)) return false;
@@ -37,7 +37,7 @@ void make(const fs::path& town) {
 std::optional<fs::path> demo_town() {
     if (shell("/usr/bin/python3 -c 'import numpy; from osgeo import gdal'").exit_code != 0)
         return std::nullopt;
-    const fs::path town = fs::path(SUNBUDGET_BUILD_DIR) / "demo-town";
+    const fs::path town = build_folder() / "demo-town";
     // Tests run beside each other: whoever comes second waits.
     const int lock = open((town.string() + ".lock").c_str(), O_RDWR | O_CREAT | O_CLOEXEC, 0644);
     if (flock(lock, LOCK_EX) != 0) throw std::runtime_error("cannot lock the demo town");

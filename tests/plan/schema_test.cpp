@@ -9,8 +9,7 @@ using Catch::Matchers::Contains;
 
 TEST_CASE("the shipped schema is the one the program prints", "[plan][vector]") {
     // After a change of the keys: plan_tool schema > pipelines/plan.schema.json
-    const std::filesystem::path root = SUNBUDGET_SOURCE_DIR;
-    CHECK(text_of_file(root / "pipelines/plan.schema.json") == plan_schema_json());
+    CHECK(text_of_file(source_folder() / "pipelines/plan.schema.json") == plan_schema_json());
 }
 
 TEST_CASE("the help has every key with its default, choices and rules", "[plan][property]") {

@@ -24,6 +24,8 @@ struct Table {
 /// Reads testdata/NAME (a path below testdata). Throws std::runtime_error when it is missing or empty.
 [[nodiscard]] Table read_table(const std::string& name);
 
+/// The checkout.
+[[nodiscard]] std::filesystem::path source_folder();
 [[nodiscard]] std::filesystem::path testdata(const std::string& name);
 
 /// A file below the folder of real data named by SUNBUDGET_DATA; nothing when it is not set. A test
