@@ -45,7 +45,7 @@ struct LocalFrame {
 /// One lit moment of a band with its weight in the band's mean.
 struct LitMoment {
     std::array<double, 3> to_sun;
-    double sine_begin, sine_end;  ///< true, at the step's two ends
+    UtcSeconds begin, end;  ///< equal for an instant
     double weight;                ///< share of the period: W m-2 times weight add up to its mean
     SkyMoment sky;
 
@@ -85,7 +85,7 @@ struct PointLight::Work {
             const auto to_sun = frame.to(sun);
             if (to_sun[2] <= 0) return;
             const int month = times.zone.local(*times.instant, longitude_rad).date.month;
-            visit(LitMoment{to_sun, to_sun[2], to_sun[2], 1,
+            visit(LitMoment{to_sun, *times.instant, *times.instant, 1,
                             sky_moment(sky, {*times.instant, month, extraterrestrial_normal(sun.distance_au),
                                              std::asin(to_sun[2]), height_m, pressure})});
             return;
@@ -96,9 +96,8 @@ struct PointLight::Work {
             for_each_sunlit_step(
                 track, span.begin, span.end, times.step_s, latitude_rad, longitude_rad, [&](const SunSample& sample) {
                     const auto to_sun = frame.to(sample.sun);
-                    const double begin = frame.to(track.at(sample.utc - sample.duration_s / 2))[2];
-                    const double end = frame.to(track.at(sample.utc + sample.duration_s / 2))[2];
-                    visit(LitMoment{to_sun, begin, end, sample.duration_s * day.weight / period.duration_s,
+                    visit(LitMoment{to_sun, sample.utc - sample.duration_s / 2, sample.utc + sample.duration_s / 2,
+                                    sample.duration_s * day.weight / period.duration_s,
                                     sky_moment(sky, {sample.utc, day.date.month,
                                                      extraterrestrial_normal(sample.sun.distance_au),
                                                      std::asin(to_sun[2]), height_m, pressure})});
@@ -137,9 +136,18 @@ OpenLight PointLight::at(std::size_t band, double latitude_rad, double longitude
 
 std::vector<SunStep> PointLight::path(std::size_t band, double latitude_rad, double longitude_rad, double height_m) const {
     std::vector<SunStep> path;
+    const LocalFrame frame(latitude_rad, longitude_rad);
     const double pressure = pressure_ratio(height_m);
+    const auto apparent_at = [&](UtcSeconds utc) { return apparent_sine(frame.to(work_->track.at(utc))[2], pressure); };
+    UtcSeconds last_end = 0;
+    double last_sine = 0;
     work_->visit(band, latitude_rad, longitude_rad, height_m, [&](const LitMoment& m) {
-        const double begin = apparent_sine(m.sine_begin, pressure), end = apparent_sine(m.sine_end, pressure);
+        // A step mostly begins where the last one ended, but for the rounding of its middle.
+        constexpr double same_s = 1e-3;
+        const double begin = std::abs(m.begin - last_end) < same_s ? last_sine : apparent_at(m.begin);
+        const double end = m.end > m.begin ? apparent_at(m.end) : begin;
+        last_end = m.end;
+        last_sine = end;
         double azimuth_rad = std::atan2(m.to_sun[0], m.to_sun[1]);
         if (azimuth_rad < 0) azimuth_rad += 2 * std::numbers::pi;
         path.push_back({azimuth_rad, std::min(begin, end), std::max(begin, end),

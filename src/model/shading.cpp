@@ -16,8 +16,9 @@ namespace {
 /// Suns are sorted once for a square of this size: over half of it, 0.1 degrees of the sun's height, the
 /// light itself is corrected to the pixel's own place.
 constexpr double region_m = 20000;
-/// Regions are visited one after the other; a few more than there are threads are kept.
-constexpr std::size_t regions_kept = 12;
+/// Sorted suns that are kept: regions are visited one after the other, and twelve monthly tables of one
+/// take 8 MB.
+constexpr std::size_t sectors_kept_bytes = std::size_t{48} << 20;
 
 double side_m(const PixelMatrix& matrix) {
     return std::max(length_of_m(matrix, 1, 0), length_of_m(matrix, 0, 1));
@@ -101,10 +102,6 @@ std::shared_ptr<const SunSectors> SharedTerrain::sectors(const Window& block, st
             oldest_first_.push_back(key);
         }
         entry = found;
-        if (oldest_first_.size() > regions_kept) {
-            regions_.erase(oldest_first_.front());
-            oldest_first_.erase(oldest_first_.begin());
-        }
     }
     std::call_once(entry->once, [&] {
         const long column = std::min(key.column * region_px_ + region_px_ / 2, static_cast<long>(grid_.width - 1));
@@ -116,8 +113,22 @@ std::shared_ptr<const SunSectors> SharedTerrain::sectors(const Window& block, st
                                                              static_cast<double>(block.row) + block.height / 2.0);
         entry->sectors = std::make_shared<const SunSectors>(light.point(), *place, middle_height_m_, first_band, bands,
                                                             terrain_.directions);
+        make_room(key, *entry);
     });
     return entry->sectors;
+}
+
+/// Makes room for a new entry's suns. Whoever works with forgotten ones still holds them.
+void SharedTerrain::make_room(const Key& key, Entry& added) {
+    const std::lock_guard hold(mutex_);
+    if (const auto found = regions_.find(key); found == regions_.end() || found->second.get() != &added) return;
+    added.bytes = added.sectors->bytes();
+    for (kept_bytes_ += added.bytes; kept_bytes_ > sectors_kept_bytes && oldest_first_.size() > 1;) {
+        const auto oldest = regions_.find(oldest_first_.front());
+        kept_bytes_ -= oldest->second->bytes;
+        regions_.erase(oldest);
+        oldest_first_.pop_front();
+    }
 }
 
 struct BlockShader::State {

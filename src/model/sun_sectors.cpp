@@ -72,13 +72,23 @@ SunSectors::SunSectors(const PointLight& light, const Geodetic& place, double he
         for (std::size_t band = 0; band < bands; ++band) {
             if (sector.lists[band].size() > list_up_to) {
                 for (const auto& placed : sector.lists[band]) sector.tables[band].add(placed.sun, placed.share);
-                sector.lists[band] = {};
+                std::vector<PlacedSun>().swap(sector.lists[band]);  // = {} would keep the memory
             }
             sector.tables[band].finish();
         }
         if (!sector.empty) sector.add_to(flat.horizon(), flat.normal(), sums);
     }
     flat.take_over(whole_);
+}
+
+std::size_t SunSectors::bytes() const {
+    std::size_t bytes = sizeof *this;
+    for (const auto& sector : sectors_) {
+        bytes += sizeof sector + sector.tables.size() * sizeof(BeamTable) + sector.lists.size() * sizeof(std::vector<PlacedSun>);
+        for (const auto& table : sector.tables) bytes += table.bytes();
+        for (const auto& list : sector.lists) bytes += list.capacity() * sizeof(PlacedSun);
+    }
+    return bytes;
 }
 
 FewSuns few_suns(const PointLight& light, const Geodetic& place, double height_m, std::size_t first_band,

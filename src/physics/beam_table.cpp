@@ -185,8 +185,8 @@ void BeamTable::finish() {
             }
         }
     }
-    part_ = {};
-    whole_ = {};
+    std::vector<Sum>().swap(part_);  // = {} would keep the memory
+    std::vector<Sum>().swap(whole_);
 }
 
 void add_beams(std::span<const BeamTable> tables, const HorizonPair& horizon,

@@ -1,5 +1,6 @@
 #pragma once
 
+#include <deque>
 #include <filesystem>
 #include <map>
 #include <memory>
@@ -40,7 +41,10 @@ class SharedTerrain {
     struct Entry {
         std::once_flag once;
         std::shared_ptr<const SunSectors> sectors;
+        std::size_t bytes = 0;  ///< 0 until they are sorted
     };
+    void make_room(const Key& key, Entry& added);
+
     const Terrain& terrain_;
     const Grid& grid_;
     double middle_height_m_;
@@ -48,7 +52,8 @@ class SharedTerrain {
     std::unique_ptr<HeightLevels> levels_;
     std::mutex mutex_;
     std::map<Key, std::shared_ptr<Entry>> regions_;
-    std::vector<Key> oldest_first_;
+    std::deque<Key> oldest_first_;
+    std::size_t kept_bytes_ = 0;
 };
 
 /// What terrain makes of the light of one block.

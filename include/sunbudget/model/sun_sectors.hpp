@@ -37,6 +37,8 @@ class SunSectors {
                std::size_t bands, int directions);
 
     [[nodiscard]] const Sector& after(int direction) const { return sectors_[static_cast<std::size_t>(direction)]; }
+    /// About what it takes in memory.
+    [[nodiscard]] std::size_t bytes() const;
     [[nodiscard]] const std::vector<WholeSun>& whole() const { return whole_; }
 
   private:

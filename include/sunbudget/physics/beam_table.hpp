@@ -64,6 +64,8 @@ class BeamTable {
     /// No sun was added: the table need not be looked up.
     [[nodiscard]] bool empty() const noexcept { return suns_ == 0; }
 
+    [[nodiscard]] std::size_t bytes() const noexcept { return entries_.size() * sizeof(Entry); }
+
     /// Beam east, north, up; hours; from around the sun east, north, up; unused: one wide vector.
     struct alignas(32) Entry {
         std::array<float, 8> lane{};
