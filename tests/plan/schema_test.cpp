@@ -1,6 +1,7 @@
 #include <catch2/catch.hpp>
 
 #include "plan_support.hpp"
+#include "support/vectors.hpp"
 #include "sunbudget/tables/layers.hpp"
 
 namespace sunbudget::test {
