@@ -132,7 +132,7 @@ TEST_CASE("polygons: every format gives the same shapes, and a table goes out as
         for (const auto& one : found.all) CHECK(one.area_px == Approx(200).epsilon(1e-9));
     }
     const std::vector<FeatureColumn> columns{{"name", true}, {"mean", false}};
-    const auto row = [](std::size_t i) { return FeatureRow{i == 0 ? 1 : 2, {i == 0 ? "one" : "two"}, {i == 0 ? 2.5 : NAN}}; };
+    const auto row = [](std::size_t i) { return FeatureRow{i == 0 ? 1 : 2, {i == 0 ? "one" : "two"}, {i == 0 ? 2.5 : std::numeric_limits<double>::quiet_NaN()}}; };
     for (const auto* name : {"x.gpkg", "y.gpkg"}) write_features(here.file(name), {here.file("a.gpkg"), {}, {}}, "zones", columns, 2, row);
     CHECK(sha256_of_file(here.file("x.gpkg")) == sha256_of_file(here.file("y.gpkg")));
     const auto back = read_polygons({here.file("x.gpkg"), "zones", {}}, grid, {"name", {"mean"}});
