@@ -58,9 +58,10 @@ bool already_complete(const fs::path& folder, const Run& run) {
                 "name another with --out, or replace them with --fresh");
 }
 
-void publish_run(const Run& run, const Execution& execution, OutputSet& outputs) {
+void publish_run(const Run& run, const EngineOptions& options, Execution& execution, OutputSet& outputs) {
     std::vector<std::string> names;
     for (const auto& layer : execution.layers) names.push_back(layer.file_name);
+    for (auto& name : write_zones(run, options, outputs, execution)) names.push_back(std::move(name));
     write_text_file(outputs.staged("run.json"), run_json(run, execution));
     names.emplace_back("run.json");
     outputs.publish(names);
@@ -107,11 +108,11 @@ void run_plan(Plan plan, const RunFlags& flags, const Common& common, Terminal& 
     }
     if (!flags.save_plan.empty()) save_plan(plan, flags.save_plan);
     OutputSet outputs(folder, single ? OutputSet::Mark::none : OutputSet::Mark::checksums);
-    const auto execution = execute(run, options, outputs);
+    auto execution = execute(run, options, outputs);
     if (single)
         publish_single(execution, flags.single_file, outputs);
     else
-        publish_run(run, execution, outputs);
+        publish_run(run, options, execution, outputs);
     terminal.end_progress();
     for (const auto& warning : closing_warnings(run, execution)) terminal.warning(warning);
     for (const auto& line : summary(run, execution)) terminal.note(line);

@@ -121,6 +121,13 @@ void visit_plan(P& plan, Visitor& v) {
         v.value("unit", plan.outputs.unit);
         v.value("format", plan.outputs.format);
     });
+    v.map("zones", plan.zones, [&](auto& zones) {
+        v.value("file", zones.file);
+        v.value("layer", zones.layer);
+        v.value("id", zones.id);
+        v.value("layers", zones.layers);
+        v.value("above", zones.above);
+    });
     v.map("engine", [&] { v.value("tile", plan.engine.tile); });
 }
 

@@ -311,6 +311,16 @@ Form outputs_form() {
                 {"format", {choice(format_names)}, "cloud-optimised or plain GeoTIFF", "cog"}});
 }
 
+Form zones_form() {
+    return map({{"file", {of(ValueKind::path)}, "polygons: GeoPackage, GeoJSON, shapefile or FlatGeobuf, in any CRS", {}, true},
+                {"layer", {of(ValueKind::text)}, "of the file; default: its only one"},
+                {"id", {of(ValueKind::text)}, "the field that names a zone, or fid", "fid"},
+                {"layers",
+                 {list(choice(layer_names()), 1, {}, true)},
+                 "layers of the run to give figures of; default: all but aspect and quality"},
+                {"above", {number()}, "also give the share of each zone above this value, in the layers' unit"}});
+}
+
 Form engine_form() {
     return map({{"tile",
                  {{.kind = ValueKind::integer, .choices = {"128", "256", "512", "1024"}}},
@@ -331,6 +341,7 @@ const Form& plan_form() {
              {"weather", {weather_form()}, "what was measured"},
              {"time", {time_form()}, "needed by every layer of radiation"},
              {"outputs", {outputs_form()}, "what to write", {}, true},
+             {"zones", {zones_form()}, "parcels, blocks or wards to give figures of, in zones.csv and zones.gpkg"},
              {"engine", {engine_form()}, "rarely needed"}});
     return form;
 }

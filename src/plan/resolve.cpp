@@ -73,6 +73,7 @@ class Resolver {
         resolve_weather(plan_, options_, run_, problems_);
         problems_.throw_if_any();
         resolve_layers(plan_, run_, problems_);
+        resolve_zones(plan_, run_, problems_);
         refuse_overwriting_inputs();
         problems_.throw_if_any();
         return std::move(run_);
@@ -133,6 +134,8 @@ class Resolver {
         if (plan_.outputs.directory)
             for (const auto& layer : run_.layers)
                 files.push_back(plan_.outputs.directory->value.file / (layer.file.name + ".tif"));
+        if (plan_.outputs.directory && plan_.zones)
+            for (const auto* name : {"zones.csv", "zones.gpkg"}) files.push_back(plan_.outputs.directory->value.file / name);
         return files;
     }
 
@@ -142,6 +145,7 @@ class Resolver {
         if (plan_.grid.like)
             if (const auto* path = std::get_if<PlanPath>(&**plan_.grid.like)) files.emplace_back(path->file, plan_.grid.like->place);
         if (plan_.weather && plan_.weather->table) files.emplace_back((**plan_.weather->table).file, plan_.weather->table->place);
+        if (plan_.zones) files.emplace_back(plan_.zones->file->file, plan_.zones->file.place);
         if (plan_.surface.cover)
             if (const auto* path = std::get_if<PlanPath>(&*plan_.surface.cover->classes))
                 files.emplace_back(path->file, plan_.surface.cover->classes.place);

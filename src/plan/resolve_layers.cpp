@@ -4,7 +4,9 @@
 
 #include "resolve_parts.hpp"
 #include "sunbudget/base/text.hpp"
+#include "sunbudget/base/digest.hpp"
 #include "sunbudget/base/units.hpp"
+#include "sunbudget/raster/grid_build.hpp"
 #include "sunbudget/raster/finish.hpp"
 #include "sunbudget/tables/quality.hpp"
 #include "sunbudget/base/version.hpp"
@@ -109,6 +111,31 @@ void resolve_layers(const Plan& plan, Run& run, RunProblems& problems) {
             run.layers.push_back(output_layer(layer(*name), run));
             check_layer(run.layers.back().file);
         });
+}
+
+void resolve_zones(const Plan& plan, Run& run, RunProblems& problems) {
+    if (!plan.zones) return;
+    const auto& zones = *plan.zones;
+    ZoneTask task{{zones.file->file, zones.layer ? **zones.layer : std::string(), {}}, **zones.id, {}, {}, {}};
+    if (zones.above) task.above = **zones.above;
+    for (const auto& id : zones.layers) task.layers.push_back(layer(*id).name);
+    if (zones.layers.empty())
+        for (const auto& output : run.layers)
+            if (output.layer->quantity != Quantity::flags && output.layer->id != LayerId::aspect) task.layers.push_back(output.file.name);
+    if (plan.surface.cover) task.cover = raster_of(*plan.surface.cover->raster);
+    problems.attempt(zones.file.place, [&] {
+        const auto file = inspect_polygons(task.shapes);
+        if (task.id != "fid" && std::ranges::find(file.fields, task.id) == file.fields.end())
+            throw Error(Cause::input, "no field \"" + task.id + "\" to name the zones by", {}, suggestion(task.id, file.fields));
+        run.inputs.push_back({"zones.file", task.shapes.path.filename().string(), input_digest(task.shapes.path),
+                              {fmt::format("{}, layer {}, {} features, {}", file.driver, file.layer, file.features, crs_name(file.crs_wkt))}, 1});
+    });
+    const bool has_slope = std::ranges::any_of(run.layers, [](const auto& output) { return output.layer->id == LayerId::slope; });
+    if (run.terrain && !has_slope) {
+        run.layers.push_back(output_layer(layer(LayerId::slope), run));
+        run.assumptions.push_back("zones: the layer slope is written too; sums over zones use the inclined surface");
+    }
+    run.zones = std::move(task);
 }
 
 }  // namespace sunbudget

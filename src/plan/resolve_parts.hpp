@@ -49,5 +49,7 @@ void resolve_time(const Plan& plan, Run& run, RunProblems& problems);
 /// After the time, which a typical year is laid over.
 void resolve_weather(const Plan& plan, const ResolveOptions& options, Run& run, RunProblems& problems);
 void resolve_layers(const Plan& plan, Run& run, RunProblems& problems);
+/// Adds the slope to the layers where zones need it.
+void resolve_zones(const Plan& plan, Run& run, RunProblems& problems);
 
 }  // namespace sunbudget

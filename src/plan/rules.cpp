@@ -24,6 +24,7 @@ class CrossCheck {
         layers();
         unit();
         directions();
+        zones();
         if (plan_.weather) weather(*plan_.weather);
         if (plan_.surface.reflectance) reflectance(*plan_.surface.reflectance);
     }
@@ -58,6 +59,7 @@ class CrossCheck {
     void layers() const;
     void unit() const;
     void directions() const;
+    void zones() const;
     void weather(const PlanWeather& weather) const;
     void reflectance(const PlanReflectance& image) const;
     void reflectance_weights(const PlanReflectance& image) const;
@@ -178,6 +180,19 @@ void CrossCheck::directions() const {
     if (directions && **directions % 4 != 0)
         mistakes_.add(directions->place, std::to_string(**directions) + " directions do not go evenly round the four sides",
                       "give a multiple of 4, from 8 to 360");
+}
+
+/// Zones can be given figures only of what the run writes.
+void CrossCheck::zones() const {
+    if (!plan_.zones) return;
+    for (const auto& id : plan_.zones->layers) {
+        const auto& name = layer(*id).name;
+        const bool is_written = std::ranges::any_of(plan_.outputs.layers, [&](const auto& other) { return *other == *id; });
+        if (!is_written)
+            mistakes_.add(id.place, "the run does not write " + name, "add it to outputs.layers, or leave it out here");
+        if (*id == LayerId::aspect || *id == LayerId::quality)
+            mistakes_.add(id.place, "a mean of " + name + " has no meaning", "leave it out here");
+    }
 }
 
 void CrossCheck::unit() const {

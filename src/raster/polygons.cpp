@@ -344,7 +344,9 @@ void write_features(const fs::path& file, const PolygonName& shapes, const std::
     DatasetPtr out(driver->Create(file.c_str(), 0, 0, 0, GDT_Unknown, nullptr));
     if (out == nullptr) throw_unwritten(file, messages);
     const auto crs = crs_from_wkt(from.crs_wkt);
-    auto* layer = out->CreateLayer(layer_name.c_str(), crs.get(), wkbMultiPolygon, nullptr);
+    // A column of ours may be named fid, which is the format's own name for the row.
+    std::array<const char*, 2> options{"FID=row_number", nullptr};
+    auto* layer = out->CreateLayer(layer_name.c_str(), crs.get(), wkbMultiPolygon, const_cast<char**>(options.data()));
     if (layer == nullptr) throw_unwritten(file, messages);
     define(*layer, columns, file, messages);
     if (layer->StartTransaction() != OGRERR_NONE) throw_unwritten(file, messages);

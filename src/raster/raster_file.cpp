@@ -83,8 +83,7 @@ int band_by_name(const RasterName& name, const std::vector<std::string>& names) 
 }
 
 void choose_band(GDALDataset& dataset, RasterInfo& info) {
-    for (int band = 1; band <= info.bands; ++band)
-        info.band_names.emplace_back(dataset.GetRasterBand(band)->GetDescription());
+    info.band_names = band_descriptions(dataset, info.name);
     const auto& name = info.name;
     info.band = std::max(1, name.band);
     // A netCDF variable was chosen by its name when the file was opened.

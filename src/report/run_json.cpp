@@ -223,6 +223,7 @@ std::string run_json(const Run& run, const Execution& execution) {
     if (!run.classes.empty()) json["classes"] = classes_json(run);
     json["methods"] = methods_json(run);
     json["layers"] = layers_json(run, execution);
+    if (run.zones) json["zones"] = {{"file", "zones.csv"}, {"shapes", "zones.gpkg"}, {"count", execution.zones}, {"notes", execution.zone_notes}};
     json["quality_pixels"] = quality_json(execution);
     json["infinite_numbers_in_inputs"] = execution.infinities;
     json["assumptions"] = run.assumptions;
@@ -254,6 +255,8 @@ std::vector<std::string> summary(const Run& run, const Execution& execution) {
         if (!where_from && pixels > 0 && (row.mask != quality::source_mask || run.has_surface()))
             lines.push_back(fmt::format("{} pixels: {}", pixels, row.text));
     }
+    if (run.zones) lines.push_back(fmt::format("zones.csv, zones.gpkg: figures of {} zones", execution.zones));
+    for (const auto& note : execution.zone_notes) lines.push_back("zones: " + note);
     return lines;
 }
 

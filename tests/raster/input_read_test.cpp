@@ -1,9 +1,11 @@
 #include <catch2/catch.hpp>
 #include <cmath>
+#include <cstdlib>
 #include <limits>
 
 #include "input_support.hpp"
 #include "sunbudget/base/error.hpp"
+#include "sunbudget/raster/gdal_setup.hpp"
 #include "sunbudget/raster/grid_build.hpp"
 
 using namespace sunbudget;
@@ -18,6 +20,19 @@ constexpr double endless = std::numeric_limits<double>::infinity();
 /// 0, 1, 2, ... row by row.
 std::function<double(int, int)> counting(int width) {
     return [width](int c, int r) { return static_cast<double>(r * width + c); };
+}
+
+TEST_CASE("inspect: bands keep their names in a file with overviews", "[raster][edge]") {
+    const TemporaryFolder folder;
+    gdal_setup(std::uint64_t{64} << 20);
+    const auto file = folder.path() / "named.tif";
+    const auto script = "from osgeo import gdal; d = gdal.GetDriverByName('GTiff').Create('" + file.string() +
+                        "', 600, 600, 2); d.SetGeoTransform((0, 10, 0, 6000, 0, -10)); d.SetProjection('EPSG:32633'); "
+                        "d.GetRasterBand(2).SetDescription('July'); d.BuildOverviews('NEAREST', [2])";
+    REQUIRE(std::system(("/usr/bin/python3 -c \"" + script + "\"").c_str()) == 0);
+    const auto info = inspect(raster_name(file.string() + ":July"));
+    CHECK(info.band == 2);
+    CHECK(info.band_names.back() == "July");
 }
 
 }  // namespace

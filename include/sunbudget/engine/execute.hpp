@@ -37,6 +37,8 @@ struct Execution {
     std::vector<LayerResult> layers;               ///< as run.layers
     std::map<std::uint16_t, std::uint64_t> flags;  ///< pixels by the value of `quality`
     std::uint64_t infinities = 0;                  ///< infinite numbers met in the inputs
+    std::uint64_t zones = 0;
+    std::vector<std::string> zone_notes{};  ///< what a reader of the zone table should know
 };
 
 /// GDAL's share of the memory budget.
@@ -53,5 +55,10 @@ struct Execution {
 /// errors  Error(input) of a read that failed, with the layer of the lattice it happened in;
 ///         Error(output); Error(temporary) after a stop signal
 [[nodiscard]] Execution execute(const Run& run, const EngineOptions& options, const OutputSet& outputs);
+
+/// Figures of the run's zones from its finished layers, staged as zones.csv and zones.gpkg; the names of those
+/// files, none where the run has no zones. The notes go into `execution`.
+[[nodiscard]] std::vector<std::string> write_zones(const Run& run, const EngineOptions& options, const OutputSet& outputs,
+                                                   Execution& execution);
 
 }  // namespace sunbudget

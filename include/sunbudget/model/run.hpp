@@ -15,6 +15,7 @@
 #include "sunbudget/model/weather_record.hpp"
 #include "sunbudget/physics/quality_bits.hpp"
 #include "sunbudget/raster/layer_file.hpp"
+#include "sunbudget/raster/polygons.hpp"
 #include "sunbudget/raster/source.hpp"
 #include "sunbudget/tables/class_table.hpp"
 #include "sunbudget/tables/layers.hpp"
@@ -102,6 +103,15 @@ struct RunWeather {
     bool stop_at_gaps = false;
 };
 
+/// Zones to give figures of once the layers are written.
+struct ZoneTask {
+    PolygonName shapes;
+    std::string id = "fid";
+    std::vector<std::string> layers;  ///< names of layers the run writes
+    std::optional<double> above;
+    std::optional<RasterName> cover;  ///< for the shares of classes
+};
+
 /// Everything a plan comes to: resolved, checked and fixed. Shared by all threads.
 struct Run {
     std::string title;
@@ -119,6 +129,7 @@ struct Run {
     std::optional<TimePlan> times;
     OutputUnit unit = OutputUnit::w_m2;
     std::vector<OutputLayer> layers;
+    std::optional<ZoneTask> zones;
 
     std::vector<InputFile> inputs;
     std::vector<ClassUse> classes;

@@ -259,6 +259,18 @@ struct PlanOutputs {
     friend bool operator==(const PlanOutputs&, const PlanOutputs&) = default;
 };
 
+struct PlanZones {
+    Place place;
+    Given<PlanPath> file;
+    Maybe<std::string> layer;  ///< of the file
+    Maybe<std::string> id;     ///< a field, or "fid"
+    std::vector<Given<LayerId>> layers;  ///< each once; empty: every layer of the run
+    Maybe<double> above;
+    friend bool operator==(const PlanZones& a, const PlanZones& b) {
+        return a.file == b.file && a.layer == b.layer && a.id == b.id && a.layers == b.layers && a.above == b.above;
+    }
+};
+
 struct PlanEngine {
     Maybe<int> tile;
     friend bool operator==(const PlanEngine&, const PlanEngine&) = default;
@@ -275,13 +287,14 @@ struct Plan {
     std::optional<PlanWeather> weather;
     PlanTime time;
     PlanOutputs outputs;
+    std::optional<PlanZones> zones;
     PlanEngine engine;
 
     /// Same values; where they stand does not matter.
     friend bool operator==(const Plan& a, const Plan& b) {
         return a.title == b.title && a.grid == b.grid && a.surface == b.surface &&
                a.terrain == b.terrain && a.sky == b.sky && a.weather == b.weather && a.time == b.time &&
-               a.outputs == b.outputs && a.engine == b.engine;
+               a.outputs == b.outputs && a.zones == b.zones && a.engine == b.engine;
     }
 };
 
