@@ -36,6 +36,7 @@ void add_check(CLI::App& app);
 void add_one_line_jobs(CLI::App& app);
 void add_sun(CLI::App& app);
 void add_tables(CLI::App& app);
+void add_zones(CLI::App& app);
 
 /// What the run of a plan does once it is read, shared by `run` and the one-line jobs.
 struct RunFlags {

@@ -41,6 +41,7 @@ int main(int argc, char** argv) {
     add_check(app);
     add_one_line_jobs(app);
     add_sun(app);
+    add_zones(app);
     add_tables(app);
     Terminal terminal(false);
     try {
