@@ -26,6 +26,7 @@ struct Ground {
     const char* name;
     const char* date;                     ///< of the day that is summed
     std::array<const char*, 4> instants;  ///< sun low and high, all round
+    int band = 1;
 };
 constexpr Ground grounds[] = {
     {"dem/davosdorf_switzerland_10m.tif",
@@ -40,6 +41,16 @@ constexpr Ground grounds[] = {
     {"zion_utah/srtm.tif",
      "2025-03-01",
      {"2025-03-01T15:30Z", "2025-12-21T18:00Z", "2025-06-21T15:00Z", "2025-10-15T23:00Z"}},
+    {"dem/ecuador_slope_elev_10m.tif",
+     "2025-06-21",
+     {"2025-03-21T12:30Z", "2025-06-21T21:30Z", "2025-12-21T14:00Z", "2025-09-21T19:00Z"},
+     2},
+    {"olinda_brazil/olinda_dem_utm25s.tif",
+     "2025-06-21",
+     {"2025-06-21T09:30Z", "2025-12-21T19:00Z", "2025-03-21T12:00Z", "2025-09-21T16:00Z"}},
+    {"costarica_landsat5_sr/ASTER_V002_EAST.tif",
+     "2025-12-21",
+     {"2025-12-21T13:30Z", "2025-06-21T22:30Z", "2025-03-21T15:00Z", "2025-10-15T20:00Z"}},
 };
 
 bool whole_window(const Plane<float>& height_m, int column, int row) {
@@ -100,10 +111,10 @@ std::vector<Pixel> random_pixels(const RealRaster& ground, const Places& places,
     return pixels;
 }
 
-Computed run_on(const TemporaryFolder& folder, const std::filesystem::path& raster,
+Computed run_on(const TemporaryFolder& folder, const std::filesystem::path& raster, int band,
                 const std::string& rest) {
     return computed(folder.path(),
-                    fmt::format("terrain: {{elevation: {}}}\n{}", raster.string(), rest));
+                    fmt::format("terrain: {{elevation: '{}:{}'}}\n{}", raster.string(), band, rest));
 }
 
 }  // namespace
@@ -118,13 +129,13 @@ TEST_CASE(
         CAPTURE(place.name);
         const TemporaryFolder folder;
         const auto file = *real_data(place.name);
-        const auto ground = read_raster(file);
+        const auto ground = read_raster(file, place.band);
         const Places places(ground.frame);
         int right = 0, all = 0;
         const auto pixels = random_pixels(ground, places, 1000);
         for (const auto* instant : place.instants) {
             const auto found =
-                run_on(folder, file,
+                run_on(folder, file, place.band,
                        fmt::format("time: {{at: {}}}\noutputs: {{layers: [direct]}}\n", instant));
             const PointLight point(*found.run.times, found.run.sky);
             REQUIRE(!suns_over(point, 0, pixels[0].latitude_rad, pixels[0].longitude_rad, 0)
@@ -138,7 +149,7 @@ TEST_CASE(
                 ++all;
             }
         }
-        const auto day = run_on(folder, file,
+        const auto day = run_on(folder, file, place.band,
                                 fmt::format("time: {{from: {0}, to: {0}}}\noutputs: {{layers: "
                                             "[direct, insolation, sky_view]}}\n",
                                             place.date));
@@ -189,7 +200,7 @@ TEST_CASE("terrain: slope and aspect meet those of gdaldem on a real raster",
         const auto file = *real_data(name);
         const auto ground = read_raster(file, band);
         const Places places(ground.frame);
-        const auto found = run_on(folder, file.string() + ":" + std::to_string(band),
+        const auto found = run_on(folder, file, band,
                                   "outputs: {layers: [slope, aspect]}\n");
         const auto by_gdal = [&](const char* kind) {
             char b[] = "-b";
