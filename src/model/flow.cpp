@@ -82,7 +82,8 @@ void flag_nan(std::span<const float> values, std::span<std::uint16_t> flags, std
 
 SharedLight::SharedLight(const Run& run, int threads, const std::filesystem::path& scratch_folder) {
     if (run.times)
-        field_ = std::make_unique<LightField>(*run.times, run.sky, run.grid, threads, constant_height(run), run.terrain.has_value());
+        field_ = std::make_unique<LightField>(*run.times, run.sky, run.grid, threads, constant_height(run), run.terrain.has_value(),
+                                              run.sky_raster ? &*run.sky_raster : nullptr);
     if (run.terrain) terrain_ = std::make_unique<SharedTerrain>(*run.terrain, run.grid, scratch_folder);
 }
 SharedLight::~SharedLight() = default;
@@ -123,6 +124,8 @@ struct Flow::State {
     void shade_block(const Window& block, std::size_t first, std::size_t count);
     void keep_ground(const ShadedBlock& part);
     void fill_open(std::size_t block, std::size_t band);
+    [[nodiscard]] bool ground_lights_sky() const;
+    void add_from_ground(std::size_t block, std::size_t band, Plane<float>& diffuse);
     void compose(const ShadedBlock& part, std::size_t band);
     void see_albedo();
     void put_surface_layers(Sink& sink);
@@ -139,13 +142,43 @@ void Flow::State::read_heights() {
 void Flow::State::prepare_light() {
     light_blocks.clear();
     if (shared.field() == nullptr) return;
-    for (const auto& block : blocks_of(window)) light_blocks.push_back(shared.field()->prepare(block, window, heights_m, thread));
+    for (const auto& block : blocks_of(window)) {
+        light_blocks.push_back(shared.field()->prepare(block, window, heights_m, thread));
+        light_blocks.back().each_sky_row([&](int r, std::span<const float> values) {
+            const auto row = flags.row(static_cast<int>(block.row - window.row) + r)
+                                 .subspan(static_cast<std::size_t>(block.column - window.column), values.size());
+            flag_nan(values, row, quality::no_sky, 0);
+        });
+    }
+}
+
+/// Whether sky light waits for the albedo of the ground.
+bool Flow::State::ground_lights_sky() const {
+    return shared.field() != nullptr && shared.field()->has(LightField::Part::thrown_back);
+}
+
+/// Light to and fro between ground and sky over one block of the lattice, added to a plane of sky light.
+void Flow::State::add_from_ground(std::size_t block, std::size_t band, Plane<float>& diffuse) {
+    using Part = LightField::Part;
+    if (!ground_lights_sky()) return;
+    std::array planes{Part::thrown_back, Part::thrown_back_twice};
+    for (const auto part : planes) {
+        auto& plane = open[static_cast<std::size_t>(part)];
+        resize(plane, window);
+        shared.field()->fill(light_blocks[block], band, part, heights_m, plane);
+    }
+    const auto& where = light_blocks[block].window();
+    const auto row_of = [&](Part part, int r) { return over(open[static_cast<std::size_t>(part)], window, where, r); };
+    for (int r = 0; r < where.height; ++r)
+        add_ground_and_sky(over(albedo_seen, window, where, r), row_of(Part::thrown_back, r), row_of(Part::thrown_back_twice, r),
+                           over(diffuse, window, where, r));
 }
 
 /// Light is missing where the height is, or where the projection has no place on Earth.
 void Flow::State::flag_missing_light(const Plane<float>& light) {
     for (int r = 0; r < light.height(); ++r)
-        flag_nan(light.row(r), flags.row(r), quality::outside_projection, quality::no_elevation);
+        flag_nan(light.row(r), flags.row(r), quality::outside_projection,
+                 quality::no_elevation | quality::no_sky);
 }
 
 /// Flags come in runs, often of whole rows: the map is asked once a run, not once a pixel.
@@ -165,12 +198,14 @@ void Flow::State::count_flags() {
 }
 
 void Flow::State::flat_bands(std::size_t first, std::size_t count) {
+    if (first == 0) see_albedo();
     for (std::size_t i = 0; i < count; ++i) {
         resize(bands[i].direct, window);
         resize(bands[i].diffuse, window);
-        for (const auto& block : light_blocks) {
-            shared.field()->fill(block, first + i, LightField::Part::beam_up, heights_m, bands[i].direct);
-            shared.field()->fill(block, first + i, LightField::Part::diffuse, heights_m, bands[i].diffuse);
+        for (std::size_t b = 0; b < light_blocks.size(); ++b) {
+            shared.field()->fill(light_blocks[b], first + i, LightField::Part::beam_up, heights_m, bands[i].direct);
+            shared.field()->fill(light_blocks[b], first + i, LightField::Part::diffuse, heights_m, bands[i].diffuse);
+            add_from_ground(b, first + i, bands[i].diffuse);
         }
     }
 }
@@ -225,10 +260,11 @@ void Flow::State::keep_ground(const ShadedBlock& part) {
 
 /// Open ground's light of one band over one block of the lattice.
 void Flow::State::fill_open(std::size_t block, std::size_t band) {
-    for (std::size_t part = 0; part < open.size(); ++part) {
+    for (std::size_t part = 0; part <= static_cast<std::size_t>(LightField::Part::sunlit_h_a_day); ++part) {
         resize(open[part], window);
         shared.field()->fill(light_blocks[block], band, static_cast<LightField::Part>(part), heights_m, open[part]);
     }
+    add_from_ground(block, band, open[static_cast<std::size_t>(LightField::Part::diffuse)]);
 }
 
 /// Open light and shadows brought together: the band's light on the part's inclined surface.
@@ -265,7 +301,7 @@ void Flow::State::compose(const ShadedBlock& part, std::size_t band) {
 
 /// The mean albedo around each pixel, block by block so that its bits hang on the lattice alone.
 void Flow::State::see_albedo() {
-    if (!needs.reflected) return;
+    if (!(needs.reflected && run.terrain) && !ground_lights_sky()) return;
     resize(albedo_seen, window);
     if (!run.has_surface()) {
         albedo_seen.fill(static_cast<float>(albedo_where_unknown));

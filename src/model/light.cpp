@@ -2,8 +2,8 @@
 
 #include <algorithm>
 #include <cmath>
-#include <limits>
 #include <numbers>
+#include <set>
 #include <vector>
 
 #include "sunbudget/base/units.hpp"
@@ -15,9 +15,6 @@
 namespace sunbudget {
 
 namespace {
-
-/// Far below the quantum of stored fluxes (1/16 W m-2) and of the sky's own uncertainty.
-constexpr double tolerance_w_m2 = 1.0 / 256;
 
 constexpr double sea_level_hpa = 1013.25;
 
@@ -77,7 +74,8 @@ struct PointLight::Work {
 
     /// Calls visit(LitMoment) for every lit step of a band, in order.
     template <typename Visit>
-    void visit(std::size_t band, double latitude_rad, double longitude_rad, double height_m, Visit&& visit) const {
+    void visit(std::size_t band, int only_month, const Sky& under, double latitude_rad, double longitude_rad, double height_m,
+               Visit&& visit) const {
         const LocalFrame frame(latitude_rad, longitude_rad);
         const double pressure = pressure_ratio(height_m);
         if (times.instant) {
@@ -86,19 +84,20 @@ struct PointLight::Work {
             if (to_sun[2] <= 0) return;
             const int month = times.zone.local(*times.instant, longitude_rad).date.month;
             visit(LitMoment{to_sun, *times.instant, *times.instant, 1,
-                            sky_moment(sky, {*times.instant, month, extraterrestrial_normal(sun.distance_au),
+                            sky_moment(under, {*times.instant, month, extraterrestrial_normal(sun.distance_au),
                                              std::asin(to_sun[2]), height_m, pressure})});
             return;
         }
         const auto& period = times.periods[band];
         for (const auto& day : period.days) {
+            if (only_month != 0 && day.date.month != only_month) continue;
             const auto span = span_of(day, times.zone, longitude_rad);
             for_each_sunlit_step(
                 track, span.begin, span.end, times.step_s, latitude_rad, longitude_rad, [&](const SunSample& sample) {
                     const auto to_sun = frame.to(sample.sun);
                     visit(LitMoment{to_sun, sample.utc - sample.duration_s / 2, sample.utc + sample.duration_s / 2,
                                     sample.duration_s * day.weight / period.duration_s,
-                                    sky_moment(sky, {sample.utc, day.date.month,
+                                    sky_moment(under, {sample.utc, day.date.month,
                                                      extraterrestrial_normal(sample.sun.distance_au),
                                                      std::asin(to_sun[2]), height_m, pressure})});
                 });
@@ -123,15 +122,31 @@ std::size_t PointLight::most_suns(std::size_t first_band, std::size_t bands) con
 }
 
 OpenLight PointLight::at(std::size_t band, double latitude_rad, double longitude_rad, double height_m) const {
+    return at(band, 0, work_->sky, latitude_rad, longitude_rad, height_m);
+}
+
+OpenLight PointLight::at(std::size_t band, int month, const Sky& sky, double latitude_rad, double longitude_rad,
+                         double height_m) const {
     OpenLight sum;
-    work_->visit(band, latitude_rad, longitude_rad, height_m, [&](const LitMoment& m) {
+    work_->visit(band, month, sky, latitude_rad, longitude_rad, height_m, [&](const LitMoment& m) {
         add(sum.beam_w_m2, m.to_sun, m.sky.beam_normal_w_m2 * m.weight);
         add(sum.circumsolar_w_m2, m.to_sun, m.sky.parts.circumsolar_normal_w_m2 * m.weight);
         sum.diffuse_w_m2 += m.sky.diffuse_w_m2 * m.weight;
         sum.horizon_w_m2 += m.sky.parts.horizon_w_m2 * m.weight;
         sum.sunlit_h_a_day += m.sunlit_h_a_day();
+        sum.thrown_back_w_m2 += m.sky.thrown_back_w_m2 * m.weight;
+        sum.thrown_back_twice_w_m2 += m.sky.thrown_back_twice_w_m2 * m.weight;
     });
     return sum;
+}
+
+const Sky& PointLight::sky() const { return work_->sky; }
+
+std::vector<int> PointLight::months_of(std::size_t band) const {
+    if (work_->times.instant) return {0};
+    std::set<int> months;
+    for (const auto& day : work_->times.periods[band].days) months.insert(day.date.month);
+    return {months.begin(), months.end()};
 }
 
 std::vector<SunStep> PointLight::path(std::size_t band, double latitude_rad, double longitude_rad, double height_m) const {
@@ -141,7 +156,7 @@ std::vector<SunStep> PointLight::path(std::size_t band, double latitude_rad, dou
     const auto apparent_at = [&](UtcSeconds utc) { return apparent_sine(frame.to(work_->track.at(utc))[2], pressure); };
     UtcSeconds last_end = 0;
     double last_sine = 0;
-    work_->visit(band, latitude_rad, longitude_rad, height_m, [&](const LitMoment& m) {
+    work_->visit(band, 0, work_->sky, latitude_rad, longitude_rad, height_m, [&](const LitMoment& m) {
         // A step mostly begins where the last one ended, but for the rounding of its middle.
         constexpr double same_s = 1e-3;
         const double begin = std::abs(m.begin - last_end) < same_s ? last_sine : apparent_at(m.begin);
@@ -156,67 +171,5 @@ std::vector<SunStep> PointLight::path(std::size_t band, double latitude_rad, dou
     });
     return path;
 }
-
-struct LightField::Work {
-    PointLight light;
-    bool vectors;
-    std::vector<Locator> locators;  // one a thread
-    SmoothField field;
-
-    [[nodiscard]] std::size_t values_a_band() const { return vectors ? OpenLight::values : 2; }
-
-    Work(const TimePlan& times, const Sky& sky, const Grid& grid, int threads, std::optional<double> height_m, bool v)
-        : light(times, sky),
-          vectors(v),
-          field({grid.width, grid.height, (v ? OpenLight::values : 2) * times.bands(), tolerance_w_m2, height_m},
-                [this](double column, double row, double h, int thread, std::span<double> values) {
-                    at_node(column, row, h, thread, values);
-                }) {
-        locators.emplace_back(grid);
-        for (int i = 1; i < threads; ++i) locators.push_back(locators.front().clone());
-    }
-
-    void at_node(double column, double row, double height_m, int thread, std::span<double> values) const {
-        // Nodes are pixel centres; the locator counts from the pixel's outer corner.
-        const auto place = locators[static_cast<std::size_t>(thread)].at(column + 0.5, row + 0.5);
-        if (!place) {
-            std::fill(values.begin(), values.end(), std::numeric_limits<double>::quiet_NaN());
-            return;
-        }
-        for (std::size_t band = 0; band < light.bands(); ++band) {
-            const auto found = light.at(band, place->latitude_rad, place->longitude_rad, height_m);
-            double* to = values.data() + band * values_a_band();
-            if (!vectors) {
-                to[0] = found.direct_w_m2();
-                to[1] = found.diffuse_w_m2;
-                continue;
-            }
-            std::copy(found.beam_w_m2.begin(), found.beam_w_m2.end(), to);
-            std::copy(found.circumsolar_w_m2.begin(), found.circumsolar_w_m2.end(), to + 3);
-            to[6] = found.diffuse_w_m2;
-            to[7] = found.horizon_w_m2;
-            to[8] = found.sunlit_h_a_day;
-        }
-    }
-};
-
-LightField::LightField(const TimePlan& times, const Sky& sky, const Grid& grid, int threads,
-                       std::optional<double> constant_height_m, bool vectors)
-    : work_(std::make_unique<Work>(times, sky, grid, threads, constant_height_m, vectors)) {}
-LightField::~LightField() = default;
-
-LightField::Block LightField::prepare(const Window& window, const Window& frame, const Plane<float>& heights_m,
-                                      int thread) {
-    return work_->field.prepare(window, frame, heights_m, thread);
-}
-
-void LightField::fill(const Block& block, std::size_t band, Part part, const Plane<float>& heights_m,
-                      Plane<float>& out) const {
-    const auto value = work_->vectors ? static_cast<std::size_t>(part) : part == Part::beam_up ? 0u : 1u;
-    block.fill(band * work_->values_a_band() + value, heights_m, out);
-}
-
-const PointLight& LightField::point() const { return work_->light; }
-const Locator& LightField::locator(int thread) const { return work_->locators[static_cast<std::size_t>(thread)]; }
 
 }  // namespace sunbudget

@@ -82,4 +82,20 @@ void time_in_sun(std::span<const float> hours, float whole_hours, std::span<cons
     time_row(hours.data(), divisor(whole_hours), open.data(), out.data(), out.size());
 }
 
+SUNBUDGET_CLONES
+void add_ground_and_sky(std::span<const float> ground_albedo, std::span<const float> once,
+                        std::span<const float> twice, std::span<float> diffuse_w_m2) noexcept {
+    const std::size_t count = diffuse_w_m2.size();
+    const float* __restrict albedo = ground_albedo.data();
+    const float* __restrict first = once.data();
+    const float* __restrict second = twice.data();
+    float* __restrict out = diffuse_w_m2.data();
+    for (std::size_t i = 0; i < count; ++i) {
+        const float back = albedo[i] * first[i];
+        // No light, nothing to throw back: 0 / 0 is not meant.
+        const float left = first[i] - albedo[i] * second[i];
+        out[i] += back == 0 ? back : back * first[i] / left;
+    }
+}
+
 }  // namespace sunbudget

@@ -101,8 +101,10 @@ void visit_plan(P& plan, Visitor& v) {
     });
     v.map("sky", [&] {
         v.value("model", plan.sky.model);
-        v.value("turbidity", plan.sky.turbidity);
+        for (std::size_t i = 0; i < sky_parameter_count; ++i)
+            v.value(name_of(static_cast<SkyParameter>(i)).data(), plan.sky.parameters[i]);
         v.value("diffuse", plan.sky.diffuse);
+        v.value("uncertainty", plan.sky.uncertainty);
     });
     v.map("weather", plan.weather, [&](auto& weather) { visit_weather(weather, v); });
     v.map("time", [&] {

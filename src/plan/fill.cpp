@@ -111,6 +111,10 @@ class Typed {
         if (node.shape == Node::Shape::scalar) return get(node, rasters.emplace_back());
         for (const auto& item : node.children) get(item, rasters.emplace_back());
     }
+    void get(const Node& node, PlanSkyNumbers& value) const {
+        const bool numbers = node.shape == Node::Shape::list || read_number(node);
+        return numbers ? get(node, value.emplace<Monthly>()) : get(node, value.emplace<PlanRaster>());
+    }
     void get(const Node& node, std::variant<SlopeFrom, PlanPath>& value) const {
         if (is_choice(node, "terrain.slope_from")) return get(node, value.emplace<SlopeFrom>());
         get(node, value.emplace<PlanPath>());
@@ -228,6 +232,11 @@ Plan with_defaults(Plan plan) {
     const PlanTime written = plan.time;
     DefaultFiller filler(folder_of(plan.file));
     visit_plan(plan, filler);
+    // A default belongs to the models that have the parameter.
+    for (std::size_t i = 0; i < sky_parameter_count; ++i)
+        if (auto& given = plan.sky.parameters[i]; given && given->place.is_default && plan.sky.model &&
+                                                  !has(clear_model_named(**plan.sky.model), static_cast<SkyParameter>(i)))
+            given.reset();
     // How the ground is looked at belongs to an elevation raster.
     const auto& elevation = plan.terrain.elevation;
     if (!elevation || std::holds_alternative<PlanLength>(**elevation)) plan.terrain = {elevation, {}, {}, {}, {}};

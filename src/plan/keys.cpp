@@ -2,9 +2,11 @@
 
 #include <algorithm>
 #include <cassert>
+#include <stdexcept>
 
 #include "names.hpp"
 #include "sunbudget/base/text.hpp"
+#include "sunbudget/model/sky.hpp"
 #include "sunbudget/tables/class_table.hpp"
 #include "sunbudget/tables/layers.hpp"
 #include "sunbudget/tables/methods.hpp"
@@ -197,21 +199,46 @@ Form terrain_form() {
                 needs("reach", {"elevation"})});
 }
 
-// Range and default come from the model's own row.
+/// The parameter in the first model that has it: its range is the widest, its default theirs all.
+const Parameter& sky_parameter(std::string_view name) {
+    for (const auto& model : method_names("clear_sky"))
+        if (const auto* parameter = method("clear_sky", model).parameter(name)) return *parameter;
+    throw std::logic_error("a sky parameter without a model");
+}
+
+std::string models_with(std::string_view parameter) {
+    std::vector<std::string> names;
+    for (const auto& model : method_names("clear_sky"))
+        if (method("clear_sky", model).parameter(parameter) != nullptr) names.push_back(model);
+    return joined(names, ", ");
+}
+
+// Ranges and defaults come from the models' own rows.
+Key sky_parameter_key(SkyParameter id) {
+    const auto name = std::string(name_of(id));
+    const auto& parameter = sky_parameter(name);
+    const auto& [low, high, low_open] = parameter.allowed;
+    const Form one{.kind = ValueKind::number, .min = low, .max = high, .above_min = low_open};
+    std::vector<Form> forms{one, list(one, 12, 12)};
+    if (may_be_raster(id)) forms.push_back({.kind = ValueKind::raster, .beside_names = true});
+    auto doc = parameter.text + (parameter.unit == "1" ? "" : ", " + parameter.unit) + "; one number or one per month";
+    if (may_be_raster(id)) doc += ", or a raster with one band or one per month";
+    return {name, std::move(forms), doc + " (" + models_with(name) + ")",
+            parameter.default_value ? shortest(*parameter.default_value) : std::string()};
+}
+
 Form sky_form() {
     const auto models = method_names("clear_sky");
-    const auto& turbidity = *method("clear_sky", models.front()).parameter("turbidity");
-    const auto& [low, high, low_open] = turbidity.allowed;
-    const Form one{.kind = ValueKind::number, .min = low, .max = high, .above_min = low_open};
-    return map({{"model", {choice(models)}, "clear-sky model", models.front()},
-                {"turbidity",
-                 {one, list(one, 12, 12)},
-                 turbidity.text + "; one number or one per month",
-                 shortest(turbidity.default_value.value())},
-                {"diffuse",
-                 {choice(method_names("diffuse_sky"))},
-                 "how the sky's light is spread over the sky, for inclined ground",
-                 "hay-davies1980"}});
+    std::vector<Key> keys{{"model", {choice(models)}, "clear-sky model", models.front()}};
+    for (std::size_t i = 0; i < sky_parameter_count; ++i) keys.push_back(sky_parameter_key(static_cast<SkyParameter>(i)));
+    keys.push_back({"diffuse",
+                    {choice(method_names("diffuse_sky"))},
+                    "how the sky's light is spread over the sky, for inclined ground",
+                    "hay-davies1980"});
+    keys.push_back({"uncertainty",
+                    {number(0, 1)},
+                    "relative standard uncertainty of the light; default: 0.07, what a turbidity not fitted to measurements is worth"});
+    return map(std::move(keys));
 }
 
 std::vector<Key> one_key_a_quantity(const std::vector<Form>& forms, const std::string& doc) {

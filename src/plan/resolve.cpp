@@ -68,7 +68,7 @@ class Resolver {
         if (!find_grid()) problems_.throw_if_any();
         resolve_surface(plan_, options_, run_, problems_);
         resolve_elevation(plan_, options_, run_, problems_);
-        resolve_sky(plan_, run_, problems_);
+        resolve_sky(plan_, options_, run_, problems_);
         resolve_time(plan_, run_, problems_);
         resolve_weather(plan_, options_, run_, problems_);
         problems_.throw_if_any();
@@ -184,6 +184,9 @@ std::vector<std::pair<RasterName, Place>> read_rasters(const Plan& plan) {
     if (plan.terrain.elevation)
         if (const auto* elevation = std::get_if<std::vector<PlanRaster>>(&**plan.terrain.elevation))
             for (const auto& raster : *elevation) rasters.emplace_back(raster_of(raster), plan.terrain.elevation->place);
+    for (const auto& given : plan.sky.parameters)
+        if (given)
+            if (const auto* raster = std::get_if<PlanRaster>(&**given)) rasters.emplace_back(raster_of(*raster), given->place);
     if (plan.terrain.slope_from)
         if (const auto* path = std::get_if<PlanPath>(&**plan.terrain.slope_from))
             rasters.emplace_back(RasterName{path->file, 1, {}}, plan.terrain.slope_from->place);

@@ -61,6 +61,7 @@ std::map<std::string, std::string> file_metadata(const Layer& layer, const Run& 
         if (layer.quantity == Quantity::radiation)
             items["per_area"] = run.terrain ? "square metre of the inclined surface"
                                             : "square metre of horizontal ground: the ground is taken as level and open";
+        items["light_uncertainty"] = fmt::format("{:g} of the value, standard, the same at all times", run.light_uncertainty);
         if (!run.times->instant) items["time_step"] = fmt::format("{} s", run.times->step_s);
     }
     return items;

@@ -3,6 +3,7 @@
 #include <algorithm>
 #include <array>
 #include <cmath>
+#include <numeric>
 
 #include "resolve_parts.hpp"
 #include "sunbudget/base/text.hpp"
@@ -125,7 +126,91 @@ void resolve_elevation(const Plan& plan, const ResolveOptions& options, Run& run
         run.assumptions.push_back(fmt::format("no surface: the ground in view is taken to reflect {}", albedo_where_unknown));
 }
 
-void resolve_sky(const Plan& plan, Run& run, RunProblems& problems) {
+namespace {
+
+/// Says what a number of the sky's is worth; false where it is refused.
+bool judge_number(const Parameter& parameter, double value, const Place& place, Run& run, RunProblems& problems) {
+    const auto verdict = judge(parameter, value);
+    if (verdict == Verdict::refused)
+        problems.add(Cause::usage, place, fmt::format("{} {}, expected a number {}", parameter.name, value, parameter.allowed.text()),
+                     parameter.text);
+    if (verdict == Verdict::unusual)
+        run.warnings.push_back(fmt::format("sky.{}: {} is outside the usual {}", parameter.name, value, parameter.usual.text()));
+    return verdict == Verdict::fine;
+}
+
+std::vector<Source> open_months(const PlanRaster& raster, const ResolveOptions& options, const Run& run) {
+    SourceSpec spec;
+    spec.name = raster_of(raster);
+    spec.limits = limits_of(options);
+    const int bands = raster.band.empty() ? inspect(spec.name, spec.limits).bands : 1;
+    if (bands != 1 && bands != 12)
+        throw Error(Cause::input, fmt::format("the raster has {} bands, expected one, or twelve for the months", bands),
+                    spec.name.path.string(), "name the band: PATH:N");
+    std::vector<Source> months;
+    for (int band = 1; band <= bands; ++band) {
+        if (bands == 12) spec.name.band = band;
+        months.push_back(Source::open(spec, run.grid));
+    }
+    return months;
+}
+
+/// Values of a source at places spread evenly over the grid.
+std::vector<double> sample(const Source& source, const Grid& grid) {
+    constexpr long side = 16;
+    Reader reader(source);
+    Plane<float> pixel;
+    std::vector<double> values;
+    for (long r = 0; r < side; ++r)
+        for (long c = 0; c < side; ++c) {
+            reader.read({(2 * c + 1) * grid.width / (2 * side), (2 * r + 1) * grid.height / (2 * side), 1, 1}, pixel);
+            if (!std::isnan(pixel.at(0, 0))) values.push_back(static_cast<double>(pixel.at(0, 0)));
+        }
+    return values;
+}
+
+void resolve_sky_raster(SkyParameter id, const Given<PlanSkyNumbers>& given, const Parameter& parameter, const ResolveOptions& options,
+                        Run& run, RunProblems& problems) {
+    problems.attempt(given.place, [&] {
+        SkyRaster raster{id, open_months(std::get<PlanRaster>(*given), options, run), parameter.allowed.low, parameter.allowed.high};
+        for (std::size_t month = 0; month < raster.months.size(); ++month) {
+            const auto values = sample(raster.months[month], run.grid);
+            if (values.empty())
+                throw Error(Cause::input, "no value in any of 256 places spread over the grid", raster.months[month].info().name.path.string(),
+                            "give a raster that covers the grid");
+            // Of many values beyond the range one is enough to say so.
+            const auto odd = std::find_if(values.begin(), values.end(), [&](double v) { return judge(parameter, v) != Verdict::fine; });
+            if (odd != values.end() && !judge_number(parameter, *odd, given.place, run, problems) && judge(parameter, *odd) == Verdict::refused)
+                return;
+            const double mean = std::accumulate(values.begin(), values.end(), 0.0) / static_cast<double>(values.size());
+            if (raster.months.size() == 1)
+                run.sky[id].fill(mean);
+            else
+                run.sky[id][month] = mean;
+        }
+        add_input(run, "sky." + parameter.name, raster.months.front());
+        run.assumptions.push_back(fmt::format("sky.{}: shadows are weighed by the light of its mean, {:.3g}", parameter.name, run.sky[id][0]));
+        run.sky_raster = std::move(raster);
+    });
+}
+
+void resolve_sky_parameter(SkyParameter id, const Plan& plan, const ResolveOptions& options, Run& run, RunProblems& problems) {
+    const auto& given = plan.sky[id];
+    const auto* parameter = method("clear_sky", name_of(run.sky.model)).parameter(name_of(id));
+    if (!given || parameter == nullptr) return;
+    if (std::holds_alternative<PlanRaster>(**given)) return resolve_sky_raster(id, *given, *parameter, options, run, problems);
+    run.sky[id] = std::get<Monthly>(**given);
+    for (const double value : run.sky[id])
+        if (!judge_number(*parameter, value, given->place, run, problems)) break;
+    if (given->place.is_default && needs_sun(plan))
+        run.assumptions.push_back(fmt::format("sky.{} is not given: {}{}", parameter->name, *parameter->default_value,
+                                              parameter->unit == "1" ? "" : " " + parameter->unit));
+}
+
+}  // namespace
+
+void resolve_sky(const Plan& plan, const ResolveOptions& options, Run& run, RunProblems& problems) {
+    if (plan.sky.model) run.sky = Sky(clear_model_named(**plan.sky.model));
     if (plan.sky.diffuse) {
         constexpr std::array models{std::pair{"hay-davies1980", DiffuseModel::hay_davies1980},
                                     std::pair{"liu-jordan1963", DiffuseModel::liu_jordan1963},
@@ -133,21 +218,10 @@ void resolve_sky(const Plan& plan, Run& run, RunProblems& problems) {
         for (const auto& [name, model] : models)
             if (**plan.sky.diffuse == name) run.sky.diffuse = model;
     }
-    if (!plan.sky.turbidity) return;
-    const auto& chosen = method("clear_sky", **plan.sky.model);
-    const auto* parameter = chosen.parameter("turbidity");
-    run.sky[SkyParameter::turbidity] = **plan.sky.turbidity;
-    for (const double value : **plan.sky.turbidity) {
-        const auto verdict = judge(*parameter, value);
-        if (verdict == Verdict::fine) continue;
-        if (verdict == Verdict::unusual) {
-            run.warnings.push_back(fmt::format("sky.turbidity: {} is outside the usual {}", value, parameter->usual.text()));
-            return;
-        }
-        problems.add(Cause::usage, plan.sky.turbidity->place,
-                     fmt::format("turbidity {}, expected a number {}", value, parameter->allowed.text()), parameter->text);
-        return;
-    }
+    for (std::size_t i = 0; i < sky_parameter_count; ++i) resolve_sky_parameter(static_cast<SkyParameter>(i), plan, options, run, problems);
+    if (plan.sky.uncertainty) run.light_uncertainty = **plan.sky.uncertainty;
+    if (waits_for_ground(run.sky) && !run.has_surface() && !run.terrain && needs_sun(plan))
+        run.assumptions.push_back(fmt::format("no surface: the ground that lights the sky is taken to reflect {}", albedo_where_unknown));
 }
 
 void resolve_time(const Plan& plan, Run& run, RunProblems& problems) {

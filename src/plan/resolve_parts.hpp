@@ -44,7 +44,7 @@ void add_input(Run& run, const std::string& role, const Source& source);
 void resolve_reflectance(const PlanReflectance& image, const ResolveOptions& options, Run& run, RunProblems& problems);
 void resolve_surface(const Plan& plan, const ResolveOptions& options, Run& run, RunProblems& problems);
 void resolve_elevation(const Plan& plan, const ResolveOptions& options, Run& run, RunProblems& problems);
-void resolve_sky(const Plan& plan, Run& run, RunProblems& problems);
+void resolve_sky(const Plan& plan, const ResolveOptions& options, Run& run, RunProblems& problems);
 void resolve_time(const Plan& plan, Run& run, RunProblems& problems);
 /// After the time, which a typical year is laid over.
 void resolve_weather(const Plan& plan, const ResolveOptions& options, Run& run, RunProblems& problems);

@@ -4,6 +4,7 @@
 #include "fill.hpp"
 #include "reflectance.hpp"
 #include "sunbudget/base/text.hpp"
+#include "sunbudget/tables/methods.hpp"
 #include "sunbudget/tables/sensors.hpp"
 
 namespace sunbudget {
@@ -25,6 +26,7 @@ class CrossCheck {
         unit();
         directions();
         zones();
+        sky();
         if (plan_.weather) weather(*plan_.weather);
         if (plan_.surface.reflectance) reflectance(*plan_.surface.reflectance);
     }
@@ -60,6 +62,7 @@ class CrossCheck {
     void unit() const;
     void directions() const;
     void zones() const;
+    void sky() const;
     void weather(const PlanWeather& weather) const;
     void reflectance(const PlanReflectance& image) const;
     void reflectance_weights(const PlanReflectance& image) const;
@@ -192,6 +195,22 @@ void CrossCheck::zones() const {
             mistakes_.add(id.place, "the run does not write " + name, "add it to outputs.layers, or leave it out here");
         if (*id == LayerId::aspect || *id == LayerId::quality)
             mistakes_.add(id.place, "a mean of " + name + " has no meaning", "leave it out here");
+    }
+}
+
+void CrossCheck::sky() const {
+    const auto* node = root_.find("sky");
+    if (node == nullptr || (node->find("model") != nullptr && !plan_.sky.model)) return;
+    const auto model = plan_.sky.model ? clear_model_named(**plan_.sky.model) : ClearModel::esra2000;
+    for (std::size_t i = 0; i < sky_parameter_count; ++i) {
+        const auto parameter = static_cast<SkyParameter>(i);
+        const auto* key = node->find(name_of(parameter));
+        if (key == nullptr || has(model, parameter)) continue;
+        std::vector<std::string> own;
+        for (const auto& one : method("clear_sky", name_of(model)).parameters) own.push_back(one.name);
+        mistakes_.add(key->place, std::string(name_of(model)) + " has no " + std::string(name_of(parameter)),
+                      own.empty() ? "it takes no parameters: leave it out, or choose another model"
+                                  : "its parameters are " + joined(own, ", "));
     }
 }
 

@@ -134,6 +134,9 @@ Found text_mismatch(const Node& node, const Form& form) {
     if (has_control(*text)) return other(node, form, "keep it in one line, without tabs");
     if (form.kind == ValueKind::raster && !read_raster(node))
         return other(node, form, "bands count from 1: PATH:1");
+    // Else a slip in a number would be reported as a missing file.
+    if (form.beside_names && node.text.find_first_of("./") == std::string::npos)
+        return other(node, form, "a file without a dot in its name is written ./NAME");
     return std::nullopt;
 }
 
@@ -145,11 +148,7 @@ Found choice_mismatch(const Node& node, const Form& form) {
 }
 
 Found path_mismatch(const Node& node, const Form& form) {
-    if (auto found = text_mismatch(node, form)) return found;
-    // Else a slip in a name would be reported as a missing file.
-    if (form.beside_names && node.text.find_first_of("./") == std::string::npos)
-        return other(node, form, "a file without a dot in its name is written ./NAME");
-    return std::nullopt;
+    return text_mismatch(node, form);
 }
 
 Found date_mismatch(const Node& node, const Form& form) {

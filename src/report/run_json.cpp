@@ -27,10 +27,15 @@ Json grid_json(const Grid& grid) {
     return json;
 }
 
-Json sky_json(const Sky& sky) {
-    Json json{{"model", name_of(sky.model)}};
+Json sky_json(const Run& run) {
+    const auto& sky = run.sky;
+    Json json{{"model", name_of(sky.model)}, {"uncertainty", run.light_uncertainty}};
+    if (run.sky_raster) json["raster"] = name_of(run.sky_raster->parameter);
     for (std::size_t i = 0; i < sky_parameter_count; ++i)
-        if (!std::isnan(sky.parameters[i][0])) json[std::string(name_of(static_cast<SkyParameter>(i)))] = sky.parameters[i];
+        if (const auto& months = sky.parameters[i]; !std::isnan(months[0])) {
+            const bool same = std::all_of(months.begin(), months.end(), [&](double month) { return month == months[0]; });
+            json[std::string(name_of(static_cast<SkyParameter>(i)))] = same ? Json(months[0]) : Json(months);
+        }
     return json;
 }
 
@@ -213,7 +218,7 @@ std::string run_json(const Run& run, const Execution& execution) {
     json["grid"] = grid_json(run.grid);
     if (run.times) {
         json["time"] = time_json(*run.times);
-        json["sky"] = sky_json(run.sky);
+        json["sky"] = sky_json(run);
     }
     json["inputs"] = inputs_json(run);
     if (const auto* image = std::get_if<ReflectanceSurface>(&run.surface)) {

@@ -32,6 +32,7 @@ const std::vector<QualityRow>& table() {
         flag(out_of_range, "out_of_range", "the albedo found was outside 0 to 1"),
         flag(no_elevation, "no_elevation", "no elevation here: layers on terrain are nodata"),
         flag(outside_projection, "outside_projection", "the pixel has no place on the ground"),
+        flag(no_sky, "no_sky", "the raster of the sky has no usable value here: light is nodata"),
     };
     return rows;
 }

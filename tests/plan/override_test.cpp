@@ -12,16 +12,16 @@ TEST_CASE("an override replaces a value, or makes the key", "[plan][vector]") {
                 {"surface.albedo.value=0.35", "sky.turbidity=4", "outputs.layers=[albedo, quality]",
                  "grid={crs: EPSG:3035, bounds: [0, 0, 10, 10], cell: 1}"});
     CHECK(**plan.surface.albedo->value == 0.35);
-    CHECK((**plan.sky.turbidity)[0] == 4);
+    CHECK(turbidity_of(plan)[0] == 4);
     CHECK(plan.outputs.layers.size() == 2);
     CHECK(**plan.grid.crs == "EPSG:3035");
-    CHECK(plan.sky.turbidity->place.text() == "--set sky.turbidity");
+    CHECK(plan.sky[SkyParameter::turbidity]->place.text() == "--set sky.turbidity");
     CHECK(plan.outputs.layers[1].place.text() == "--set outputs.layers[2]");
     CHECK(plan.grid.cell->place.text() == "--set grid.cell");
 }
 
 TEST_CASE("the last override of a key wins", "[plan][vector]") {
-    CHECK((**plan_of(small_plan, {"sky.turbidity=4", "sky.turbidity=5"}).sky.turbidity)[0] == 5);
+    CHECK(turbidity_of(plan_of(small_plan, {"sky.turbidity=4", "sky.turbidity=5"}))[0] == 5);
 }
 
 TEST_CASE("a value on the command line stands for itself unless it is a list, a map or in quotes",

@@ -15,6 +15,11 @@ namespace sunbudget::test {
 /// The plan of that text, in a file plan.yaml of the folder /plans.
 [[nodiscard]] Plan plan_of(const std::string& text, const std::vector<Override>& overrides = {});
 
+/// The plan's numbers of the sky's turbidity, by month.
+[[nodiscard]] inline Monthly turbidity_of(const Plan& plan) {
+    return std::get<Monthly>(**plan.sky[SkyParameter::turbidity]);
+}
+
 /// A good plan of four lines, without time; tests add to it.
 inline const std::string small_plan =
     "sunbudget: 1\n"

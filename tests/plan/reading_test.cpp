@@ -81,7 +81,7 @@ TEST_CASE("every member of a plan has the value of its key", "[plan][vector]") {
     CHECK(**plan.surface.cover->default_class == 50);
     CHECK(std::get<std::vector<PlanRaster>>(**plan.terrain.elevation).front().band == "height");
     CHECK(**plan.sky.model == "esra2000");
-    CHECK((**plan.sky.turbidity)[5] == 3.7);
+    CHECK(turbidity_of(plan)[5] == 3.7);
     CHECK(**plan.time.from == CivilDate{2024, 2, 29});
     CHECK(**plan.time.to == CivilDate{2025, 2, 28});
     CHECK(**plan.time.step_s == 3600);
@@ -104,7 +104,7 @@ TEST_CASE("numbers are decimal, whatever an older YAML would make of them", "[pl
     CHECK(**plan.surface.cover->default_class == 10);
     CHECK(**plan.grid.bounds == std::array{-1000.0, -0.5, 2500.0, 1.0});
     CHECK(**plan.grid.cell == 0.5);
-    CHECK((**plan.sky.turbidity)[11] == 3);
+    CHECK(turbidity_of(plan)[11] == 3);
     const auto words = read_plan(testdata("plans/good/odd_names.yaml"));
     CHECK(**words.title == "no");
     CHECK(std::get<std::vector<PlanRaster>>(**words.terrain.elevation).front().path.given == "y");
@@ -155,7 +155,7 @@ TEST_CASE("every value knows its file, line and key", "[plan][property]") {
 TEST_CASE("defaults fill in what applies and nothing else", "[plan][property]") {
     const auto plan = with_defaults(plan_of(small_plan));
     CHECK(**plan.sky.model == "esra2000");
-    CHECK((**plan.sky.turbidity)[0] == 3);
+    CHECK(turbidity_of(plan)[0] == 3);
     CHECK(**plan.outputs.unit == OutputUnit::w_m2);
     CHECK(**plan.outputs.format == FileFormat::cog);
     CHECK(plan.outputs.directory->value.file == "/plans/out");

@@ -124,7 +124,9 @@ struct Run {
     std::variant<std::monostate, CoverSurface, GivenSurface, ReflectanceSurface> surface;
     std::optional<Terrain> terrain;  ///< without it the ground is level and open
     double constant_height_m = 0;    ///< then
-    Sky sky;
+    Sky sky;  ///< with the means of what comes from a raster
+    std::optional<SkyRaster> sky_raster;
+    double light_uncertainty = 0.07;  ///< relative standard uncertainty, the same at all times
     std::shared_ptr<const RunWeather> weather;  ///< nothing without a table
     std::optional<TimePlan> times;
     OutputUnit unit = OutputUnit::w_m2;

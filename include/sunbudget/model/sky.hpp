@@ -14,11 +14,20 @@ namespace sunbudget {
 enum class DiffuseModel { liu_jordan1963, hay_davies1980, perez1990 };
 
 /// In the order of their rows among the methods, family "clear_sky".
-enum class ClearModel { esra2000 };
+enum class ClearModel { esra2000, bird_hulstrom1981, ineichen_perez2002, asce2005, fao56 };
 
 /// The numbers that clear-sky models ask for; which of them a model has, its row among the methods says.
-enum class SkyParameter { turbidity };
-inline constexpr std::size_t sky_parameter_count = 1;
+enum class SkyParameter {
+    turbidity,
+    ozone,
+    water,
+    aerosol380,
+    aerosol500,
+    ground_albedo,
+    vapour_pressure,
+    turbidity_coefficient,
+};
+inline constexpr std::size_t sky_parameter_count = 8;
 
 /// January first.
 using MonthlyNumbers = std::array<double, 12>;
@@ -26,7 +35,8 @@ using MonthlyNumbers = std::array<double, 12>;
 /// The sky of a run: how its light comes about, and with what numbers.
 struct Sky {
     ClearModel model;
-    std::array<MonthlyNumbers, sky_parameter_count> parameters;  ///< NaN where the model has none
+    /// NaN where the model has none, and for a ground albedo that the run's own takes the place of.
+    std::array<MonthlyNumbers, sky_parameter_count> parameters;
     DiffuseModel diffuse = DiffuseModel::hay_davies1980;
 
     /// The model with the defaults of its row.
@@ -40,9 +50,19 @@ struct Sky {
     }
 };
 
+/// Whether light to and fro between ground and sky waits for the albedo around each pixel: the model has
+/// that term and no number was given for it.
+[[nodiscard]] bool waits_for_ground(const Sky& sky);
+
 /// As plans and rows write them.
 [[nodiscard]] std::string_view name_of(ClearModel model);
 [[nodiscard]] std::string_view name_of(SkyParameter parameter);
+/// Whether the model's row has the parameter.
+[[nodiscard]] bool has(ClearModel model, SkyParameter parameter);
+/// Whether the parameter may vary from pixel to pixel: light bends gently with it.
+[[nodiscard]] bool may_be_raster(SkyParameter parameter);
+/// Throws Error(usage) with a suggestion for a name that is none.
+[[nodiscard]] ClearModel clear_model_named(std::string_view name);
 
 /// When and where the sky is looked at.
 struct SkyInstant {
@@ -57,8 +77,11 @@ struct SkyInstant {
 /// Light of one moment at one place, in the parts that terrain treats differently.
 struct SkyMoment {
     double beam_normal_w_m2 = 0;
-    double diffuse_w_m2 = 0;  ///< on the horizontal, all of it
+    double diffuse_w_m2 = 0;  ///< on the horizontal, all of it but what waits for the ground
     SkyParts parts;
+    /// Where waits_for_ground(): global over black ground times the sky's albedo, and times its square.
+    double thrown_back_w_m2 = 0;
+    double thrown_back_twice_w_m2 = 0;
 };
 
 /// The only place where a sky becomes light: everything else asks here.

@@ -49,4 +49,15 @@ void light_from_ground(std::span<const float> sky_view, std::span<const float> a
 /// Share of the sunlit time in the sun times the open ground's own: hours / whole_hours * open.
 void time_in_sun(std::span<const float> hours, float whole_hours, std::span<const float> open, std::span<float> out) noexcept;
 
+/// Adds the light that goes to and fro between ground and sky to the sky's light on level ground.
+///
+/// in      `once` global over black ground times the sky's albedo, `twice` the same times its square; as
+///         means over a period their ratio is the sky's albedo weighted by the light, which leaves the
+///         sum a + a s + a s^2 ... right to its third term
+/// shape   rows of equal length
+/// nodata  NaN in the albedo or the light gives NaN
+/// source  geometric series of diffuse reflections, as in Bird & Hulstrom 1981
+void add_ground_and_sky(std::span<const float> ground_albedo, std::span<const float> once,
+                        std::span<const float> twice, std::span<float> diffuse_w_m2) noexcept;
+
 }  // namespace sunbudget

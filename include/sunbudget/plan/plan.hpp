@@ -8,6 +8,7 @@
 #include <vector>
 
 #include "sunbudget/base/time.hpp"
+#include "sunbudget/model/sky.hpp"
 #include "sunbudget/model/time_plan.hpp"
 #include "sunbudget/model/weather_record.hpp"
 #include "sunbudget/plan/place.hpp"
@@ -166,10 +167,18 @@ struct PlanTerrain {
     friend bool operator==(const PlanTerrain&, const PlanTerrain&) = default;
 };
 
+/// A number or twelve; or a raster: one band for all months, or twelve.
+using PlanSkyNumbers = std::variant<Monthly, PlanRaster>;
+
 struct PlanSky {
     Maybe<std::string> model;
-    Maybe<Monthly> turbidity;
+    std::array<Maybe<PlanSkyNumbers>, sky_parameter_count> parameters;  ///< in the order of SkyParameter
     Maybe<std::string> diffuse;
+    Maybe<double> uncertainty;  ///< relative, of the light
+
+    [[nodiscard]] const Maybe<PlanSkyNumbers>& operator[](SkyParameter parameter) const {
+        return parameters[static_cast<std::size_t>(parameter)];
+    }
     friend bool operator==(const PlanSky&, const PlanSky&) = default;
 };
 

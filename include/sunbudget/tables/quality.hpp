@@ -28,6 +28,7 @@ inline constexpr std::uint16_t high_aerosol = 1u << 9;
 inline constexpr std::uint16_t out_of_range = 1u << 10;
 inline constexpr std::uint16_t no_elevation = 1u << 11;
 inline constexpr std::uint16_t outside_projection = 1u << 12;
+inline constexpr std::uint16_t no_sky = 1u << 13;
 }  // namespace quality
 
 /// One meaning: it holds where (pixel & mask) == value.
