@@ -32,17 +32,17 @@ void check_folder(const fs::path& folder) {
     CAPTURE(sums.out, sums.err);
     CHECK(sums.exit_code == 0);
     check_run_json(folder / "run.json");
-    for (const auto& name : names_in(folder)) {
-        if (!name.ends_with(".tif")) continue;
-        const auto verdict =
-            shell("/usr/bin/python3 -m osgeo_utils.samples.validate_cloud_optimized_geotiff " +
-                  word(folder / name) + " 2>&1");
-        CAPTURE(name, verdict.out);
-        CHECK(verdict.exit_code == 0);
-        CHECK_THAT(verdict.out, Contains("is a valid cloud optimized GeoTIFF") &&
-                                    !Contains("warning", Catch::CaseSensitive::No));
-        CHECK(shell("gdalinfo " + word(folder / name) + " 2>&1 >/dev/null").out.empty());
-    }
+    // The public validator's warnings and errors, and GDAL's own complaints, of all files at one start.
+    const auto verdict = shell("cd " + word(folder) +
+                               " && /usr/bin/python3 -c 'import glob\n"
+                               "from osgeo import gdal\n"
+                               "from osgeo_utils.samples.validate_cloud_optimized_geotiff import validate\n"
+                               "for f in sorted(glob.glob(\"*.tif\")): gdal.ErrorReset(); w, e, _ = validate(f); "
+                               "gdal.Info(f); print(f, w, e, gdal.GetLastErrorMsg() or \"silent\")' 2>&1");
+    std::string expected;
+    for (const auto& name : names_in(folder))
+        if (name.ends_with(".tif")) expected += name + " [] [] silent\n";
+    CHECK(verdict.out == expected);
 }
 }  // namespace
 
@@ -66,8 +66,13 @@ TEST_CASE("pipelines: every plan is checked and runs, and its folder is whole an
         CAPTURE(checked.err);
         CHECK(checked.exit_code == 0);
         CHECK_THAT(checked.out, Contains("Layers\n") && Contains("Estimate"));
-        const auto ran =
-            sunbudget::test::sunbudget({"run", (folder.path() / name).string(), "--out", out});
+        // The middle of the town in a few directions: the same code in a twentieth of the time. A plan with a grid of
+        // its own is coarse.
+        std::vector<std::string> words{"run", (folder.path() / name).string(), "--out", out};
+        const auto text = content(pipelines / name);
+        if (text.find("elevation:") != std::string::npos) words.insert(words.end(), {"--set", "terrain.directions=16"});
+        if (text.find("\ngrid:") == std::string::npos) words.insert(words.end(), {"--set", "grid.bounds=[448900, 5304000, 450100, 5305200]"});
+        const auto ran = sunbudget::test::sunbudget(words);
         CAPTURE(ran.err);
         REQUIRE(ran.exit_code == 0);
         check_folder(out);

@@ -60,7 +60,7 @@ nlohmann::json statistics(const fs::path& folder) {
 TEST_CASE("run: the same bits for any threads and memory, the same pixels for any tile",
           "[cli][differential]") {
     const Desk desk;
-    make_inputs(desk, "30", "2025-12-31");
+    make_inputs(desk, "40", "2025-12-31");
     std::vector<std::vector<double>> expected;
     nlohmann::json numbers;
     for (const int tile : {128, 256, 512}) {
@@ -82,7 +82,7 @@ TEST_CASE("run: the same bits for any threads and memory, the same pixels for an
         for (const auto* name : {"b", "c"}) fs::remove_all(desk.path(name));
     }
     // The test would prove little on empty rasters.
-    CHECK(expected[1].size() == 12U * 900 * 700);
+    CHECK(expected[1].size() == 12U * 675 * 525);
     CHECK(mean_of(expected[1]) > 50);
 }
 
