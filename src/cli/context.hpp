@@ -33,6 +33,7 @@ void prepare(const Common& common);
 // One function a command: declares it under `app`; the callback does the work and throws Error.
 void add_run(CLI::App& app);
 void add_check(CLI::App& app);
+void add_explain(CLI::App& app);
 void add_one_line_jobs(CLI::App& app);
 void add_sun(CLI::App& app);
 void add_tables(CLI::App& app);

@@ -39,6 +39,7 @@ int main(int argc, char** argv) {
                "5 partial; 75 try again; 130, 143 stopped by a signal; 1 anything else.");
     add_run(app);
     add_check(app);
+    add_explain(app);
     add_one_line_jobs(app);
     add_sun(app);
     add_zones(app);

@@ -3,13 +3,11 @@
 #include <algorithm>
 #include <chrono>
 #include <cmath>
-#include <cstdlib>
-#include <filesystem>
 #include <limits>
 #include <numeric>
 #include <optional>
 
-#include "sunbudget/base/error.hpp"
+#include "scratch_folder.hpp"
 #include "sunbudget/base/parallel.hpp"
 #include "sunbudget/model/flow.hpp"
 #include "sunbudget/model/surface.hpp"
@@ -95,21 +93,6 @@ class CountingSink : public Sink {
             }
     }
     const Run& run_;
-};
-
-/// A folder for the coarse levels of the elevation, gone with the object.
-struct ScratchFolder {
-    std::filesystem::path path;
-    ScratchFolder() {
-        std::string pattern = (std::filesystem::temp_directory_path() / "sunbudget-XXXXXX").string();
-        if (mkdtemp(pattern.data()) == nullptr)
-            throw Error(Cause::output, "cannot make a folder for scratch files", pattern, "point TMPDIR to a place with room");
-        path = pattern;
-    }
-    ~ScratchFolder() {
-        std::error_code ignored;
-        std::filesystem::remove_all(path, ignored);
-    }
 };
 
 /// The side of the windows a run works through.

@@ -8,6 +8,7 @@
 
 #include "sunbudget/base/parallel.hpp"
 #include "sunbudget/model/neighbourhood.hpp"
+#include "sunbudget/model/probe.hpp"
 #include "sunbudget/model/shading.hpp"
 #include "sunbudget/model/surface.hpp"
 #include "sunbudget/physics/gradient.hpp"
@@ -105,6 +106,7 @@ struct Flow::State {
     std::vector<BandPlanes> bands;
     std::array<Plane<float>, OpenLight::values> open;
     std::map<std::uint16_t, std::uint64_t> flag_counts;
+    Probe* probe = nullptr;
 
     State(const Run& r, const SharedLight& s, int t) : run(r), shared(s), thread(t), needs(r), surface(r) {
         if (!run.terrain) return;
@@ -130,6 +132,13 @@ struct Flow::State {
     void see_albedo();
     void put_surface_layers(Sink& sink);
     void put_light_layers(std::size_t band, const BandPlanes& planes, Sink& sink);
+    template <class Value>
+    void note(const Plane<Value>& plane, const Window& frame, std::optional<std::size_t> band, const char* name, const char* unit,
+              const char* text) const;
+    void note_surface() const;
+    void note_open(const Window& block, std::size_t band) const;
+    void note_shaded(const ShadedBlock& part, std::size_t band) const;
+    void note_band(std::size_t band, const BandPlanes& planes) const;
     void put_plane(std::size_t n, std::size_t band, const std::function<void(int, std::span<float>)>& row, Sink& sink);
 };
 
@@ -234,8 +243,12 @@ void Flow::State::terrain_bands(std::size_t first, std::size_t count) {
         }
         for (std::size_t band = 0; band < count && shared.field() != nullptr; ++band) {
             fill_open(b, first + band);
+            note_open(blocks[b], first + band);
             for (const auto& part : parts)
-                if (part.located) compose(part, band);
+                if (part.located) {
+                    compose(part, band);
+                    note_shaded(part, band);
+                }
         }
     }
 }
@@ -317,6 +330,67 @@ void Flow::State::see_albedo() {
     }
 }
 
+/// Tells the probe its pixel's value of a plane over `frame`; planes that were not asked for say nothing.
+template <class Value>
+void Flow::State::note(const Plane<Value>& plane, const Window& frame, std::optional<std::size_t> band, const char* name,
+                       const char* unit, const char* text) const {
+    if (probe == nullptr || plane.empty() || !probe->inside(frame)) return;
+    probe->note({band, name, unit, text, static_cast<double>(probe->of(plane, frame))});
+}
+
+/// Once the flags are whole.
+void Flow::State::note_surface() const {
+    note(flags, window, {}, "quality", "1", "flags: where the albedo came from and what was seen");
+    if (run.has_surface()) note(albedo, window, {}, "albedo", "1", "albedo before rounding");
+    if (!run.terrain) return;
+    note(heights_m, window, {}, "height", "m", "height of the ground");
+    note(slope_deg, window, {}, "slope", "degree", "steepness");
+    note(aspect_deg, window, {}, "aspect", "degree", "direction faced, clockwise from true north");
+    if (needs.sky_view) note(sky_view, window, {}, "sky_view", "1", "share of an even sky's light past the terrain");
+    note(albedo_seen, window, {}, "albedo_seen", "1", "mean albedo of the ground around");
+}
+
+void Flow::State::note_open(const Window& block, std::size_t band) const {
+    if (probe == nullptr || !probe->inside(block)) return;
+    constexpr std::array<std::array<const char*, 3>, 9> parts{{
+        {"open_beam_east", "W/m2", "open ground: sum of the beam's vector, east"},
+        {"open_beam_north", "W/m2", "the same, north"},
+        {"open_beam_up", "W/m2", "the same, up: the beam on level open ground"},
+        {"open_circumsolar_east", "W/m2", "sky light around the sun, as a vector, east"},
+        {"open_circumsolar_north", "W/m2", "the same, north"},
+        {"open_circumsolar_up", "W/m2", "the same, up"},
+        {"open_diffuse", "W/m2", "all sky light on level open ground, what ground and sky send to and fro included"},
+        {"open_horizon", "W/m2", "sky light from the rim of the sky"},
+        {"open_sunlit", "h", "hours with the sun up, for each 24 h"},
+    }};
+    for (std::size_t i = 0; i < parts.size(); ++i) note(open[i], window, band, parts[i][0], parts[i][1], parts[i][2]);
+}
+
+void Flow::State::note_shaded(const ShadedBlock& part, std::size_t band) const {
+    if (probe == nullptr || !probe->inside(part.block)) return;
+    const auto all = part.first_band + band;
+    if (all == 0) {
+        note(part.east, part.block, {}, "normal_east", "1", "the surface's unit normal, east");
+        note(part.north, part.block, {}, "normal_north", "1", "the same, north");
+        note(part.up, part.block, {}, "normal_up", "1", "the same, up: cosine of the slope");
+    }
+    if (!needs.suns) return;
+    note(part.beam[band], part.block, all, "shaded_beam", "W/m2", "beam past the terrain, at the reference place and height");
+    note(part.around[band], part.block, all, "shaded_circumsolar", "W/m2", "sky light around the sun past the terrain, there");
+    note(part.hours[band], part.block, all, "shaded_sunlit", "h", "hours in the sun, there");
+    const auto& whole = part.whole[band];
+    probe->note({all, "reference_beam_up", "W/m2", "beam on level open ground at the reference place", static_cast<double>(whole.beam[2])});
+    probe->note({all, "reference_sunlit", "h", "hours with the sun up at the reference place", static_cast<double>(whole.hours)});
+}
+
+void Flow::State::note_band(std::size_t band, const BandPlanes& planes) const {
+    note(planes.direct, window, band, "direct", "W/m2", "sunlight straight from the sun, on the surface");
+    note(planes.diffuse, window, band, "diffuse", "W/m2", "sky light on the surface");
+    if (!run.terrain) return;
+    note(planes.reflected, window, band, "reflected", "W/m2", "light from the ground in view");
+    note(planes.hours, window, band, "sunlit", "h", "hours in the sun, for each 24 h");
+}
+
 void Flow::State::put_plane(std::size_t n, std::size_t band, const std::function<void(int, std::span<float>)>& row, Sink& sink) {
     resize(stored, window);
     for (int r = 0; r < window.height; ++r) {
@@ -327,6 +401,7 @@ void Flow::State::put_plane(std::size_t n, std::size_t band, const std::function
 }
 
 void Flow::State::put_surface_layers(Sink& sink) {
+    note_surface();
     const auto copied = [](const Plane<float>& plane) {
         return [&plane](int r, std::span<float> out) { std::copy(plane.row(r).begin(), plane.row(r).end(), out.begin()); };
     };
@@ -341,6 +416,7 @@ void Flow::State::put_surface_layers(Sink& sink) {
 }
 
 void Flow::State::put_light_layers(std::size_t band, const BandPlanes& planes, Sink& sink) {
+    note_band(band, planes);
     Plane<float> from_around = run.terrain ? Plane<float>(window.width, window.height) : Plane<float>();
     for (std::size_t n = 0; n < run.layers.size(); ++n) {
         const auto& layer = run.layers[n];
@@ -399,6 +475,11 @@ void Flow::compute(const Window& window, Sink& sink) {
         }
         for (std::size_t i = 0; i < count; ++i) s.put_light_layers(first + i, s.bands[i], sink);
     }
+}
+
+void Flow::watch(Probe& probe) {
+    state_->probe = &probe;
+    if (state_->shader) state_->shader->watch(probe);
 }
 
 const std::map<std::uint16_t, std::uint64_t>& Flow::flags() const { return state_->flag_counts; }

@@ -5,6 +5,7 @@
 #include <cmath>
 #include <numbers>
 
+#include "sunbudget/model/probe.hpp"
 #include "sunbudget/physics/gradient.hpp"
 #include "sunbudget/physics/horizon.hpp"
 #include "sunbudget/physics/sky_view.hpp"
@@ -143,6 +144,7 @@ struct BlockShader::State {
     std::vector<LevelPatch> levels;
     Plane<float> per_column, per_row;  ///< pixel-space slopes of the planes
     Plane<float> rise, before, after, first;
+    Probe* probe = nullptr;
 
     State(SharedTerrain& s, const LightField* l, const Locator& where, int t)
         : shared(s), light(l), locator(where), thread(t), elevation(s.terrain().elevation) {
@@ -204,6 +206,8 @@ void BlockShader::State::cast(const Frame& frame, double azimuth_rad, const Wind
         tangents(patch.height_m.row(r + near_steps).subspan(near_steps, static_cast<std::size_t>(block.width)), rise.row(r),
                  scale, tangent.row(r));
     }
+    if (probe != nullptr && probe->inside(block))
+        probe->note_horizon({azimuth_rad, static_cast<double>(probe->of(tangent, block))});
 }
 
 void BlockShader::State::cast_all_round(const Frame& frame, const SunSectors* sectors, bool sky_view, ShadedBlock& out) {
@@ -285,6 +289,8 @@ void BlockShader::shade(const Window& block, std::size_t first_band, std::size_t
 }
 
 void BlockShader::heights(const Window& window, Plane<float>& heights_m) { state_->elevation.read(window, heights_m); }
+
+void BlockShader::watch(Probe& probe) { state_->probe = &probe; }
 
 std::uint64_t BlockShader::infinities() const {
     return state_->elevation.infinities() + (state_->slopes ? state_->slopes->infinities() : 0);

@@ -197,7 +197,7 @@ void add_input(Run& run, const std::string& role, const Source& source) {
     const auto& path = source.info().name.path;
     auto name = path.filename().string();
     if (source.info().bands > 1) name += fmt::format(" band {}", source.info().name.band);
-    run.inputs.push_back({role, std::move(name), input_digest(path), source.description(), source.coverage()});
+    run.inputs.push_back({role, std::move(name), input_digest(path), source.description(), source.coverage(), std::make_shared<const Source>(source)});
     for (const auto& warning : source.warnings()) run.warnings.push_back(role + ": " + warning);
     if (source.coverage() < 0.999)
         run.warnings.push_back(fmt::format("{}: {} covers {:.1f} % of the grid; the rest has no value", role,

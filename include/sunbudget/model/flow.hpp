@@ -22,6 +22,7 @@ class Sink {
     virtual void put(std::size_t layer, std::size_t band, const Window& window, const Plane<std::uint16_t>& plane) = 0;
 };
 
+class Probe;
 class SharedTerrain;
 
 /// What all threads of a run share: tables of light and terrain, made as they are needed.
@@ -49,6 +50,9 @@ class Flow {
 
     /// Computes every layer and band of a window that lies on the lattice of blocks.
     void compute(const Window& window, Sink& sink);
+
+    /// From now on tells the probe what becomes of its pixel, where a window holds it; it must outlive the flow.
+    void watch(Probe& probe);
 
     /// Pixels so far by the value of `quality`, whether or not that layer is wanted.
     [[nodiscard]] const std::map<std::uint16_t, std::uint64_t>& flags() const;

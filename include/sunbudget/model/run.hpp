@@ -86,6 +86,7 @@ struct InputFile {
     std::string digest;
     std::vector<std::string> notes;  ///< grid, alignment, scale, nodata: one line each
     double coverage = 1;             ///< share of the grid's pixels it covers
+    std::shared_ptr<const Source> source{};  ///< nothing for what is no raster
 };
 
 /// A class of the cover raster that the run uses.

@@ -15,6 +15,8 @@
 
 namespace sunbudget {
 
+class Probe;
+
 /// Shared by the threads of a run with terrain: coarse levels, and the suns of a region of several
 /// blocks, sorted once.
 class SharedTerrain {
@@ -82,6 +84,8 @@ class BlockShader {
 
     /// Heights of a window as the run has them; NaN where there is no ground.
     void heights(const Window& window, Plane<float>& heights_m);
+    /// From now on tells the probe the horizons of its pixel; it must outlive the shader.
+    void watch(Probe& probe);
     [[nodiscard]] std::uint64_t infinities() const;
 
   private:
