@@ -1,10 +1,13 @@
 #include <fmt/format.h>
 
+#include <algorithm>
+#include <array>
 #include <cmath>
 #include <memory>
 #include <nlohmann/json.hpp>
 
 #include "context.hpp"
+#include "sun_plot.hpp"
 #include "sunbudget/base/text.hpp"
 #include "sunbudget/base/units.hpp"
 #include "sunbudget/model/sun_table.hpp"
@@ -19,8 +22,10 @@ using Json = nlohmann::ordered_json;
 enum class Format { text, csv, json };
 
 struct Flags {
-    std::string at, time, from, to, step, zone = "UTC", height, turbidity;
-    bool csv = false, json = false;
+    std::string at, time, from, to, step, zone = "UTC", height, model = "esra2000", diffuse = "hay-davies1980";
+    std::string slope, azimuth, albedo;
+    std::array<std::string, sky_parameter_count> sky;
+    bool csv = false, json = false, plot = false;
 
     [[nodiscard]] Format format() const { return csv ? Format::csv : json ? Format::json : Format::text; }
 };
@@ -42,16 +47,46 @@ auto from_flag(const char* flag, const Read& read) {
     }
 }
 
-double turbidity_of(const Flags& flags, Terminal& terminal) {
-    const auto* parameter = method("clear_sky", "esra2000").parameter("turbidity");
-    if (flags.turbidity.empty()) return *parameter->default_value;
-    const double turbidity = number(flags.turbidity, "--turbidity", -1e9, 1e9);
-    const auto verdict = judge(*parameter, turbidity);
-    if (verdict == Verdict::refused)
-        throw Error(Cause::usage, "turbidity " + shortest(turbidity) + ", expected a number " + parameter->allowed.text(), "--turbidity");
-    if (verdict == Verdict::unusual)
-        terminal.warning("--turbidity: " + shortest(turbidity) + " is outside the usual " + parameter->usual.text());
-    return turbidity;
+/// "turbidity_coefficient" as a flag: "--turbidity-coefficient".
+std::string flag_of(SkyParameter parameter) {
+    auto name = std::string(name_of(parameter));
+    std::replace(name.begin(), name.end(), '_', '-');
+    return "--" + name;
+}
+
+/// A number for every month, or twelve with commas between.
+MonthlyNumbers months_of(const std::string& text, const Parameter& parameter, const std::string& flag, Terminal& terminal) {
+    const auto parts = split(text, ',');
+    if (parts.size() != 1 && parts.size() != 12)
+        throw Error(Cause::usage, "\"" + text + "\" is neither one number nor twelve", flag, "write 3, or twelve with commas between");
+    MonthlyNumbers months{};
+    for (std::size_t i = 0; i < 12; ++i) months[i] = number(parts[parts.size() == 1 ? 0 : i], flag.c_str(), -1e9, 1e9);
+    for (const double value : months) {
+        const auto verdict = judge(parameter, value);
+        if (verdict == Verdict::refused)
+            throw Error(Cause::usage, parameter.name + " " + shortest(value) + ", expected a number " + parameter.allowed.text(), flag);
+        if (verdict == Verdict::fine) continue;
+        terminal.warning(flag + ": " + shortest(value) + " is outside the usual " + parameter.usual.text());
+        break;
+    }
+    return months;
+}
+
+Sky sky_of(const Flags& flags, double ground_albedo, Terminal& terminal) {
+    Sky sky(from_flag("--model", [&] { return clear_model_named(flags.model); }));
+    if (waits_for_ground(sky)) sky[SkyParameter::ground_albedo].fill(ground_albedo);
+    for (std::size_t i = 0; i < sky_parameter_count; ++i) {
+        const auto id = static_cast<SkyParameter>(i);
+        const auto& text = flags.sky[i];
+        if (text.empty()) continue;
+        const auto* parameter = method("clear_sky", flags.model).parameter(name_of(id));
+        if (parameter == nullptr)
+            throw Error(Cause::usage, flags.model + " has no " + std::string(name_of(id)), flag_of(id),
+                        "leave it out, or choose another --model: sunbudget tables methods lists their parameters");
+        sky[id] = months_of(text, *parameter, flag_of(id), terminal);
+    }
+    sky.diffuse = from_flag("--diffuse", [&] { return diffuse_model_named(flags.diffuse); });
+    return sky;
 }
 
 SunPlace place_of(const Flags& flags, Terminal& terminal) {
@@ -62,7 +97,12 @@ SunPlace place_of(const Flags& flags, Terminal& terminal) {
     place.latitude_rad = rad_from_deg(number(parts[0], "--at, latitude", -90, 90));
     place.longitude_rad = rad_from_deg(number(parts[1], "--at, longitude", -180, 180));
     if (!flags.height.empty()) place.height_m = number(flags.height, "--height", -500, 9000);
-    place.sky[SkyParameter::turbidity].fill(turbidity_of(flags, terminal));
+    if (!flags.albedo.empty()) place.ground_albedo = number(flags.albedo, "--albedo", 0, 1);
+    if (!flags.slope.empty()) place.slope_rad = rad_from_deg(number(flags.slope, "--slope", 0, 90));
+    if (flags.azimuth.empty() && place.slope_rad > 0)
+        throw Error(Cause::usage, "a slope without its direction", "--slope", "add --azimuth, downslope and clockwise from north: 180 faces south");
+    if (!flags.azimuth.empty()) place.slope_azimuth_rad = rad_from_deg(number(flags.azimuth, "--azimuth", -360, 360));
+    place.sky = sky_of(flags, place.ground_albedo, terminal);
     return place;
 }
 
@@ -102,6 +142,7 @@ Json json_of(const SunMoment& m) {
     json["beam_w_m2"] = rounded(m.beam_w_m2, 2);
     json["diffuse_w_m2"] = rounded(m.diffuse_w_m2, 2);
     json["global_w_m2"] = rounded(m.global_w_m2, 2);
+    json["on_slope_w_m2"] = rounded(m.on_slope_w_m2, 2);
     return json;
 }
 
@@ -113,12 +154,15 @@ Json json_of(const SunDayRow& d) {
             {"sunrise", time_or_null(d.sunrise)},
             {"transit", time_or_null(d.transit)},
             {"sunset", time_or_null(d.sunset)},
+            {"sunrise_apparent", time_or_null(d.sunrise_apparent)},
+            {"sunset_apparent", time_or_null(d.sunset_apparent)},
             {"day_length_h", rounded(d.day_length_s / 3600, 4)},
             {"transit_elevation_deg", rounded(deg_from_rad(d.transit_elevation_rad), 4)},
             {"extraterrestrial_mj_m2", rounded(d.extraterrestrial_j_m2 / mj, 4)},
             {"direct_mj_m2", rounded(d.direct_j_m2 / mj, 4)},
             {"diffuse_mj_m2", rounded(d.diffuse_j_m2 / mj, 4)},
-            {"global_mj_m2", rounded((d.direct_j_m2 + d.diffuse_j_m2) / mj, 4)}};
+            {"global_mj_m2", rounded((d.direct_j_m2 + d.diffuse_j_m2) / mj, 4)},
+            {"on_slope_mj_m2", rounded(d.on_slope_j_m2 / mj, 4)}};
 }
 
 std::string cell_of(const Json& value) {
@@ -173,6 +217,19 @@ UtcSeconds instant_of(const Flags& flags, const Zone& zone, double longitude_rad
     return zone.kind() == ZoneKind::solar_true && !written.offset_s ? utc_from_true_solar(utc) : utc;
 }
 
+/// The day that --time or --from names.
+std::string plot_of(const Flags& flags, Terminal& terminal) {
+    const auto place = place_of(flags, terminal);
+    const auto zone = from_flag("--zone", [&] { return Zone::parse(flags.zone); });
+    if (!flags.time.empty()) {
+        const auto utc = from_flag("--time", [&] { return instant_of(flags, zone, place.longitude_rad); });
+        return day_plot(place, zone, zone.local(utc, place.longitude_rad).date);
+    }
+    if (flags.from.empty() || !flags.to.empty() || !flags.step.empty())
+        throw Error(Cause::usage, "a plot shows one day", "--plot", "name it with --from DAY alone, or with --time T");
+    return day_plot(place, zone, date_of(flags.from, "--from"));
+}
+
 Json rows_of(const Flags& flags, Terminal& terminal) {
     const auto place = place_of(flags, terminal);
     const auto zone = from_flag("--zone", [&] { return Zone::parse(flags.zone); });
@@ -199,6 +256,29 @@ Json rows_of(const Flags& flags, Terminal& terminal) {
     return rows;
 }
 
+/// The flags of the clear-sky model, made from its row like all else about it.
+void add_sky_flags(CLI::App& command, Flags& flags) {
+    command.add_option("--model", flags.model, "Clear sky: " + joined(method_names("clear_sky"), ", ") + " [esra2000]")->type_name("NAME");
+    for (std::size_t i = 0; i < sky_parameter_count; ++i) {
+        const auto id = static_cast<SkyParameter>(i);
+        if (id == SkyParameter::ground_albedo) continue;  // --albedo
+        std::vector<std::string> models;
+        const Parameter* parameter = nullptr;
+        for (const auto& model : method_names("clear_sky"))
+            if (const auto* found = method("clear_sky", model).parameter(name_of(id))) {
+                parameter = found;
+                models.push_back(model);
+            }
+        command
+            .add_option(flag_of(id), flags.sky[i],
+                        joined(models, ", ") + ": " + parameter->text + " [" + shortest(*parameter->default_value) +
+                            (parameter->unit == "1" ? "]" : " " + parameter->unit + "]"))
+            ->type_name("X");
+    }
+    command.add_option("--diffuse", flags.diffuse, "How the sky's light is spread, for a slope: " + joined(method_names("diffuse_sky"), ", ") + " [hay-davies1980]")
+        ->type_name("NAME");
+}
+
 }  // namespace
 
 void add_sun(CLI::App& app) {
@@ -211,15 +291,23 @@ void add_sun(CLI::App& app) {
     command->add_option("--step", flags->step, "Step of the table: 10 min, 1 h, 1 d [1 d: a row a day with sunrise and totals]")->type_name("STEP")->excludes(time);
     command->add_option("--zone", flags->zone, "UTC, an offset, an IANA name, solar-mean or solar-true [UTC]")->type_name("ZONE");
     command->add_option("--height", flags->height, "Height of the place in metres [0]")->type_name("M");
-    command->add_option("--turbidity", flags->turbidity, "Linke turbidity of the clear sky [3]")->type_name("TL");
+    add_sky_flags(*command, *flags);
+    command->add_option("--slope", flags->slope, "Slope of the ground in degrees, for on_slope [0]")->type_name("DEG");
+    command->add_option("--azimuth", flags->azimuth, "Where the slope faces, downslope, clockwise from north: 180 is south")->type_name("DEG");
+    command->add_option("--albedo", flags->albedo, "Of the ground around: what a slope sees of it, and what lights the sky where the model counts that [0.2]")->type_name("A");
     auto* csv = command->add_flag("--csv", flags->csv, "As CSV");
-    command->add_flag("--json", flags->json, "As JSON: an array of objects, units in the names")->excludes(csv);
-    command->footer("Times are printed in UTC. Sunrise and sunset are of the sun's centre on a flat horizon, without refraction.\n"
-                    "beam_w_m2 is on a plane facing the sun, direct_mj_m2 and the rest on the horizontal.\n"
+    auto* json = command->add_flag("--json", flags->json, "As JSON: an array of objects, units in the names")->excludes(csv);
+    command->add_flag("--plot", flags->plot, "The day's curve in letters, for the day of --from or --time")->excludes(csv)->excludes(json);
+    command->footer("Times are printed in UTC. sunrise and sunset are of the sun's centre on a flat horizon, without refraction;\n"
+                    "sunrise_apparent and sunset_apparent of its upper limb with mean refraction, as almanacs have them.\n"
+                    "beam_w_m2 is on a plane facing the sun, direct_mj_m2 and the rest on the horizontal; on_slope is all light on\n"
+                    "a square metre of the slope. A clear-sky number may be one or twelve (1,2,..,12), one for each month.\n"
                     "Example: sunbudget sun --at 40,-105 --time 2025-06-21T12:00-07:00\n"
-                    "         sunbudget sun --at 40,-105 --from 2025-01-01 --to 2025-12-31 --csv");
+                    "         sunbudget sun --at 40,-105 --from 2025-01-01 --to 2025-12-31 --csv\n"
+                    "         sunbudget sun --at 40,-105 --from 2025-12-21 --zone solar-true --slope 30 --azimuth 180 --plot");
     command->callback([flags] {
         Terminal terminal(false);
+        if (flags->plot) return print_result(plot_of(*flags, terminal));
         const auto rows = rows_of(*flags, terminal);
         const auto text = flags->format() == Format::json ? rows.dump(2) + "\n"
                           : flags->format() == Format::csv ? csv_of(rows)

@@ -120,6 +120,12 @@ ClearModel clear_model_named(std::string_view name) {
     return static_cast<ClearModel>(found - model_names.begin());
 }
 
+DiffuseModel diffuse_model_named(std::string_view name) {
+    constexpr std::array names{"liu-jordan1963", "hay-davies1980", "perez1990"};
+    const auto found = std::find(names.begin(), names.end(), method("diffuse_sky", name).name);
+    return static_cast<DiffuseModel>(found - names.begin());
+}
+
 Sky::Sky(ClearModel chosen) : model(chosen) {
     const auto& row = method("clear_sky", name_of(model));
     for (std::size_t i = 0; i < sky_parameter_count; ++i) {

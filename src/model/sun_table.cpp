@@ -19,6 +19,34 @@ UtcSpan whole_day(const CivilDate& date, const Zone& zone, double longitude_rad)
 
 constexpr double sea_level_hpa = 1013.25;
 
+/// Direct, diffuse and reflected light on the place's slope, as the rasters have it: level ground gets
+/// exactly the horizontal light.
+double on_slope_w_m2(const SunPlace& place, const SkyMoment& light, const Horizontal& sun) {
+    const double sine = std::sin(sun.elevation_rad);
+    const double facing = std::max(0.0, sine * std::cos(place.slope_rad) +
+                                            std::cos(sun.elevation_rad) * std::sin(place.slope_rad) *
+                                                std::cos(sun.azimuth_rad - place.slope_azimuth_rad));
+    const double sky_view = (1 + std::cos(place.slope_rad)) / 2;
+    const double even = light.diffuse_w_m2 - light.parts.circumsolar_normal_w_m2 * sine;
+    const double global = light.beam_normal_w_m2 * sine + light.diffuse_w_m2;
+    return (light.beam_normal_w_m2 + light.parts.circumsolar_normal_w_m2) * facing + even * sky_view +
+           light.parts.horizon_w_m2 * std::sin(place.slope_rad) + (1 - sky_view) * place.ground_albedo * global;
+}
+
+void add_light(const SunPlace& place, const SunTrack& track, const UtcSpan& span, double step_s, SunDayRow& row) {
+    const double pressure = pressure_ratio(place.height_m);
+    for_each_sunlit_step(track, span.begin, span.end, step_s, place.latitude_rad, place.longitude_rad, [&](const SunSample& sample) {
+        const auto seen = horizontal(sample.sun, place.latitude_rad, place.longitude_rad, place.height_m);
+        const double outside = extraterrestrial_normal(sample.sun.distance_au);
+        const double elevation_rad = std::asin(sample.sin_elevation);
+        const auto light = sky_moment(place.sky, {sample.utc, row.date.month, outside, elevation_rad, place.height_m, pressure});
+        row.extraterrestrial_j_m2 += outside * sample.sin_elevation * sample.duration_s;
+        row.direct_j_m2 += light.beam_normal_w_m2 * sample.sin_elevation * sample.duration_s;
+        row.diffuse_j_m2 += light.diffuse_w_m2 * sample.duration_s;
+        row.on_slope_j_m2 += on_slope_w_m2(place, light, {elevation_rad, seen.azimuth_rad}) * sample.duration_s;
+    });
+}
+
 }  // namespace
 
 SunMoment sun_moment(const SunPlace& place, const Zone& zone, UtcSeconds utc) {
@@ -39,6 +67,7 @@ SunMoment sun_moment(const SunPlace& place, const Zone& zone, UtcSeconds utc) {
     moment.beam_w_m2 = light.beam_normal_w_m2;
     moment.diffuse_w_m2 = light.diffuse_w_m2;
     moment.global_w_m2 = light.diffuse_w_m2 + light.beam_normal_w_m2 * std::sin(seen.elevation_rad);
+    moment.on_slope_w_m2 = on_slope_w_m2(place, light, seen);
     return moment;
 }
 
@@ -46,19 +75,20 @@ std::vector<SunDayRow> sun_days(const SunPlace& place, const Zone& zone, CivilDa
     const double margin_s = 2 * seconds_per_day;
     const SunTrack track(zone.day_start(from, place.longitude_rad) - margin_s,
                          zone.day_start(next_day(to), place.longitude_rad) + margin_s);
-    const double pressure = pressure_ratio(place.height_m);
     std::vector<SunDayRow> rows;
     for (CivilDate date = from; date <= to; date = next_day(date)) {
         const auto span = whole_day(date, zone, place.longitude_rad);
         const auto day = sun_day(track, span.begin, span.end, place.latitude_rad, place.longitude_rad);
-        const auto light = light_totals(track, span.begin, span.end, step_s, place.latitude_rad, place.longitude_rad,
-                                        [&](UtcSeconds utc, double normal_w_m2, double elevation_rad) {
-                                            const auto sky = sky_moment(place.sky, {utc, date.month, normal_w_m2, elevation_rad,
-                                                                                    place.height_m, pressure});
-                                            return ClearSky{sky.beam_normal_w_m2, sky.diffuse_w_m2};
-                                        });
-        SunDayRow row{date, day.sunrise, day.transit, day.sunset, day.day_length_s, 0,
-                      light.extraterrestrial_j_m2, light.direct_j_m2, light.diffuse_j_m2};
+        const auto seen = sun_day(track, span.begin, span.end, place.latitude_rad, place.longitude_rad, almanac_horizon_rad);
+        SunDayRow row;
+        row.date = date;
+        row.sunrise = day.sunrise;
+        row.transit = day.transit;
+        row.sunset = day.sunset;
+        row.sunrise_apparent = seen.sunrise;
+        row.sunset_apparent = seen.sunset;
+        row.day_length_s = day.day_length_s;
+        add_light(place, track, span, step_s, row);
         const UtcSeconds noon = day.transit.value_or((span.begin + span.end) / 2);
         row.transit_elevation_rad = horizontal(track.at(noon), place.latitude_rad, place.longitude_rad, place.height_m).elevation_rad;
         rows.push_back(row);

@@ -211,13 +211,7 @@ void resolve_sky_parameter(SkyParameter id, const Plan& plan, const ResolveOptio
 
 void resolve_sky(const Plan& plan, const ResolveOptions& options, Run& run, RunProblems& problems) {
     if (plan.sky.model) run.sky = Sky(clear_model_named(**plan.sky.model));
-    if (plan.sky.diffuse) {
-        constexpr std::array models{std::pair{"hay-davies1980", DiffuseModel::hay_davies1980},
-                                    std::pair{"liu-jordan1963", DiffuseModel::liu_jordan1963},
-                                    std::pair{"perez1990", DiffuseModel::perez1990}};
-        for (const auto& [name, model] : models)
-            if (**plan.sky.diffuse == name) run.sky.diffuse = model;
-    }
+    if (plan.sky.diffuse) run.sky.diffuse = diffuse_model_named(**plan.sky.diffuse);
     for (std::size_t i = 0; i < sky_parameter_count; ++i) resolve_sky_parameter(static_cast<SkyParameter>(i), plan, options, run, problems);
     if (plan.sky.uncertainty) run.light_uncertainty = **plan.sky.uncertainty;
     if (waits_for_ground(run.sky) && !run.has_surface() && !run.terrain && needs_sun(plan))

@@ -63,6 +63,7 @@ struct Sky {
 [[nodiscard]] bool may_be_raster(SkyParameter parameter);
 /// Throws Error(usage) with a suggestion for a name that is none.
 [[nodiscard]] ClearModel clear_model_named(std::string_view name);
+[[nodiscard]] DiffuseModel diffuse_model_named(std::string_view name);
 
 /// When and where the sky is looked at.
 struct SkyInstant {
