@@ -3,6 +3,9 @@
 #include <catch2/catch.hpp>
 #include <numbers>
 
+#include "sunbudget/base/units.hpp"
+#include "sunbudget/physics/sun.hpp"
+
 using namespace sunbudget;
 
 namespace {
@@ -55,4 +58,24 @@ TEST_CASE("span_of: a window that a clock change swallows keeps its distance fro
     const auto span = span_of({{2025, 3, 30}, 2.5 * 3600, 12 * 3600}, berlin, 0);
     CHECK(span.begin == berlin.day_start({2025, 3, 30}) + 2.5 * 3600);
     CHECK(span.end == berlin.to_utc({2025, 3, 30}, 12 * 3600));
+}
+
+TEST_CASE("with_mid_month_days: takes Klein's days, whose sun stands as he gives it", "[model][vector]") {
+    // Klein 1977, Solar Energy 19, 325-329: day of the year and declination in degrees, one decimal.
+    constexpr std::pair<int, double> klein[] = {{17, -20.9}, {47, -13.0}, {75, -2.4}, {105, 9.4}, {135, 18.8}, {162, 23.1},
+                                                {198, 21.2}, {228, 13.5}, {258, 2.2}, {288, -9.6}, {318, -18.9}, {344, -23.0}};
+    const auto year = with_mid_month_days(periods_of({2025, 1, 1}, {2025, 12, 31}, Totals::whole, {}, Zone::parse("UTC")).front());
+    REQUIRE(year.days.size() == 12);
+    const auto before = days_from_civil({2024, 12, 31});
+    double all = 0;
+    for (std::size_t m = 0; m < 12; ++m) {
+        CAPTURE(m);
+        const auto day = days_from_civil(year.days[m].date) - before;
+        CHECK(day == klein[m].first);
+        // His declination is Cooper's, up to 1.1 degrees from the true one (in September).
+        const auto sun = sun_state(static_cast<double>(days_from_civil(year.days[m].date)) * seconds_per_day + seconds_per_day / 2);
+        CHECK(deg_from_rad(sun.declination_rad) == Approx(klein[m].second).margin(1.1).epsilon(0));
+        all += year.days[m].weight;
+    }
+    CHECK(all == 365);
 }
