@@ -11,6 +11,9 @@
 #include "sunbudget/base/text.hpp"
 #include "sunbudget/base/units.hpp"
 #include "sunbudget/model/sun_table.hpp"
+#include "sunbudget/model/turbidity_fit.hpp"
+#include "sunbudget/plan/plan.hpp"
+#include "sunbudget/plan/weather.hpp"
 #include "sunbudget/tables/methods.hpp"
 
 namespace sunbudget {
@@ -23,7 +26,7 @@ enum class Format { text, csv, json };
 
 struct Flags {
     std::string at, time, from, to, step, zone = "UTC", height, model = "esra2000", diffuse = "hay-davies1980";
-    std::string slope, azimuth, albedo;
+    std::string slope, azimuth, albedo, fit;
     std::array<std::string, sky_parameter_count> sky;
     bool csv = false, json = false, plot = false;
 
@@ -279,6 +282,49 @@ void add_sky_flags(CLI::App& command, Flags& flags) {
         ->type_name("NAME");
 }
 
+/// How a table is laid out: by a plan's weather, or by its own header.
+WeatherFormat table_format(const std::string& file, const Flags& flags, std::filesystem::path& table, SunPlace& place) {
+    const std::filesystem::path path(file);
+    if (path.extension() == ".yaml" || path.extension() == ".yml") {
+        const auto plan = with_defaults(read_plan(path));
+        if (!plan.weather || !plan.weather->table) throw Error(Cause::usage, "the plan names no weather table", file);
+        table = (**plan.weather->table).file;
+        if (plan.weather->station_elevation && flags.height.empty()) place.height_m = (**plan.weather->station_elevation).m;
+        auto format = weather_format(*plan.weather);
+        constexpr int any_year = 2001;  // the sun of a date is nearly the same in all
+        if (**plan.weather->years == Years::typical) format.typical = WeatherFormat::Years{any_year, any_year};
+        return format;
+    }
+    table = path;
+    WeatherFormat format;
+    format.file = path.filename().string();
+    format.zone = from_flag("--zone", [&] { return Zone::parse(flags.zone); });
+    return format;
+}
+
+Json json_of(int month, const MonthTurbidity& found) {
+    return {{"month", month},         {"turbidity", rounded(found.turbidity, 2)}, {"low", rounded(found.low, 2)},
+            {"high", rounded(found.high, 2)}, {"clear_hours", found.hours},               {"clear_days", found.days}};
+}
+
+Json fitted_rows(const Flags& flags, Terminal& terminal) {
+    auto place = place_of(flags, terminal);
+    std::filesystem::path table;
+    auto format = table_format(flags.fit, flags, table, place);
+    format.longitude_rad = place.longitude_rad;
+    const auto record = read_weather(weather_text(table, std::uint64_t{1} << 30), format);
+    const auto fit = from_flag("--fit", [&] { return fit_turbidity(record, {place.latitude_rad, place.longitude_rad, place.height_m}); });
+    terminal.note(fmt::format("{} of {} hours with the sun above 10 degrees are clear; turbidity fitted to the {}", fit.clear_hours, fit.hours,
+                              fit.to == FitTo::beam ? "beam" : "global light"));
+    Json rows = Json::array();
+    for (std::size_t m = 0; m < fit.months.size(); ++m)
+        if (fit.months[m]) rows.push_back(json_of(static_cast<int>(m) + 1, *fit.months[m]));
+    if (rows.empty())
+        throw Error(Cause::input, "the record has no clear hours", flags.fit,
+                    "check its place, height, time zone and stamps; a record of an hour or less a row is needed");
+    return rows;
+}
+
 }  // namespace
 
 void add_sun(CLI::App& app) {
@@ -295,6 +341,9 @@ void add_sun(CLI::App& app) {
     command->add_option("--slope", flags->slope, "Slope of the ground in degrees, for on_slope [0]")->type_name("DEG");
     command->add_option("--azimuth", flags->azimuth, "Where the slope faces, downslope, clockwise from north: 180 is south")->type_name("DEG");
     command->add_option("--albedo", flags->albedo, "Of the ground around: what a slope sees of it, and what lights the sky where the model counts that [0.2]")->type_name("A");
+    command->add_option("--fit", flags->fit,
+                        "Linke turbidity of each month from the clear hours of a record: a table whose header names quantities and units "
+                        "(global [W/m2]), or a plan (*.yaml) whose weather says how to read one")->type_name("TABLE")->excludes(time);
     auto* csv = command->add_flag("--csv", flags->csv, "As CSV");
     auto* json = command->add_flag("--json", flags->json, "As JSON: an array of objects, units in the names")->excludes(csv);
     command->add_flag("--plot", flags->plot, "The day's curve in letters, for the day of --from or --time")->excludes(csv)->excludes(json);
@@ -302,13 +351,15 @@ void add_sun(CLI::App& app) {
                     "sunrise_apparent and sunset_apparent of its upper limb with mean refraction, as almanacs have them.\n"
                     "beam_w_m2 is on a plane facing the sun, direct_mj_m2 and the rest on the horizontal; on_slope is all light on\n"
                     "a square metre of the slope. A clear-sky number may be one or twelve (1,2,..,12), one for each month.\n"
+                    "--fit prints the median of a month's clear hours; two thirds of them lie between low and high.\n"
                     "Example: sunbudget sun --at 40,-105 --time 2025-06-21T12:00-07:00\n"
                     "         sunbudget sun --at 40,-105 --from 2025-01-01 --to 2025-12-31 --csv\n"
-                    "         sunbudget sun --at 40,-105 --from 2025-12-21 --zone solar-true --slope 30 --azimuth 180 --plot");
+                    "         sunbudget sun --at 40,-105 --from 2025-12-21 --zone solar-true --slope 30 --azimuth 180 --plot\n"
+                    "         sunbudget sun --at 40.05,-88.37 --height 213 --fit station.csv");
     command->callback([flags] {
         Terminal terminal(false);
         if (flags->plot) return print_result(plot_of(*flags, terminal));
-        const auto rows = rows_of(*flags, terminal);
+        const auto rows = flags->fit.empty() ? rows_of(*flags, terminal) : fitted_rows(*flags, terminal);
         const auto text = flags->format() == Format::json ? rows.dump(2) + "\n"
                           : flags->format() == Format::csv ? csv_of(rows)
                                                            : text_of_rows(rows);

@@ -11,6 +11,7 @@
 #include "sunbudget/model/probe.hpp"
 #include "sunbudget/model/shading.hpp"
 #include "sunbudget/model/surface.hpp"
+#include "sunbudget/physics/cloudy_sky.hpp"
 #include "sunbudget/physics/gradient.hpp"
 #include "sunbudget/physics/inclined_light.hpp"
 #include "sunbudget/physics/shortwave.hpp"
@@ -104,11 +105,14 @@ struct Flow::State {
     Plane<float> sky_view, slope_deg, aspect_deg, albedo_seen;
     std::vector<LightField::Block> light_blocks;
     std::vector<BandPlanes> bands;
+    std::vector<Reader> cloud_readers;
+    std::vector<Plane<float>> clear_index;  ///< by band of those held, where clouds are a raster's
     std::array<Plane<float>, OpenLight::values> open;
     std::map<std::uint16_t, std::uint64_t> flag_counts;
     Probe* probe = nullptr;
 
     State(const Run& r, const SharedLight& s, int t) : run(r), shared(s), thread(t), needs(r), surface(r) {
+        for (const auto& raster : run.light.rasters) cloud_readers.emplace_back(raster);
         if (!run.terrain) return;
         if (shared.field() == nullptr) own_locator.emplace(run.grid);
         shader.emplace(*shared.terrain(), shared.field(), locator(), thread);
@@ -118,6 +122,8 @@ struct Flow::State {
     }
 
     void read_heights();
+    void read_clouds(std::size_t first, std::size_t count);
+    [[nodiscard]] double index_of(double value, std::size_t band) const;
     void prepare_light();
     void flag_missing_light(const Plane<float>& light);
     void count_flags();
@@ -129,6 +135,7 @@ struct Flow::State {
     [[nodiscard]] bool ground_lights_sky() const;
     void add_from_ground(std::size_t block, std::size_t band, Plane<float>& diffuse);
     void compose(const ShadedBlock& part, std::size_t band);
+    void dim(const ShadedBlock& part, std::size_t band, double overcast);
     void see_albedo();
     void put_surface_layers(Sink& sink);
     void put_light_layers(std::size_t band, const BandPlanes& planes, Sink& sink);
@@ -146,6 +153,27 @@ void Flow::State::read_heights() {
     if (!run.terrain) return;
     shader->heights(window, heights_m);
     for (int r = 0; r < window.height; ++r) flag_nan(heights_m.row(r), flags.row(r), quality::no_elevation, 0);
+}
+
+/// What the rasters say of each band held, as a clear-sky index. A share of the sky that is none has no value.
+void Flow::State::read_clouds(std::size_t first, std::size_t count) {
+    if (cloud_readers.empty()) return;
+    clear_index.resize(count);
+    for (std::size_t i = 0; i < count; ++i) {
+        resize(clear_index[i], window);
+        cloud_readers[std::min(first + i, cloud_readers.size() - 1)].read(window, clear_index[i]);
+        for (int r = 0; r < window.height; ++r)
+            for (auto& value : clear_index[i].row(r)) value = static_cast<float>(index_of(static_cast<double>(value), first + i));
+    }
+}
+
+double Flow::State::index_of(double value, std::size_t band) const {
+    constexpr double none = std::numeric_limits<double>::quiet_NaN();
+    // Beside bright clouds a moment may have half as much again as the clear sky, no more.
+    constexpr double highest_index = 1.5;
+    if (!run.light.rasters_are_cloud) return value >= 0 && value <= highest_index ? value : none;
+    if (!(value >= 0 && value <= 1)) return none;
+    return run.times->instant ? kasten_czeplak1980_index(value) : 1 - (1 - run.light.overcast[band]) * value;
 }
 
 void Flow::State::prepare_light() {
@@ -216,6 +244,11 @@ void Flow::State::flat_bands(std::size_t first, std::size_t count) {
             shared.field()->fill(light_blocks[b], first + i, LightField::Part::diffuse, heights_m, bands[i].diffuse);
             add_from_ground(b, first + i, bands[i].diffuse);
         }
+        for (int r = 0; r < window.height && !clear_index.empty(); ++r) {
+            const auto beam = bands[i].direct.row(r), sky = bands[i].diffuse.row(r);
+            const std::vector<float> open_beam(beam.begin(), beam.end()), open_sky(sky.begin(), sky.end());
+            dim_row({clear_index[i].row(r), open_beam, open_sky, {}, beam, sky, {}}, run.light.overcast[first + i]);
+        }
     }
 }
 
@@ -247,6 +280,7 @@ void Flow::State::terrain_bands(std::size_t first, std::size_t count) {
             for (const auto& part : parts)
                 if (part.located) {
                     compose(part, band);
+                    if (!clear_index.empty()) dim(part, band, run.light.overcast[first + band]);
                     note_shaded(part, band);
                 }
         }
@@ -310,6 +344,17 @@ void Flow::State::compose(const ShadedBlock& part, std::size_t band) {
             light_from_ground(view, over(albedo_seen, window, part.block, r), open_row(Part::beam_up, r), open_row(Part::diffuse, r),
                               over(out.reflected, window, part.block, r));
     }
+}
+
+/// A part's light under the band's clouds.
+void Flow::State::dim(const ShadedBlock& part, std::size_t band, double overcast) {
+    auto& out = bands[band];
+    const auto open_row = [&](LightField::Part p, int r) { return over(open[static_cast<std::size_t>(p)], window, part.block, r); };
+    for (int r = 0; r < part.block.height; ++r)
+        dim_row({over(clear_index[band], window, part.block, r), open_row(LightField::Part::beam_up, r), open_row(LightField::Part::diffuse, r),
+                 over(sky_view, window, part.block, r), over(out.direct, window, part.block, r), over(out.diffuse, window, part.block, r),
+                 over(out.reflected, window, part.block, r)},
+                overcast);
 }
 
 /// The mean albedo around each pixel, block by block so that its bits hang on the lattice alone.
@@ -439,7 +484,8 @@ void Flow::State::put_light_layers(std::size_t band, const BandPlanes& planes, S
                 case LayerId::net_shortwave: absorbed_shortwave(albedo.row(r), beam, albedo.row(r), rest, out); break;
                 default: break;
             }
-            for (auto& value : out) value *= factor;
+            const bool thin = !run.light.thin.empty() && run.light.thin[band] && layer.layer->id != LayerId::sunlit_hours;
+            for (auto& value : out) value = thin ? std::numeric_limits<float>::quiet_NaN() : value * factor;
         }, sink);
     }
 }
@@ -464,6 +510,7 @@ void Flow::compute(const Window& window, Sink& sink) {
     }
     for (std::size_t first = 0; first < all; first += bands_at_once) {
         const std::size_t count = std::min(bands_at_once, all - first);
+        s.read_clouds(first, count);
         if (s.run.terrain)
             s.terrain_bands(first, count);
         else

@@ -99,7 +99,7 @@ struct PointLight::Work {
                                     sample.duration_s * day.weight / period.duration_s,
                                     sky_moment(under, {sample.utc, day.date.month,
                                                      extraterrestrial_normal(sample.sun.distance_au),
-                                                     std::asin(to_sun[2]), height_m, pressure})});
+                                                     std::asin(to_sun[2]), height_m, pressure, sample.duration_s})});
                 });
         }
     }

@@ -102,6 +102,38 @@ void add_thrown_back(double ground_albedo, double elevation_rad, double sky_albe
     moment.parts.isotropic_w_m2 += more;
 }
 
+SkyLight open_light(double beam_normal_w_m2, double diffuse_w_m2, const SkyInstant& at) {
+    return {beam_normal_w_m2, diffuse_w_m2, at.extraterrestrial_normal_w_m2, std::numbers::pi / 2 - at.elevation_rad};
+}
+
+SkyMoment clear_moment(const Sky& sky, const SkyInstant& at) {
+    const auto [light, sky_albedo] = clear_light(sky, at);
+    SkyMoment moment;
+    moment.beam_normal_w_m2 = light.beam_normal_w_m2;
+    moment.diffuse_w_m2 = light.diffuse_horizontal_w_m2;
+    moment.parts = parts_of(sky.diffuse, open_light(moment.beam_normal_w_m2, moment.diffuse_w_m2, at), at.elevation_rad);
+    if (sky.model == ClearModel::bird_hulstrom1981)
+        add_thrown_back(sky.of(SkyParameter::ground_albedo, at.month), at.elevation_rad, sky_albedo, moment);
+    return moment;
+}
+
+/// A part of the time the clear sky, the rest an overcast that is bright alike all over.
+SkyMoment mixed(const SkyMoment& clear, const LightShare& share, double clear_direct_w_m2) {
+    SkyMoment moment;
+    moment.beam_normal_w_m2 = share.beam * clear.beam_normal_w_m2;
+    moment.diffuse_w_m2 = share.diffuse * clear.diffuse_w_m2 + share.scattered * clear_direct_w_m2;
+    // No more of the clear sky's own light than there is sky light in all.
+    const double whole = clear.diffuse_w_m2 > 0 ? moment.diffuse_w_m2 / clear.diffuse_w_m2 : 0;
+    const double part = std::min(share.beam, whole);
+    moment.parts.circumsolar_normal_w_m2 = part * clear.parts.circumsolar_normal_w_m2;
+    moment.parts.horizon_w_m2 = part * clear.parts.horizon_w_m2;
+    moment.parts.isotropic_w_m2 =
+        part * clear.parts.isotropic_w_m2 + (moment.diffuse_w_m2 - part * clear.diffuse_w_m2);
+    moment.thrown_back_w_m2 = share.beam * clear.thrown_back_w_m2;
+    moment.thrown_back_twice_w_m2 = share.beam * clear.thrown_back_twice_w_m2;
+    return moment;
+}
+
 }  // namespace
 
 std::string_view name_of(ClearModel model) { return model_names[static_cast<std::size_t>(model)]; }
@@ -142,15 +174,16 @@ bool waits_for_ground(const Sky& sky) {
 SkyMoment sky_moment(const Sky& sky, const SkyInstant& when) {
     SkyInstant at = when;
     at.extraterrestrial_normal_w_m2 = outside_the_air(sky.model, when.extraterrestrial_normal_w_m2);
-    const auto [light, sky_albedo] = clear_light(sky, at);
-    const SkyLight open{light.beam_normal_w_m2, light.diffuse_horizontal_w_m2, at.extraterrestrial_normal_w_m2,
-                        std::numbers::pi / 2 - at.elevation_rad};
+    const auto clear = clear_moment(sky, at);
+    if (!sky.measured && !sky.mean_cloud) return clear;
+    const double direct_w_m2 = clear.beam_normal_w_m2 * std::max(0.0, std::sin(at.elevation_rad));
+    if (!sky.measured) return mixed(clear, (*sky.mean_cloud)[static_cast<std::size_t>(at.month - 1)], direct_w_m2);
+    // What was measured holds the light to and fro between ground and sky.
+    const auto share = sky.measured->over(at.utc - at.duration_s / 2, at.utc + at.duration_s / 2);
     SkyMoment moment;
-    moment.beam_normal_w_m2 = light.beam_normal_w_m2;
-    moment.diffuse_w_m2 = light.diffuse_horizontal_w_m2;
-    moment.parts = parts_of(sky.diffuse, open, at.elevation_rad);
-    if (sky.model == ClearModel::bird_hulstrom1981)
-        add_thrown_back(sky.of(SkyParameter::ground_albedo, at.month), at.elevation_rad, sky_albedo, moment);
+    moment.beam_normal_w_m2 = share.beam * clear.beam_normal_w_m2;
+    moment.diffuse_w_m2 = share.diffuse * clear.diffuse_w_m2 + share.scattered * direct_w_m2;
+    moment.parts = parts_of(sky.diffuse, open_light(moment.beam_normal_w_m2, moment.diffuse_w_m2, at), at.elevation_rad);
     return moment;
 }
 

@@ -19,7 +19,7 @@ std::string inputs_text(const Run& run) {
     for (const auto& input : run.inputs) {
         text += fmt::format("  {}: {} ({})\n", input.role, input.name, input.digest.substr(0, 23));
         for (const auto& note : input.notes) text += "    " + note + "\n";
-        if (!input.notes.empty()) text += fmt::format("    covers {:.1f} % of the grid\n", input.coverage * 100);
+        if (!input.notes.empty() && input.role != "weather.table") text += fmt::format("    covers {:.1f} % of the grid\n", input.coverage * 100);
     }
     return text;
 }

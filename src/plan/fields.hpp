@@ -105,6 +105,11 @@ void visit_plan(P& plan, Visitor& v) {
             v.value(name_of(static_cast<SkyParameter>(i)).data(), plan.sky.parameters[i]);
         v.value("diffuse", plan.sky.diffuse);
         v.value("uncertainty", plan.sky.uncertainty);
+        v.value("cloud", plan.sky.cloud);
+        v.value("overcast", plan.sky.overcast);
+        v.value("sunshine", plan.sky.sunshine);
+        v.value("angstrom", plan.sky.angstrom);
+        v.value("index", plan.sky.index);
     });
     v.map("weather", plan.weather, [&](auto& weather) { visit_weather(weather, v); });
     v.map("time", [&] {

@@ -105,6 +105,14 @@ class Typed {
             get(node, value.emplace<PlanPath>());
     }
     static void get(const Node& node, PlanLength& value) { value.m = *read_quantity(node, ValueKind::length); }
+    void get(const Node& node, std::vector<PlanRaster>& value) const {
+        if (node.shape == Node::Shape::scalar) return get(node, value.emplace_back());
+        for (const auto& item : node.children) get(item, value.emplace_back());
+    }
+    void get(const Node& node, std::variant<Monthly, std::vector<PlanRaster>>& value) const {
+        if (node.shape == Node::Shape::scalar && !read_number(node)) return get(node, value.emplace<std::vector<PlanRaster>>());
+        get(node, value.emplace<Monthly>());
+    }
     void get(const Node& node, std::variant<std::vector<PlanRaster>, PlanLength>& value) const {
         if (node.shape == Node::Shape::scalar && read_quantity(node, ValueKind::length)) return get(node, value.emplace<PlanLength>());
         auto& rasters = value.emplace<std::vector<PlanRaster>>();

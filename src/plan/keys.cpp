@@ -237,8 +237,26 @@ Form sky_form() {
                     "hay-davies1980"});
     keys.push_back({"uncertainty",
                     {number(0, 1)},
-                    "relative standard uncertainty of the light; default: 0.07, what a turbidity not fitted to measurements is worth"});
-    return map(std::move(keys));
+                    "relative standard uncertainty of the light; default: 0.07, what a turbidity not fitted to measurements is worth, "
+                    "0.05 under a measured sky, 0.10 under clouds"});
+    keys.push_back({"cloud",
+                    {number(0, 1), list(number(0, 1), 12, 12), of(ValueKind::raster)},
+                    "share of the sky under cloud, one number, one per month, or a raster (a file with a band for each period, or one "
+                    "for all): over a period a mixture of clear and overcast, at an instant Kasten & Czeplak 1980"});
+    keys.push_back({"overcast",
+                    {number(0, 1), list(number(0, 1), 12, 12)},
+                    "light under a closed cover as a share of the clear sky's; default: 0.25"});
+    keys.push_back({"sunshine",
+                    {list(number(0, 24), 12, 12)},
+                    "mean hours of sunshine a day for each month: light by Angstrom-Prescott, worked out for the middle of the grid"});
+    keys.push_back({"angstrom",
+                    {list(number(0, 1), 2, 2)},
+                    "[a, b] of global = (a + b n/N) of the light outside the air; default: 0.25 and 0.50"});
+    keys.push_back({"index",
+                    {of(ValueKind::raster), list(of(ValueKind::raster), 1)},
+                    "clear-sky index, global over the clear sky's: a raster for each period, or one for all"});
+    return map(std::move(keys), {at_most_one({"cloud", "sunshine"}), at_most_one({"cloud", "index"}), at_most_one({"sunshine", "index"}),
+                                 needs("overcast", {"cloud"}), needs("angstrom", {"sunshine"})});
 }
 
 std::vector<Key> one_key_a_quantity(const std::vector<Form>& forms, const std::string& doc) {

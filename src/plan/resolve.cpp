@@ -71,6 +71,7 @@ class Resolver {
         resolve_sky(plan_, options_, run_, problems_);
         resolve_time(plan_, run_, problems_);
         resolve_weather(plan_, options_, run_, problems_);
+        resolve_clouds(plan_, options_, run_, problems_);
         problems_.throw_if_any();
         resolve_layers(plan_, run_, problems_);
         resolve_zones(plan_, run_, problems_);
@@ -190,6 +191,11 @@ std::vector<std::pair<RasterName, Place>> read_rasters(const Plan& plan) {
     if (plan.terrain.slope_from)
         if (const auto* path = std::get_if<PlanPath>(&**plan.terrain.slope_from))
             rasters.emplace_back(RasterName{path->file, 1, {}}, plan.terrain.slope_from->place);
+    if (plan.sky.cloud)
+        if (const auto* list = std::get_if<std::vector<PlanRaster>>(&**plan.sky.cloud))
+            for (const auto& raster : *list) rasters.emplace_back(raster_of(raster), plan.sky.cloud->place);
+    if (plan.sky.index)
+        for (const auto& raster : **plan.sky.index) rasters.emplace_back(raster_of(raster), plan.sky.index->place);
     return rasters;
 }
 

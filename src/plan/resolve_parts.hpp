@@ -48,6 +48,8 @@ void resolve_sky(const Plan& plan, const ResolveOptions& options, Run& run, RunP
 void resolve_time(const Plan& plan, Run& run, RunProblems& problems);
 /// After the time, which a typical year is laid over.
 void resolve_weather(const Plan& plan, const ResolveOptions& options, Run& run, RunProblems& problems);
+/// Last of the sky: what the table or the plan's clouds make of it.
+void resolve_clouds(const Plan& plan, const ResolveOptions& options, Run& run, RunProblems& problems);
 void resolve_layers(const Plan& plan, Run& run, RunProblems& problems);
 /// Adds the slope to the layers where zones need it.
 void resolve_zones(const Plan& plan, Run& run, RunProblems& problems);

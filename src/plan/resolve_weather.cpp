@@ -6,54 +6,16 @@
 #include "resolve_parts.hpp"
 #include "sunbudget/base/digest.hpp"
 #include "sunbudget/base/units.hpp"
+#include "sunbudget/plan/weather.hpp"
 
 namespace sunbudget {
 
 namespace {
 
-std::string text_of_table(const std::filesystem::path& file, std::uint64_t most_bytes) {
-    std::error_code failure;
-    const auto size = std::filesystem::file_size(file, failure);
-    if (failure) throw Error(Cause::input, "the weather table cannot be read: " + failure.message(), file.string());
-    if (size > most_bytes)
-        throw Error(Cause::input, fmt::format("the weather table has {}, and {} may be read", human_bytes(static_cast<double>(size)), human_bytes(static_cast<double>(most_bytes))),
-                    file.string(), "give the run more --memory, or keep only the rows and columns it needs");
-    std::ifstream stream(file, std::ios::binary);
-    std::string text(static_cast<std::size_t>(size), '\0');
-    stream.read(text.data(), static_cast<std::streamsize>(size));
-    if (!stream) throw Error(Cause::input, "the weather table cannot be read", file.string());
-    return text;
-}
-
 template <class T, std::size_t N>
 void take(const std::array<Maybe<T>, N>& given, std::array<std::optional<T>, N>& to) {
     for (std::size_t i = 0; i < N; ++i)
         if (given[i]) to[i] = **given[i];
-}
-
-WeatherFormat format_of(const PlanWeather& weather, const Run& run) {
-    WeatherFormat format;
-    format.file = (**weather.table).file.filename().string();
-    format.separator = **weather.separator;
-    format.comment = **weather.comment;
-    format.skip = **weather.skip;
-    format.header = **weather.header == HeaderChoice::line;
-    format.decimal_comma = **weather.decimal == DecimalSign::comma;
-    format.good = **weather.good_flags;
-    format.stamp = **weather.stamp;
-    format.zone = (**weather.zone).zone;
-    if (weather.missing) format.missing = **weather.missing;
-    if (weather.time_form) format.time_form = **weather.time_form;
-    if (weather.interval_s) format.interval_s = **weather.interval_s;
-    if (weather.columns) {
-        take(weather.columns->of_time, format.time_columns);
-        take(weather.columns->of, format.columns);
-    }
-    if (weather.units) take(weather.units->of, format.units);
-    if (weather.flags) take(weather.flags->of, format.flags);
-    if (**weather.years == Years::typical && run.times)
-        format.typical = {Zone().local(run.times->earliest()).date.year, Zone().local(run.times->latest()).date.year};
-    return format;
 }
 
 Station station_of(const PlanWeather& weather, Run& run) {
@@ -96,17 +58,56 @@ std::vector<std::string> notes_of(const RunWeather& weather) {
 
 }  // namespace
 
+std::string weather_text(const std::filesystem::path& file, std::uint64_t most_bytes) {
+    std::error_code failure;
+    const auto size = std::filesystem::file_size(file, failure);
+    if (failure) throw Error(Cause::input, "the weather table cannot be read: " + failure.message(), file.string());
+    if (size > most_bytes)
+        throw Error(Cause::input, fmt::format("the weather table has {}, and {} may be read", human_bytes(static_cast<double>(size)), human_bytes(static_cast<double>(most_bytes))),
+                    file.string(), "give the run more --memory, or keep only the rows and columns it needs");
+    std::ifstream stream(file, std::ios::binary);
+    std::string text(static_cast<std::size_t>(size), '\0');
+    stream.read(text.data(), static_cast<std::streamsize>(size));
+    if (!stream) throw Error(Cause::input, "the weather table cannot be read", file.string());
+    return text;
+}
+
+WeatherFormat weather_format(const PlanWeather& weather) {
+    WeatherFormat format;
+    format.file = (**weather.table).file.filename().string();
+    format.separator = **weather.separator;
+    format.comment = **weather.comment;
+    format.skip = **weather.skip;
+    format.header = **weather.header == HeaderChoice::line;
+    format.decimal_comma = **weather.decimal == DecimalSign::comma;
+    format.good = **weather.good_flags;
+    format.stamp = **weather.stamp;
+    format.zone = (**weather.zone).zone;
+    if (weather.missing) format.missing = **weather.missing;
+    if (weather.time_form) format.time_form = **weather.time_form;
+    if (weather.interval_s) format.interval_s = **weather.interval_s;
+    if (weather.columns) {
+        take(weather.columns->of_time, format.time_columns);
+        take(weather.columns->of, format.columns);
+    }
+    if (weather.units) take(weather.units->of, format.units);
+    if (weather.flags) take(weather.flags->of, format.flags);
+    return format;
+}
+
 void resolve_weather(const Plan& plan, const ResolveOptions& options, Run& run, RunProblems& problems) {
     if (!plan.weather || !plan.weather->table) return;
     const auto& weather = *plan.weather;
     const auto& file = (**weather.table).file;
     problems.attempt(weather.table->place, [&] {
-        auto format = format_of(weather, run);
+        auto format = weather_format(weather);
+        if (**weather.years == Years::typical && run.times)
+            format.typical = {Zone().local(run.times->earliest()).date.year, Zone().local(run.times->latest()).date.year};
         RunWeather found;
         found.station = station_of(weather, run);
         found.stop_at_gaps = **weather.gaps == Gaps::stop;
         format.longitude_rad = found.station.longitude_rad;
-        found.record = read_weather(text_of_table(file, options.memory_bytes / 4), format);
+        found.record = read_weather(weather_text(file, options.memory_bytes / 4), format);
         if (found.record.intervals.empty())
             throw Error(Cause::input, "no row of the table counts", format.file, "look at weather.years");
         if (weather.stamp->place.is_default && !found.record.days)

@@ -104,6 +104,42 @@ Json layers_json(const Run& run, const Execution& execution) {
     return layers;
 }
 
+Json gaps_json(const MeasuredReport& report) {
+    Json gaps = Json::array();
+    for (const auto& gap : report.first_gaps) gaps.push_back({{"from", format_utc(gap.begin)}, {"to", format_utc(gap.end)}});
+    return gaps;
+}
+
+/// What clouds or a record make of the light; nothing under a clear sky.
+Json real_sky_json(const Run& run) {
+    Json json = Json::object();
+    if (run.sky.mean_cloud) {
+        Json shares = Json::array();
+        for (const auto& share : *run.sky.mean_cloud) shares.push_back({{"beam", share.beam}, {"diffuse", share.diffuse}, {"scattered", share.scattered}});
+        json["shares_of_the_clear_sky_by_month"] = std::move(shares);
+    }
+    if (!run.light.measured) return json;
+    const auto& report = *run.light.measured;
+    json["from"] = report.from;
+    json["days"] = {{"sunlit", report.days}, {"missing", report.days_missing}, {"with_gaps_filled", report.days_with_gaps}};
+    json["sunlit_hours_without_value"] = report.gap_h;
+    json["first_gaps"] = gaps_json(report);
+    json["day_needs_share_of_light"] = day_needs;
+    json["month_needs_share_of_days"] = month_needs;
+    Json thin = Json::array();
+    for (std::size_t band = 0; band < run.light.thin.size(); ++band)
+        if (run.light.thin[band]) thin.push_back(run.times->instant ? format_utc(*run.times->instant) : run.times->periods[band].name);
+    json["bands_without_data"] = std::move(thin);
+    json["intervals_with_sky_light_split_off"] = report.split_intervals;
+    if (report.closure.intervals > 0)
+        json["closure"] = {{"intervals", report.closure.intervals},
+                           {"global_mean_w_m2", report.closure.global_mean_w_m2},
+                           {"global_less_parts_mean_w_m2", report.closure.difference_mean_w_m2},
+                           {"global_less_parts_rms_w_m2", report.closure.difference_rms_w_m2}};
+    json["share_of_light_left_out"] = report.left_out_share;
+    return json;
+}
+
 std::uint64_t pixels_of(const QualityRow& row, const Execution& execution) {
     std::uint64_t pixels = 0;
     for (const auto& [flag, count] : execution.flags)
@@ -219,6 +255,7 @@ std::string run_json(const Run& run, const Execution& execution) {
     if (run.times) {
         json["time"] = time_json(*run.times);
         json["sky"] = sky_json(run);
+        if (const auto real = real_sky_json(run); !real.empty()) json["real_sky"] = real;
     }
     json["inputs"] = inputs_json(run);
     if (const auto* image = std::get_if<ReflectanceSurface>(&run.surface)) {

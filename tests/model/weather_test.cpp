@@ -2,11 +2,9 @@
 
 #include <catch2/catch.hpp>
 #include <cmath>
-#include <fstream>
-#include <sstream>
 
 #include "sunbudget/base/error.hpp"
-#include "support/vectors.hpp"
+#include "surfrad.hpp"
 
 namespace sunbudget {
 
@@ -35,12 +33,7 @@ std::string told(const std::string& text, const WeatherFormat& format) {
 
 UtcSeconds utc(const char* text) { return resolve(parse_instant(text), Zone(), 0); }
 
-std::string real_table(const char* name) {
-    std::ifstream file(*test::real_data(name));
-    std::stringstream text;
-    text << file.rdbuf();
-    return text.str();
-}
+using test::real_text;
 
 }  // namespace
 
@@ -215,29 +208,8 @@ TEST_CASE("weather: a typical year of months from different years stands for eac
 
 TEST_CASE("weather: the formats of real networks are read through declarations", "[model][weather]") {
     SUNBUDGET_NEEDS_DATA();
-    auto surfrad = plain();
-    surfrad.separator = Separator::blanks;
-    surfrad.header = false;
-    surfrad.skip = 2;
-    surfrad.stamp = Stamp::end;
-    surfrad.missing = {-9999.9};
-    const std::array<int, 7> time_numbers{0, 1, 3, 4, 0, 5, 6};
-    for (std::size_t i = 0; i < time_numbers.size(); ++i)
-        if (time_numbers[i] > 0) surfrad.time_columns[i] = WeatherColumn{"", time_numbers[i]};
-    const auto declare = [&](Weather quantity, int number, const char* unit) {
-        surfrad.columns[at(quantity)] = WeatherColumn{"", number};
-        surfrad.flags[at(quantity)] = WeatherColumn{"", number + 1};
-        surfrad.units[at(quantity)] = unit;
-    };
-    declare(Weather::global, 9, "W/m2");
-    declare(Weather::beam, 13, "W/m2");
-    declare(Weather::diffuse, 15, "W/m2");
-    declare(Weather::longwave_down, 17, "W/m2");
-    declare(Weather::air_temperature, 39, "degC");
-    declare(Weather::relative_humidity, 41, "%");
-    declare(Weather::wind, 43, "m/s");
-    declare(Weather::pressure, 47, "hPa");
-    const auto day = read_weather(real_table("ground/surfrad/bon06197.dat"), surfrad);
+    const auto surfrad = test::surfrad_format();
+    const auto day = read_weather(real_text("ground/surfrad/bon06197.dat"), surfrad);
     CHECK(day.intervals.size() == 480);
     CHECK(day.interval_s == 180);
     CHECK(day.gaps.empty());
@@ -246,7 +218,7 @@ TEST_CASE("weather: the formats of real networks are read through declarations",
     CHECK(day.values(Weather::air_temperature)[0] == Approx(273.15 + 31.1));
     CHECK(day.values(Weather::relative_humidity)[0] == Approx(0.683));
     CHECK(day.values(Weather::pressure)[0] == 992.0);
-    const auto old = read_weather(real_table("ground/surfrad/bon95001.dat"), surfrad);
+    const auto old = read_weather(real_text("ground/surfrad/bon95001.dat"), surfrad);
     CHECK(old.missing(Weather::air_temperature) == old.intervals.size());
     CHECK(old.missing(Weather::global) < old.intervals.size() / 10);
 
@@ -258,7 +230,7 @@ TEST_CASE("weather: the formats of real networks are read through declarations",
     ameriflux.units[at(Weather::air_temperature)] = "degC";
     ameriflux.missing = {-9999};
     ameriflux.zone = Zone::parse("-05:00");
-    const auto week = read_weather(real_table("ground/ameriflux/AMF_US-CRT_BASE_HH_20110101-20110107.csv"), ameriflux);
+    const auto week = read_weather(real_text("ground/ameriflux/AMF_US-CRT_BASE_HH_20110101-20110107.csv"), ameriflux);
     CHECK(week.intervals.size() == 7 * 48);
     CHECK(week.intervals[0].begin == utc("2011-01-01T05:00Z"));
     CHECK(week.values(Weather::air_temperature)[0] == Approx(273.15 + 11.17954));
@@ -268,7 +240,7 @@ TEST_CASE("weather: the formats of real networks are read through declarations",
     arm.columns[at(Weather::vapour_pressure)] = WeatherColumn{"vapor_pressure_mean", 0};
     arm.units[at(Weather::vapour_pressure)] = "kPa";
     arm.flags[at(Weather::vapour_pressure)] = WeatherColumn{"qc_vapor_pressure_mean", 0};
-    const auto minutes = read_weather(real_table("ground/arm/sgpmetE13.b1.20190101.000000.csv"), arm);
+    const auto minutes = read_weather(real_text("ground/arm/sgpmetE13.b1.20190101.000000.csv"), arm);
     CHECK(minutes.interval_s == 60);
     CHECK(minutes.values(Weather::vapour_pressure)[*minutes.at(utc("2019-01-01T11:35:30Z"))] == Approx(2.84));
 }

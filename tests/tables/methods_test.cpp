@@ -50,7 +50,7 @@ TEST_CASE("method: an unknown name comes with a suggestion", "[tables][edge]") {
     CHECK(method("clear_sky", "esra2000").parameter("ozone") == nullptr);
     CHECK(method_names("no-such-family").empty());
     CHECK(method_families() ==
-          std::vector<std::string>{"sun_position", "air_mass", "clear_sky", "diffuse_sky", "horizon",
+          std::vector<std::string>{"sun_position", "air_mass", "clear_sky", "diffuse_sky", "real_sky", "horizon",
                                                         "albedo"});
 }
 

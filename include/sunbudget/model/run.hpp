@@ -10,6 +10,7 @@
 #include <vector>
 
 #include "sunbudget/model/light.hpp"
+#include "sunbudget/model/measured_sky.hpp"
 #include "sunbudget/model/terrain.hpp"
 #include "sunbudget/model/time_plan.hpp"
 #include "sunbudget/model/weather_record.hpp"
@@ -113,6 +114,17 @@ struct ZoneTask {
     std::optional<RasterName> cover;  ///< for the shares of classes
 };
 
+/// Where a run's light comes from when the sky is not clear.
+struct RunLight {
+    std::optional<MeasuredReport> measured;
+    std::vector<bool> thin;  ///< bands with too little measured: no data; empty: none
+    /// Clear-sky index, or the mean cloud, of each pixel: one raster for all bands, or one a band. Dims the
+    /// clear sky's light.
+    std::vector<Source> rasters;
+    bool rasters_are_cloud = false;
+    std::vector<double> overcast;       ///< light under a closed cover, by band
+};
+
 /// Everything a plan comes to: resolved, checked and fixed. Shared by all threads.
 struct Run {
     std::string title;
@@ -129,6 +141,7 @@ struct Run {
     std::optional<SkyRaster> sky_raster;
     double light_uncertainty = 0.07;  ///< relative standard uncertainty, the same at all times
     std::shared_ptr<const RunWeather> weather;  ///< nothing without a table
+    RunLight light;
     std::optional<TimePlan> times;
     OutputUnit unit = OutputUnit::w_m2;
     std::vector<OutputLayer> layers;

@@ -2,9 +2,12 @@
 
 #include <array>
 #include <cstddef>
+#include <memory>
+#include <optional>
 #include <string_view>
 
 #include "sunbudget/base/time.hpp"
+#include "sunbudget/model/light_shares.hpp"
 #include "sunbudget/physics/clear_sky.hpp"
 #include "sunbudget/physics/transposition.hpp"
 
@@ -38,6 +41,8 @@ struct Sky {
     /// NaN where the model has none, and for a ground albedo that the run's own takes the place of.
     std::array<MonthlyNumbers, sky_parameter_count> parameters;
     DiffuseModel diffuse = DiffuseModel::hay_davies1980;
+    std::shared_ptr<const LightShares> measured;           ///< of the clear sky's light; nothing: all of it
+    std::optional<std::array<LightShare, 12>> mean_cloud;  ///< by month, a mixture of clear and overcast skies
 
     /// The model with the defaults of its row.
     explicit Sky(ClearModel model = ClearModel::esra2000);
@@ -73,6 +78,7 @@ struct SkyInstant {
     double elevation_rad = 0;                 ///< true, of the sun's centre, above 0
     double height_m = 0;
     double pressure_ratio = 1;  ///< to sea level
+    double duration_s = 0;      ///< of the time around utc that it stands for
 };
 
 /// Light of one moment at one place, in the parts that terrain treats differently.

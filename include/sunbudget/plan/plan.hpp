@@ -179,6 +179,11 @@ struct PlanSky {
     [[nodiscard]] const Maybe<PlanSkyNumbers>& operator[](SkyParameter parameter) const {
         return parameters[static_cast<std::size_t>(parameter)];
     }
+    Maybe<std::variant<Monthly, std::vector<PlanRaster>>> cloud;
+    Maybe<Monthly> overcast;
+    Maybe<Monthly> sunshine;  ///< hours a day
+    Maybe<std::array<double, 2>> angstrom;
+    Maybe<std::vector<PlanRaster>> index;
     friend bool operator==(const PlanSky&, const PlanSky&) = default;
 };
 
