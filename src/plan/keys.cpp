@@ -307,7 +307,7 @@ Form weather_form() {
          {"interval", {duration(60, 86400)}, "length of a row's interval; default: as the rows are apart"},
          {"zone", {of(ValueKind::zone)}, "of the rows' times: UTC, an offset, an IANA name, solar-mean or solar-true", "UTC"},
          {"years", {choice(years_names)}, "typical: the rows stand for every year, whatever theirs is", "own"},
-         {"gaps", {choice(gaps_names)}, "hours without a value: see the rule for thin days and months, or stop", "report"},
+         {"gaps", {choice(gaps_names)}, "report: a day needs 90 % of its light and a month 80 % of its days, else no data; smaller gaps take the day's or month's mean; stop: a sunlit gap stops the run", "report"},
          {"station", {list(number(-180, 180), 2, 2)}, "[latitude, longitude] in degrees; default: the middle of the grid"},
          {"station_elevation", {length(-500, 9000)}, "height above sea level; default: that of the ground where it is one height"}},
         std::move(rules));
