@@ -93,6 +93,7 @@ surface.tif       height of the surface in metres: roofs, tree crowns, bridges, 
 ground.tif        height of the bare ground in metres
 parcels.gpkg      parcels with use and type of owner (layer parcels)
 roofs.gpkg        roofs with kind (flat or pitched), height, material, albedo (layer roofs)
+planting.gpkg     places on parking lots where trees could stand, with their height (layer planting)
 station.csv       a year of hourly weather; stamps are the start of each hour, UTC; sun in W/m2 (sun_beam is
                   normal to the beam), air and ground in degrees Celsius, hum in %, press in hPa, wind in m/s, okta 0-8
 """, encoding="utf-8")

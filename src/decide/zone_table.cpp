@@ -8,9 +8,9 @@
 #include <numeric>
 #include <set>
 
+#include "csv_file.hpp"
 #include "sunbudget/base/error.hpp"
 #include "sunbudget/base/text.hpp"
-#include "sunbudget/raster/output_file.hpp"
 #include "sunbudget/tables/layers.hpp"
 
 namespace sunbudget {
@@ -20,15 +20,6 @@ namespace fs = std::filesystem;
 namespace {
 
 constexpr double nan_value = std::numeric_limits<double>::quiet_NaN();
-
-std::string cell(const std::string& text) {
-    if (text.find_first_of("\",\n\r") == std::string::npos) return text;
-    std::string quoted = "\"";
-    for (const char c : text) quoted += c == '"' ? std::string("\"\"") : std::string(1, c);
-    return quoted + '"';
-}
-
-std::string cell(double number) { return std::isnan(number) ? std::string() : fmt::format("{:.9g}", number); }
 
 /// Ranks from 1 for the largest; equal values in the zones' order.
 std::vector<std::size_t> ranks_of(std::span<const double> values) {
@@ -193,28 +184,7 @@ FeatureRow ZoneTable::row(std::size_t row) const {
 }
 
 void ZoneTable::write_csv(const fs::path& file) const {
-    auto out = OutputFile::create(file);
-    std::uint64_t written = 0;
-    std::string text;
-    const auto flush = [&] {
-        out.write(written, std::as_bytes(std::span(text.data(), text.size())));
-        written += text.size();
-        text.clear();
-    };
-    for (const auto& column : columns_) text += (text.empty() ? "" : ",") + cell(column.name);
-    text += '\n';
-    constexpr std::size_t piece_bytes = std::size_t{1} << 20;
-    for (std::size_t r = 0; r < rows(); ++r) {
-        const auto cells = row(r);
-        std::size_t i = 0;
-        for (const auto& words : cells.texts) text += (i++ == 0 ? "" : ",") + cell(words);
-        for (const double number : cells.numbers) text += "," + cell(number);
-        text += '\n';
-        if (text.size() > piece_bytes) flush();
-    }
-    flush();
-    out.sync();
-    out.close();
+    write_csv_file(file, columns_, rows(), [&](std::size_t r) { return row(r); });
 }
 
 std::vector<std::string> zone_notes(const ZoneQuestion& question, const std::vector<ZoneAnswer>& answers) {

@@ -158,6 +158,16 @@ std::uint64_t bytes_per_pixel(const Run& run) {
     return plain + terrain + a_band * std::min(bands, bands_held);
 }
 
+/// What changes add to it: planes of albedo and of reflected light, or a whole flow of its own.
+std::uint64_t change_bytes_per_pixel(const Run& run) {
+    constexpr std::uint64_t a_plane = sizeof(float), bands_held = 12;
+    const auto held = std::min<std::uint64_t>(run.times ? run.times->bands() : 0, bands_held);
+    std::uint64_t bytes = 0, kept = 0;
+    for (const auto& layer : run.layers) kept += layer.changed && layer.changed->saved && run.changes[layer.changed->change].height ? held : 0;
+    for (const auto& change : run.changes) bytes += change.height ? bytes_per_pixel(run) : (2 + (run.terrain ? held : 0)) * a_plane;
+    return bytes + kept * a_plane;
+}
+
 void check_space(const Run& run, const std::filesystem::path& folder) {
     // The least any run writes: a run that cannot hold even this is refused before it starts.
     const double pixels = static_cast<double>(run.grid.width) * run.grid.height;
@@ -194,9 +204,11 @@ std::uint64_t memory_needed(const Run& run, const EngineOptions& options) {
     // With terrain: sun tables, and coarse heights around the windows out to the reach (measured).
     constexpr std::uint64_t terrain_bytes = 40u << 20;
     const auto input = input_sizes(run);
-    return process_bytes + (run.terrain ? terrain_bytes : 0) + std::min(raster_cache_bytes(options.memory_bytes), input.decoded_bytes) +
+    const auto terrains = static_cast<std::uint64_t>(std::ranges::count_if(run.changes, [](const Change& c) { return c.height.has_value(); })) +
+                          (run.terrain ? 1 : 0);
+    return process_bytes + terrains * terrain_bytes + std::min(raster_cache_bytes(options.memory_bytes), input.decoded_bytes) +
            std::min(waiting_bytes(run, options.memory_bytes), all_overview_bytes(run)) +
-           busy * window * (bytes_per_pixel(run) + input.bytes_per_pixel);
+           busy * window * (bytes_per_pixel(run) + change_bytes_per_pixel(run) + input.bytes_per_pixel);
 }
 
 Execution execute(const Run& run, const EngineOptions& options, const OutputSet& outputs) {

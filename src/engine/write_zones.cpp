@@ -1,3 +1,4 @@
+#include "sunbudget/decide/change_table.hpp"
 #include "sunbudget/decide/zone_table.hpp"
 #include "sunbudget/engine/execute.hpp"
 
@@ -28,7 +29,11 @@ std::vector<std::string> write_zones(const Run& run, const EngineOptions& option
     execution.zones = polygons.all.size();
     execution.zone_notes = polygons.notes;
     for (auto& note : zone_notes(question, answers)) execution.zone_notes.push_back(std::move(note));
-    return {"zones.csv", "zones.gpkg"};
+    if (run.changes.empty()) return {"zones.csv", "zones.gpkg"};
+    const ChangeTable changes(run, question, polygons.all, answers, run.zones->id);
+    changes.write_csv(outputs.staged("changes.csv"));
+    for (auto& note : changes.notes()) execution.zone_notes.push_back(std::move(note));
+    return {"zones.csv", "zones.gpkg", "changes.csv"};
 }
 
 }  // namespace sunbudget

@@ -65,6 +65,10 @@ ElevationReader::ElevationReader(std::span<const Source> sources) {
     for (const auto& source : sources) readers_.emplace_back(source);
 }
 
+ElevationReader::ElevationReader(const Terrain& terrain) : ElevationReader(terrain.elevation) {
+    if (terrain.raised) raised_.emplace(*terrain.raised);
+}
+
 void ElevationReader::read_all(const Window& window, Plane<float>& heights_m) {
     readers_.front().read(window, heights_m);
     for (std::size_t n = 1; n < readers_.size(); ++n) {
@@ -84,6 +88,7 @@ void ElevationReader::read(const Window& window, Plane<float>& heights_m) {
     if (heights_m.width() != window.width || heights_m.height() != window.height)
         heights_m = Plane<float>(window.width, window.height);
     bridge_holes(wide_, heights_m);
+    if (raised_) raised_->heights(window, heights_m);
 }
 
 std::uint64_t ElevationReader::infinities() const {

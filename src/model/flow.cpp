@@ -6,6 +6,7 @@
 #include <numbers>
 #include <optional>
 
+#include "beside.hpp"
 #include "sunbudget/base/parallel.hpp"
 #include "sunbudget/model/neighbourhood.hpp"
 #include "sunbudget/model/probe.hpp"
@@ -67,10 +68,34 @@ struct Needs {
           reflected(wants(run, {LayerId::insolation, LayerId::reflected, LayerId::net_shortwave})) {}
 };
 
-/// Light of one band on the surface.
-struct BandPlanes {
-    Plane<float> direct, diffuse, reflected, hours;
+/// What the light layers of a band are made from.
+struct LitBand {
+    const BandPlanes& light;
+    const Plane<float>& diffuse;
+    const Plane<float>& reflected;
+    const Plane<float>& albedo;
 };
+
+/// A row of a layer in W m-2 (hours for each 24). `rest` is scratch.
+void light_row(LayerId id, const LitBand& lit, bool terrain, int r, std::vector<float>& rest, std::span<float> out) {
+    const auto beam = lit.light.direct.row(r), sky = lit.diffuse.row(r);
+    std::span<const float> around = sky;
+    if (terrain && (id == LayerId::insolation || id == LayerId::net_shortwave)) {
+        rest.resize(sky.size());
+        std::transform(sky.begin(), sky.end(), lit.reflected.row(r).begin(), rest.begin(), std::plus<>());
+        around = rest;
+    }
+    const auto copy = [&](const Plane<float>& plane) { std::copy(plane.row(r).begin(), plane.row(r).end(), out.begin()); };
+    switch (id) {
+        case LayerId::direct: copy(lit.light.direct); break;
+        case LayerId::diffuse: copy(lit.diffuse); break;
+        case LayerId::reflected: copy(lit.reflected); break;
+        case LayerId::sunlit_hours: copy(lit.light.hours); break;
+        case LayerId::insolation: std::transform(beam.begin(), beam.end(), around.begin(), out.begin(), std::plus<>()); break;
+        case LayerId::net_shortwave: absorbed_shortwave(lit.albedo.row(r), beam, lit.albedo.row(r), around, out); break;
+        default: break;
+    }
+}
 
 /// Adds a flag where there is no value, unless another flag says why already. Without branches.
 void flag_nan(std::span<const float> values, std::span<std::uint16_t> flags, std::uint16_t flag, std::uint16_t unless) {
@@ -87,6 +112,8 @@ SharedLight::SharedLight(const Run& run, int threads, const std::filesystem::pat
         field_ = std::make_unique<LightField>(*run.times, run.sky, run.grid, threads, constant_height(run), run.terrain.has_value(),
                                               run.sky_raster ? &*run.sky_raster : nullptr);
     if (run.terrain) terrain_ = std::make_unique<SharedTerrain>(*run.terrain, run.grid, scratch_folder);
+    for (std::size_t i = 0; i < run.changes.size(); ++i)
+        if (run.changes[i].height) raised_.push_back(std::make_unique<RaisedRun>(run, i, threads, scratch_folder));
 }
 SharedLight::~SharedLight() = default;
 
@@ -110,8 +137,11 @@ struct Flow::State {
     std::array<Plane<float>, OpenLight::values> open;
     std::map<std::uint16_t, std::uint64_t> flag_counts;
     Probe* probe = nullptr;
+    Beside beside;                               ///< changes of albedo
+    std::vector<std::unique_ptr<State>> raised;  ///< changes of height, as shared.raised()
 
-    State(const Run& r, const SharedLight& s, int t) : run(r), shared(s), thread(t), needs(r), surface(r) {
+    State(const Run& r, const SharedLight& s, int t) : run(r), shared(s), thread(t), needs(r), surface(r), beside(r) {
+        for (const auto& one : shared.raised()) raised.push_back(std::make_unique<State>(one->run, one->light(), t));
         for (const auto& raster : run.light.rasters) cloud_readers.emplace_back(raster);
         if (!run.terrain) return;
         if (shared.field() == nullptr) own_locator.emplace(run.grid);
@@ -134,11 +164,11 @@ struct Flow::State {
     void fill_open(std::size_t block, std::size_t band);
     [[nodiscard]] bool ground_lights_sky() const;
     void add_from_ground(std::size_t block, std::size_t band, Plane<float>& diffuse);
+    void add_thrown_back(std::size_t block, Plane<float>& seen, Plane<float>& diffuse);
     void compose(const ShadedBlock& part, std::size_t band);
     void dim(const ShadedBlock& part, std::size_t band, double overcast);
     void see_albedo();
     void put_surface_layers(Sink& sink);
-    void put_light_layers(std::size_t band, const BandPlanes& planes, Sink& sink);
     template <class Value>
     void note(const Plane<Value>& plane, const Window& frame, std::optional<std::size_t> band, const char* name, const char* unit,
               const char* text) const;
@@ -146,6 +176,9 @@ struct Flow::State {
     void note_open(const Window& block, std::size_t band) const;
     void note_shaded(const ShadedBlock& part, std::size_t band) const;
     void note_band(std::size_t band, const BandPlanes& planes) const;
+    void put_light_layers(std::size_t band, std::size_t held, Sink& sink);
+    void begin(const Window& where);
+    void some_bands(std::size_t first, std::size_t count, Sink& sink);
     void put_plane(std::size_t n, std::size_t band, const std::function<void(int, std::span<float>)>& row, Sink& sink);
 };
 
@@ -194,7 +227,8 @@ bool Flow::State::ground_lights_sky() const {
     return shared.field() != nullptr && shared.field()->has(LightField::Part::thrown_back);
 }
 
-/// Light to and fro between ground and sky over one block of the lattice, added to a plane of sky light.
+/// Light to and fro between ground and sky over one block of the lattice, added to a plane of sky light; for
+/// changes of albedo to a copy of it.
 void Flow::State::add_from_ground(std::size_t block, std::size_t band, Plane<float>& diffuse) {
     using Part = LightField::Part;
     if (!ground_lights_sky()) return;
@@ -205,9 +239,22 @@ void Flow::State::add_from_ground(std::size_t block, std::size_t band, Plane<flo
         shared.field()->fill(light_blocks[block], band, part, heights_m, plane);
     }
     const auto& where = light_blocks[block].window();
+    for (auto& change : beside.albedos) {
+        if (!change.touched) continue;
+        resize(change.open_diffuse, window);
+        for (int r = 0; r < where.height; ++r)
+            std::ranges::copy(over(diffuse, window, where, r), over(change.open_diffuse, window, where, r).begin());
+        add_thrown_back(block, change.albedo_seen, change.open_diffuse);
+    }
+    add_thrown_back(block, albedo_seen, diffuse);
+}
+
+void Flow::State::add_thrown_back(std::size_t block, Plane<float>& seen, Plane<float>& diffuse) {
+    using Part = LightField::Part;
+    const auto& where = light_blocks[block].window();
     const auto row_of = [&](Part part, int r) { return over(open[static_cast<std::size_t>(part)], window, where, r); };
     for (int r = 0; r < where.height; ++r)
-        add_ground_and_sky(over(albedo_seen, window, where, r), row_of(Part::thrown_back, r), row_of(Part::thrown_back_twice, r),
+        add_ground_and_sky(over(seen, window, where, r), row_of(Part::thrown_back, r), row_of(Part::thrown_back_twice, r),
                            over(diffuse, window, where, r));
 }
 
@@ -243,10 +290,22 @@ void Flow::State::flat_bands(std::size_t first, std::size_t count) {
             shared.field()->fill(light_blocks[b], first + i, LightField::Part::beam_up, heights_m, bands[i].direct);
             shared.field()->fill(light_blocks[b], first + i, LightField::Part::diffuse, heights_m, bands[i].diffuse);
             add_from_ground(b, first + i, bands[i].diffuse);
+            if (!ground_lights_sky()) continue;
+            for (auto& change : beside.albedos)
+                for (int r = 0; change.touched && r < light_blocks[b].window().height; ++r)
+                    std::ranges::copy(over(change.open_diffuse, window, light_blocks[b].window(), r),
+                                      over(change.diffuse[i], window, light_blocks[b].window(), r).begin());
         }
         for (int r = 0; r < window.height && !clear_index.empty(); ++r) {
             const auto beam = bands[i].direct.row(r), sky = bands[i].diffuse.row(r);
             const std::vector<float> open_beam(beam.begin(), beam.end()), open_sky(sky.begin(), sky.end());
+            for (auto& change : beside.albedos) {
+                if (!change.touched || !ground_lights_sky()) continue;
+                const auto own = change.diffuse[i].row(r);
+                const std::vector<float> open_own(own.begin(), own.end());
+                std::vector<float> unused(beam.begin(), beam.end());
+                dim_row({clear_index[i].row(r), open_beam, open_own, {}, unused, own, {}}, run.light.overcast[first + i]);
+            }
             dim_row({clear_index[i].row(r), open_beam, open_sky, {}, beam, sky, {}}, run.light.overcast[first + i]);
         }
     }
@@ -343,6 +402,16 @@ void Flow::State::compose(const ShadedBlock& part, std::size_t band) {
         if (needs.reflected)
             light_from_ground(view, over(albedo_seen, window, part.block, r), open_row(Part::beam_up, r), open_row(Part::diffuse, r),
                               over(out.reflected, window, part.block, r));
+        for (auto& change : beside.albedos) {
+            if (!change.touched) continue;
+            const auto diffuse = ground_lights_sky() ? over(change.open_diffuse, window, part.block, r) : open_row(Part::diffuse, r);
+            if (needs.suns && ground_lights_sky())
+                skylight({view, diffuse, open_row(Part::horizon, r), circumsolar, open_row(Part::circumsolar_up, r)}, part.up.row(r),
+                         over(change.diffuse[band], window, part.block, r));
+            if (needs.reflected)
+                light_from_ground(view, over(change.albedo_seen, window, part.block, r), open_row(Part::beam_up, r), diffuse,
+                                  over(change.reflected[band], window, part.block, r));
+        }
     }
 }
 
@@ -350,11 +419,25 @@ void Flow::State::compose(const ShadedBlock& part, std::size_t band) {
 void Flow::State::dim(const ShadedBlock& part, std::size_t band, double overcast) {
     auto& out = bands[band];
     const auto open_row = [&](LightField::Part p, int r) { return over(open[static_cast<std::size_t>(p)], window, part.block, r); };
-    for (int r = 0; r < part.block.height; ++r)
+    std::vector<float> beam, sky;
+    for (int r = 0; r < part.block.height; ++r) {
+        for (auto& change : beside.albedos) {
+            if (!change.touched) continue;
+            const auto before = over(out.direct, window, part.block, r), even = over(out.diffuse, window, part.block, r);
+            beam.assign(before.begin(), before.end());
+            sky.assign(even.begin(), even.end());
+            const bool own_sky = ground_lights_sky();
+            dim_row({over(clear_index[band], window, part.block, r), open_row(LightField::Part::beam_up, r),
+                     own_sky ? over(change.open_diffuse, window, part.block, r) : open_row(LightField::Part::diffuse, r),
+                     over(sky_view, window, part.block, r), beam, own_sky ? over(change.diffuse[band], window, part.block, r) : sky,
+                     over(change.reflected[band], window, part.block, r)},
+                    overcast);
+        }
         dim_row({over(clear_index[band], window, part.block, r), open_row(LightField::Part::beam_up, r), open_row(LightField::Part::diffuse, r),
                  over(sky_view, window, part.block, r), over(out.direct, window, part.block, r), over(out.diffuse, window, part.block, r),
                  over(out.reflected, window, part.block, r)},
                 overcast);
+    }
 }
 
 /// The mean albedo around each pixel, block by block so that its bits hang on the lattice alone.
@@ -372,6 +455,7 @@ void Flow::State::see_albedo() {
         const auto mean = mean_around(around, near_steps);
         for (int r = 0; r < block.height; ++r)
             std::copy(mean.row(r).begin(), mean.row(r).end(), over(albedo_seen, window, block, r).begin());
+        beside.see(block, window, around, mean);
     }
 }
 
@@ -443,6 +527,7 @@ void Flow::State::put_plane(std::size_t n, std::size_t band, const std::function
         round_row(stored.row(r), run.layers[n].file.quantum);
     }
     sink.put(n, band, window, stored);
+    beside.keep(n, band, stored);
 }
 
 void Flow::State::put_surface_layers(Sink& sink) {
@@ -450,43 +535,76 @@ void Flow::State::put_surface_layers(Sink& sink) {
     const auto copied = [](const Plane<float>& plane) {
         return [&plane](int r, std::span<float> out) { std::copy(plane.row(r).begin(), plane.row(r).end(), out.begin()); };
     };
-    for (std::size_t n = 0; n < run.layers.size(); ++n) switch (run.layers[n].layer->id) {
-            case LayerId::albedo: put_plane(n, 0, copied(albedo), sink); break;
+    for (std::size_t n = 0; n < run.layers.size(); ++n) {
+        if (run.layers[n].changed) continue;
+        switch (run.layers[n].layer->id) {
+            case LayerId::albedo:
+                put_plane(n, 0, copied(albedo), sink);
+                beside.put(n, 0, stored, [](const auto& change, int r, std::span<float> out) {
+                    std::copy(change.albedo.row(r).begin(), change.albedo.row(r).end(), out.begin());
+                }, sink);
+                break;
             case LayerId::slope: put_plane(n, 0, copied(slope_deg), sink); break;
             case LayerId::aspect: put_plane(n, 0, copied(aspect_deg), sink); break;
             case LayerId::sky_view: put_plane(n, 0, copied(sky_view), sink); break;
             case LayerId::quality: sink.put(n, 0, window, flags); break;
             default: break;
         }
+    }
+    beside.put_treated(sink);
 }
 
-void Flow::State::put_light_layers(std::size_t band, const BandPlanes& planes, Sink& sink) {
-    note_band(band, planes);
-    Plane<float> from_around = run.terrain ? Plane<float>(window.width, window.height) : Plane<float>();
+void Flow::State::put_light_layers(std::size_t band, std::size_t held, Sink& sink) {
+    std::vector<float> rest;
+    const auto& light = bands[held];
+    note_band(band, light);
     for (std::size_t n = 0; n < run.layers.size(); ++n) {
         const auto& layer = run.layers[n];
-        if (!layer.layer->needs_sun) continue;
+        if (!layer.layer->needs_sun || layer.changed) continue;
         const auto factor = static_cast<float>(layer.factors[band]);
-        put_plane(n, band, [&](int r, std::span<float> out) {
-            const auto beam = planes.direct.row(r), sky = planes.diffuse.row(r);
-            std::span<const float> rest = sky;
-            if (run.terrain && (layer.layer->id == LayerId::insolation || layer.layer->id == LayerId::net_shortwave)) {
-                const auto sum = from_around.row(r);
-                std::transform(sky.begin(), sky.end(), planes.reflected.row(r).begin(), sum.begin(), std::plus<>());
-                rest = sum;
-            }
-            switch (layer.layer->id) {
-                case LayerId::direct: std::copy(beam.begin(), beam.end(), out.begin()); break;
-                case LayerId::diffuse: std::copy(sky.begin(), sky.end(), out.begin()); break;
-                case LayerId::reflected: std::copy(planes.reflected.row(r).begin(), planes.reflected.row(r).end(), out.begin()); break;
-                case LayerId::sunlit_hours: std::copy(planes.hours.row(r).begin(), planes.hours.row(r).end(), out.begin()); break;
-                case LayerId::insolation: std::transform(beam.begin(), beam.end(), rest.begin(), out.begin(), std::plus<>()); break;
-                case LayerId::net_shortwave: absorbed_shortwave(albedo.row(r), beam, albedo.row(r), rest, out); break;
-                default: break;
-            }
-            const bool thin = !run.light.thin.empty() && run.light.thin[band] && layer.layer->id != LayerId::sunlit_hours;
+        const bool thin = !run.light.thin.empty() && run.light.thin[band] && layer.layer->id != LayerId::sunlit_hours;
+        const auto row_of = [&](const LitBand& lit, int r, std::span<float> out) {
+            light_row(layer.layer->id, lit, run.terrain.has_value(), r, rest, out);
             for (auto& value : out) value = thin ? std::numeric_limits<float>::quiet_NaN() : value * factor;
+        };
+        put_plane(n, band, [&](int r, std::span<float> out) { row_of({light, light.diffuse, light.reflected, albedo}, r, out); }, sink);
+        beside.put(n, band, stored, [&](const ChangedAlbedo& change, int r, std::span<float> out) {
+            row_of({light, ground_lights_sky() ? change.diffuse[held] : light.diffuse, run.terrain ? change.reflected[held] : light.reflected,
+                    change.albedo},
+                   r, out);
         }, sink);
+    }
+}
+
+/// Surface, heights and open light of a window.
+void Flow::State::begin(const Window& where) {
+    window = where;
+    surface.read(window, albedo, flags);
+    read_heights();
+    prepare_light();
+    beside.begin(window, albedo);
+    for (auto& one : raised) one->begin(where);
+}
+
+/// From shadows to finished planes; the first bands bring the surface's own layers.
+void Flow::State::some_bands(std::size_t first, std::size_t count, Sink& sink) {
+    bands.resize(std::max(bands.size(), count));
+    read_clouds(first, count);
+    beside.some_bands(first, count, ground_lights_sky());
+    if (run.terrain)
+        terrain_bands(first, count);
+    else
+        flat_bands(first, count);
+    if (first == 0) {
+        if (count > 0)
+            flag_missing_light(run.terrain ? open[static_cast<std::size_t>(LightField::Part::beam_up)] : bands[0].direct);
+        count_flags();
+        put_surface_layers(sink);
+    }
+    for (std::size_t i = 0; i < count; ++i) put_light_layers(first + i, i, sink);
+    for (std::size_t i = 0; i < raised.size(); ++i) {
+        SavedSink after(beside, *shared.raised()[i], sink);
+        raised[i]->some_bands(first, count, after);
     }
 }
 
@@ -496,32 +614,13 @@ Flow::Flow(Flow&&) noexcept = default;
 
 void Flow::compute(const Window& window, Sink& sink) {
     auto& s = *state_;
-    s.window = window;
-    s.surface.read(window, s.albedo, s.flags);
-    s.read_heights();
-    s.prepare_light();
+    s.begin(window);
     const std::size_t all = s.run.times ? s.run.times->bands() : 0;
-    s.bands.resize(std::min(all, bands_at_once));
-    if (all == 0) {
-        if (s.run.terrain) s.terrain_bands(0, 0);
-        s.count_flags();
-        s.put_surface_layers(sink);
-        return;
-    }
-    for (std::size_t first = 0; first < all; first += bands_at_once) {
-        const std::size_t count = std::min(bands_at_once, all - first);
-        s.read_clouds(first, count);
-        if (s.run.terrain)
-            s.terrain_bands(first, count);
-        else
-            s.flat_bands(first, count);
-        if (first == 0) {
-            s.flag_missing_light(s.run.terrain ? s.open[static_cast<std::size_t>(LightField::Part::beam_up)] : s.bands[0].direct);
-            s.count_flags();
-            s.put_surface_layers(sink);
-        }
-        for (std::size_t i = 0; i < count; ++i) s.put_light_layers(first + i, s.bands[i], sink);
-    }
+    std::size_t first = 0;
+    do {
+        s.some_bands(first, std::min(bands_at_once, all - first), sink);
+        first += bands_at_once;
+    } while (first < all);
 }
 
 void Flow::watch(Probe& probe) {

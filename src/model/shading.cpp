@@ -58,7 +58,7 @@ std::optional<Frame> frame_of(const Window& block, const Locator& locator) {
 /// Mean height of pixels spread evenly over the grid; 0 where none of them has one.
 double mean_height_m(const Terrain& terrain, const Grid& grid) {
     constexpr long samples = 16;
-    ElevationReader reader(terrain.elevation);
+    ElevationReader reader(terrain);
     Plane<float> height_m;
     double sum = 0, count = 0;
     for (long r = 0; r < samples; ++r)
@@ -147,7 +147,7 @@ struct BlockShader::State {
     Probe* probe = nullptr;
 
     State(SharedTerrain& s, const LightField* l, const Locator& where, int t)
-        : shared(s), light(l), locator(where), thread(t), elevation(s.terrain().elevation) {
+        : shared(s), light(l), locator(where), thread(t), elevation(s.terrain()) {
         if (const auto* other = std::get_if<std::vector<Source>>(&s.terrain().slope_from)) slopes.emplace(*other);
     }
 

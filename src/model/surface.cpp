@@ -26,12 +26,14 @@ struct SurfaceReader::State {
     const Run& run;
     std::optional<Reader> reader;
     std::optional<ReflectanceReader> image;
+    std::optional<ChangeReader> change;
     Plane<std::int32_t> codes;
     Plane<float> fill_albedo;
     Plane<std::uint16_t> fill_flags;
     std::vector<float> sources;  // scratch: a row of the quality layer's source numbers
 
     explicit State(const Run& r) : run(r) {
+        if (run.carried_out) change.emplace(*run.carried_out);
         if (const auto* cover = std::get_if<CoverSurface>(&run.surface)) reader.emplace(cover->codes);
         if (const auto* surface = std::get_if<ReflectanceSurface>(&run.surface)) {
             image.emplace(*surface);
@@ -121,6 +123,7 @@ void SurfaceReader::read(const Window& window, Plane<float>& albedo, Plane<std::
         state_->image->read(window, albedo, flags);
         if (image->fill) state_->fill_from(*image->fill, window, albedo, flags);
     }
+    if (state_->change) state_->change->albedo(window, albedo);
 }
 
 std::uint64_t SurfaceReader::infinities() const {

@@ -66,8 +66,35 @@ void visit_weather(Weather& weather, Visitor& v) {
     v.value("station_elevation", weather.station_elevation);
 }
 
+template <class Change, class Visitor>
+void visit_change(Change& change, Visitor& v) {
+    v.value("name", change.name);
+    v.map("where", change.where, [&](auto& where) {
+        v.value("file", where.file);
+        v.value("layer", where.layer);
+        v.value("query", where.query);
+        v.value("classes", where.classes);
+    });
+    v.map("albedo", change.albedo, [&](auto& albedo) {
+        v.value("initial", albedo.initial);
+        v.value("aged", albedo.aged);
+        v.value("low", albedo.low);
+        v.value("high", albedo.high);
+    });
+    v.value("class", change.to_class);
+    v.map("height", change.height, [&](auto& height) {
+        v.value("add", height.add);
+        v.value("attribute", height.attribute);
+        v.value("raster", height.raster);
+    });
+    v.value("treatable", change.treatable);
+    v.value("lifetime", change.lifetime);
+    v.value("cost", change.cost);
+}
+
 /// Names every member of a Plan by its key, once for reading, writing and filling in defaults.
-/// A visitor has `value(name, member)`, `duration(name, member)` and `map(name, visit_inside)`.
+/// A visitor has `value(name, member)`, `duration(name, member)`, `map(name, visit_inside)` and
+/// `list(name, members, visit_inside)` for a list of maps.
 template <class P, class Visitor>
 void visit_plan(P& plan, Visitor& v) {
     v.value("title", plan.title);
@@ -135,6 +162,7 @@ void visit_plan(P& plan, Visitor& v) {
         v.value("layers", zones.layers);
         v.value("above", zones.above);
     });
+    v.list("changes", plan.changes, [&](auto& change) { visit_change(change, v); });
     v.map("engine", [&] { v.value("tile", plan.engine.tile); });
 }
 

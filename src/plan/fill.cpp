@@ -47,6 +47,9 @@ class Typed {
     }
     static void get(const Node& node, double& value) { value = *read_number(node); }
     static void get(const Node& node, int& value) { value = static_cast<int>(*read_integer(node)); }
+    static void get(const Node& node, std::vector<int>& value) {
+        for (const auto& item : node.children) value.push_back(static_cast<int>(*read_integer(item)));
+    }
     static void get(const Node& node, WeatherColumn& value) {
         if (const auto number = read_integer(node))
             value.number = static_cast<int>(*number);
@@ -175,6 +178,18 @@ class Filler {
         });
     }
 
+    template <class Item, class Inside>
+    void list(const char* name, std::vector<Item>& items, const Inside& visit_inside) {
+        if (!node_->has(name)) return;
+        const Node* outside = node_;
+        for (const auto& child : outside->find(name)->children) {
+            node_ = &child;
+            items.emplace_back().place = child.place;
+            visit_inside(items.back());
+        }
+        node_ = outside;
+    }
+
   private:
     template <class Section>
     static Place& place_of(Section& section) {
@@ -209,6 +224,10 @@ class DefaultFiller {
     template <class Section, class Inside>
     void map(const char* name, std::optional<Section>& section, const Inside& visit_inside) {
         if (section) map(name, [&] { visit_inside(*section); });
+    }
+    template <class Item, class Inside>
+    void list(const char* name, std::vector<Item>& items, const Inside& visit_inside) {
+        for (auto& item : items) map(name, [&] { visit_inside(item); });
     }
 
   private:

@@ -74,6 +74,8 @@ class Resolver {
         resolve_clouds(plan_, options_, run_, problems_);
         problems_.throw_if_any();
         resolve_layers(plan_, run_, problems_);
+        problems_.throw_if_any();
+        resolve_changes(plan_, options_, run_, problems_);
         resolve_zones(plan_, run_, problems_);
         refuse_overwriting_inputs();
         problems_.throw_if_any();
@@ -136,7 +138,7 @@ class Resolver {
             for (const auto& layer : run_.layers)
                 files.push_back(plan_.outputs.directory->value.file / (layer.file.name + ".tif"));
         if (plan_.outputs.directory && plan_.zones)
-            for (const auto* name : {"zones.csv", "zones.gpkg"}) files.push_back(plan_.outputs.directory->value.file / name);
+            for (const auto* name : {"zones.csv", "zones.gpkg", "changes.csv"}) files.push_back(plan_.outputs.directory->value.file / name);
         return files;
     }
 
@@ -147,6 +149,8 @@ class Resolver {
             if (const auto* path = std::get_if<PlanPath>(&**plan_.grid.like)) files.emplace_back(path->file, plan_.grid.like->place);
         if (plan_.weather && plan_.weather->table) files.emplace_back((**plan_.weather->table).file, plan_.weather->table->place);
         if (plan_.zones) files.emplace_back(plan_.zones->file->file, plan_.zones->file.place);
+        for (const auto& change : plan_.changes)
+            if (change.where && change.where->file) files.emplace_back((**change.where->file).file, change.where->file->place);
         if (plan_.surface.cover)
             if (const auto* path = std::get_if<PlanPath>(&*plan_.surface.cover->classes))
                 files.emplace_back(path->file, plan_.surface.cover->classes.place);
@@ -196,6 +200,9 @@ std::vector<std::pair<RasterName, Place>> read_rasters(const Plan& plan) {
             for (const auto& raster : *list) rasters.emplace_back(raster_of(raster), plan.sky.cloud->place);
     if (plan.sky.index)
         for (const auto& raster : **plan.sky.index) rasters.emplace_back(raster_of(raster), plan.sky.index->place);
+    for (const auto& change : plan.changes)
+        if (change.height && change.height->raster)
+            rasters.emplace_back(raster_of(**change.height->raster), change.height->raster->place);
     return rasters;
 }
 

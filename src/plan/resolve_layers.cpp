@@ -74,6 +74,8 @@ void describe_flags(LayerFile& file) {
             fmt::format("(value & {}) == {}: {}", row.mask, row.value, row.text);
 }
 
+}  // namespace
+
 OutputLayer output_layer(const Layer& layer, const Run& run) {
     OutputLayer out{&layer, {}, {}};
     auto& file = out.file;
@@ -102,8 +104,6 @@ OutputLayer output_layer(const Layer& layer, const Run& run) {
     return out;
 }
 
-}  // namespace
-
 void resolve_layers(const Plan& plan, Run& run, RunProblems& problems) {
     if (plan.outputs.unit) run.unit = **plan.outputs.unit;
     if (plan.outputs.format) run.overviews = **plan.outputs.format == FileFormat::cog;
@@ -120,6 +120,11 @@ void resolve_zones(const Plan& plan, Run& run, RunProblems& problems) {
     ZoneTask task{{zones.file->file, zones.layer ? **zones.layer : std::string(), {}}, **zones.id, {}, {}, {}};
     if (zones.above) task.above = **zones.above;
     for (const auto& id : zones.layers) task.layers.push_back(layer(*id).name);
+    if (!zones.layers.empty())
+        for (const auto& output : run.layers)
+            if (output.changed && (output.layer->id == LayerId::treated ||
+                                   std::ranges::find(task.layers, run.layers[output.changed->base].file.name) != task.layers.end()))
+                task.layers.push_back(output.file.name);
     if (zones.layers.empty())
         for (const auto& output : run.layers)
             if (output.layer->quantity != Quantity::flags && output.layer->id != LayerId::aspect) task.layers.push_back(output.file.name);

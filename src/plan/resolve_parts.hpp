@@ -51,6 +51,10 @@ void resolve_weather(const Plan& plan, const ResolveOptions& options, Run& run, 
 /// Last of the sky: what the table or the plan's clouds make of it.
 void resolve_clouds(const Plan& plan, const ResolveOptions& options, Run& run, RunProblems& problems);
 void resolve_layers(const Plan& plan, Run& run, RunProblems& problems);
+/// A layer of the run as it is: file, bands, units, metadata.
+[[nodiscard]] OutputLayer output_layer(const Layer& layer, const Run& run);
+/// After the layers, to which it adds those of the changes.
+void resolve_changes(const Plan& plan, const ResolveOptions& options, Run& run, RunProblems& problems);
 /// Adds the slope to the layers where zones need it.
 void resolve_zones(const Plan& plan, Run& run, RunProblems& problems);
 

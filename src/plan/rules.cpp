@@ -27,6 +27,7 @@ class CrossCheck {
         directions();
         zones();
         sky();
+        for (const auto& change : plan_.changes) this->change(change);
         if (plan_.weather) weather(*plan_.weather);
         if (plan_.surface.reflectance) reflectance(*plan_.surface.reflectance);
     }
@@ -63,6 +64,10 @@ class CrossCheck {
     void directions() const;
     void zones() const;
     void sky() const;
+    void change(const PlanChange& change) const;
+    void change_name(const PlanChange& change) const;
+    void change_albedo(const PlanChange& change) const;
+    void change_height(const PlanChange& change) const;
     void weather(const PlanWeather& weather) const;
     void reflectance(const PlanReflectance& image) const;
     void reflectance_weights(const PlanReflectance& image) const;
@@ -212,6 +217,57 @@ void CrossCheck::sky() const {
                       own.empty() ? "it takes no parameters: leave it out, or choose another model"
                                   : "its parameters are " + joined(own, ", "));
     }
+}
+
+void CrossCheck::change(const PlanChange& change) const {
+    change_name(change);
+    change_albedo(change);
+    change_height(change);
+    if (!change.albedo && !change.to_class && !change.height)
+        mistakes_.add(change.place, "the change changes nothing", "give albedo, class or height");
+    if (!change.where) return;
+    if (!change.where->file && !change.where->classes)
+        mistakes_.add(change.where->place, "nothing says where", "give file, or classes of the land cover");
+    if (change.where->classes && !written("surface.cover"))
+        mistakes_.add(change.where->classes->place, "the plan has no land cover to find classes in", "add surface.cover, or give file");
+}
+
+/// It becomes part of file names.
+void CrossCheck::change_name(const PlanChange& change) const {
+    const auto& name = *change.name;
+    const auto is_plain = [](char c) {
+        return (c >= 'a' && c <= 'z') || (c >= 'A' && c <= 'Z') || (c >= '0' && c <= '9') || c == '-' || c == '_';
+    };
+    if (!std::ranges::all_of(name, is_plain) || name.find("__") != name.npos || name.size() > 40)
+        mistakes_.add(change.name.place, "\"" + name + "\" cannot be part of a file's name here",
+                      "use letters, digits, - and single _, at most 40");
+    const auto first = std::ranges::find(plan_.changes, change.name, &PlanChange::name);
+    if (&*first != &change)
+        mistakes_.add(change.name.place, "two changes are named \"" + name + "\"", "give each its own name");
+}
+
+void CrossCheck::change_albedo(const PlanChange& change) const {
+    if (change.to_class && !written("surface.cover"))
+        mistakes_.add(change.to_class->place, "the plan has no land cover whose table has the class", "add surface.cover, or give albedo");
+    if (!change.albedo) return;
+    const auto& [place, initial, aged, low, high] = *change.albedo;
+    if (!written("surface")) mistakes_.add(place, "there is no albedo to change", "add surface");
+    if (!initial && !aged) mistakes_.add(place, "the albedo is not given", "give aged, or initial");
+    if (low && high && **low > **high) mistakes_.add(low->place, "low lies above high", "exchange the two");
+    if (low && aged && **low > **aged) mistakes_.add(low->place, "low lies above aged", "low is the least to expect of an aged surface");
+    if (high && aged && **high < **aged) mistakes_.add(high->place, "high lies below aged", "high is the most to expect of an aged surface");
+}
+
+void CrossCheck::change_height(const PlanChange& change) const {
+    if (!change.height) return;
+    if (!has_elevation_raster())
+        mistakes_.add(change.height->place, "there are no heights to change", "add terrain.elevation with a raster");
+    if (change.height->attribute && !(change.where && change.where->file))
+        mistakes_.add(change.height->attribute->place, "an attribute belongs to polygons", "add where with file");
+    if (change.where && change.where->classes)
+        mistakes_.add(change.where->classes->place, "heights change inside polygons only, not by class", "give file alone");
+    if (change.treatable && **change.treatable < 1)
+        mistakes_.add(change.treatable->place, "ground cannot be raised in part", "choose the polygons with query, and leave treatable out");
 }
 
 void CrossCheck::unit() const {

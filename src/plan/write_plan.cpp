@@ -127,6 +127,19 @@ class Writer {
     void map(const char* name, const std::optional<Section>& section, const Inside& visit_inside) {
         if (section) map(name, [&] { visit_inside(*section); });
     }
+    template <class Item, class Inside>
+    void list(const char* name, const std::vector<Item>& items, const Inside& visit_inside) {
+        Node list;
+        list.shape = Node::Shape::list;
+        for (const auto& item : items) {
+            Node outside = std::exchange(root_, {});
+            root_.shape = Node::Shape::map;
+            visit_inside(item);
+            std::swap(outside, root_);
+            list.children.push_back(std::move(outside));
+        }
+        if (!list.children.empty()) add(name, std::move(list));
+    }
     void add(const char* name, Node node) {
         node.key = name;
         root_.children.push_back(std::move(node));
@@ -146,6 +159,7 @@ class Writer {
     [[nodiscard]] Node node_of(const std::vector<double>& numbers) const {
         return numbers.size() == 1 ? number_node(numbers.front()) : list_of(numbers);
     }
+    [[nodiscard]] Node node_of(const std::vector<int>& numbers) const { return list_of(numbers); }
     [[nodiscard]] Node node_of(const std::array<double, 2>& place) const { return list_of(place); }
     [[nodiscard]] Node node_of(double number) const { return number_node(number); }
     [[nodiscard]] Node node_of(int number) const { return number_node(number); }

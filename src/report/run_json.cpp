@@ -71,6 +71,22 @@ Json classes_json(const Run& run) {
     return classes;
 }
 
+Json changes_json(const Run& run) {
+    Json changes = Json::array();
+    for (const auto& change : run.changes) {
+        Json json{{"name", change.name}};
+        if (!change.case_name.empty()) json["case"] = change.case_name;
+        if (change.albedo) json["albedo"] = *change.albedo;
+        json["treatable"] = change.treatable;
+        json["raises_the_ground"] = change.height.has_value();
+        if (change.where) json["polygons"] = change.where->polygons().size();
+        if (change.lifetime_years) json["lifetime_years"] = *change.lifetime_years;
+        if (change.cost_per_m2) json["cost_per_m2"] = *change.cost_per_m2;
+        changes.push_back(std::move(json));
+    }
+    return changes;
+}
+
 Json methods_json(const Run& run) {
     Json methods = Json::array();
     for (const auto* method : run.methods)
@@ -263,6 +279,7 @@ std::string run_json(const Run& run, const Execution& execution) {
         json["image"]["unused_pixels"] = reasons_json(reasons_of(*image, execution));
     }
     if (!run.classes.empty()) json["classes"] = classes_json(run);
+    if (!run.changes.empty()) json["changes"] = changes_json(run);
     json["methods"] = methods_json(run);
     json["layers"] = layers_json(run, execution);
     if (run.zones) json["zones"] = {{"file", "zones.csv"}, {"shapes", "zones.gpkg"}, {"count", execution.zones}, {"notes", execution.zone_notes}};
@@ -277,6 +294,7 @@ std::string run_json(const Run& run, const Execution& execution) {
 std::vector<std::string> summary(const Run& run, const Execution& execution) {
     std::vector<std::string> lines;
     for (std::size_t n = 0; n < run.layers.size(); ++n) {
+        if (run.layers[n].changed && run.layers[n].layer->id != LayerId::net_shortwave) continue;  // there are many
         const auto& file = run.layers[n].file;
         const auto unit = file.unit == "1" ? std::string() : " " + file.unit;
         for (std::size_t b = 0; b < execution.layers[n].bands.size(); ++b) {

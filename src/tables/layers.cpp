@@ -132,6 +132,14 @@ const std::vector<Layer>& table() {
          .standard_name_sum = {},
          .needs_sun = false,
          .needs_albedo = false},
+        {.id = LayerId::treated,
+         .name = "treated",
+         .quantity = Quantity::ratio,
+         .sample = SampleType::float32,
+         .text = "share of the ground that a change treats",
+         .standard_name = {},
+         .standard_name_sum = {},
+         .of_changes = true},
     };
     return rows;
 }
@@ -191,7 +199,8 @@ const Layer* layer_named(std::string_view name) noexcept {
 
 std::vector<std::string> layer_names() {
     std::vector<std::string> names;
-    for (const auto& row : table()) names.push_back(row.name);
+    for (const auto& row : table())
+        if (!row.of_changes) names.push_back(row.name);
     return names;
 }
 

@@ -1,9 +1,12 @@
 #pragma once
 
+#include <optional>
 #include <span>
 #include <vector>
 
 #include "sunbudget/base/plane.hpp"
+#include "sunbudget/model/change.hpp"
+#include "sunbudget/model/terrain.hpp"
 #include "sunbudget/raster/source.hpp"
 
 namespace sunbudget {
@@ -24,6 +27,8 @@ long bridge_holes(const Plane<float>& heights_m, Plane<float>& out);
 class ElevationReader {
   public:
     explicit ElevationReader(std::span<const Source> sources);
+    /// The heights that shade, after what a change has made of them.
+    explicit ElevationReader(const Terrain& terrain);
 
     /// Heights of a window of the grid's lattice, also beyond the grid; small holes bridged.
     /// Bits do not depend on the window.
@@ -35,6 +40,7 @@ class ElevationReader {
     void read_all(const Window& window, Plane<float>& heights_m);
 
     std::vector<Reader> readers_;
+    std::optional<ChangeReader> raised_;
     Plane<float> wide_, next_;
 };
 

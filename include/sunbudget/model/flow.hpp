@@ -4,6 +4,7 @@
 #include <filesystem>
 #include <map>
 #include <memory>
+#include <vector>
 
 #include "sunbudget/base/plane.hpp"
 #include "sunbudget/model/run.hpp"
@@ -24,6 +25,7 @@ class Sink {
 
 class Probe;
 class SharedTerrain;
+struct RaisedRun;
 
 /// What all threads of a run share: tables of light and terrain, made as they are needed.
 class SharedLight {
@@ -35,10 +37,13 @@ class SharedLight {
     [[nodiscard]] LightField* field() const { return field_.get(); }
     /// Nothing where the run has no terrain.
     [[nodiscard]] SharedTerrain* terrain() const { return terrain_.get(); }
+    /// The runs after each change of height.
+    [[nodiscard]] const std::vector<std::unique_ptr<RaisedRun>>& raised() const { return raised_; }
 
   private:
     std::unique_ptr<LightField> field_;
     std::unique_ptr<SharedTerrain> terrain_;
+    std::vector<std::unique_ptr<RaisedRun>> raised_;
 };
 
 /// One thread's way from inputs to finished planes.

@@ -9,6 +9,7 @@
 #include <variant>
 #include <vector>
 
+#include "sunbudget/model/change.hpp"
 #include "sunbudget/model/light.hpp"
 #include "sunbudget/model/measured_sky.hpp"
 #include "sunbudget/model/terrain.hpp"
@@ -73,11 +74,19 @@ struct ReflectanceSurface {
     ImageFacts facts;
 };
 
+/// What a layer of a change shows.
+struct ChangedLayer {
+    std::size_t change = 0;  ///< counts the run's changes
+    bool saved = false;      ///< before less after; otherwise after
+    std::size_t base = 0;    ///< the run's layer that shows the same before
+};
+
 /// One file that came out of a run's grid and methods.
 struct OutputLayer {
     const Layer* layer = nullptr;
     LayerFile file;
     std::vector<double> factors;  ///< from W m-2 to the stored unit, one a band
+    std::optional<ChangedLayer> changed{};  ///< nothing: of the run as it is
 };
 
 /// A file the run reads, as its metadata name it.
@@ -144,8 +153,11 @@ struct Run {
     RunLight light;
     std::optional<TimePlan> times;
     OutputUnit unit = OutputUnit::w_m2;
-    std::vector<OutputLayer> layers;
+    std::vector<OutputLayer> layers;  ///< those of the run as it is come before those of changes
     std::optional<ZoneTask> zones;
+    std::vector<Change> changes;
+    /// A change that has been carried out: albedo and heights are those after it.
+    std::shared_ptr<const Change> carried_out;
 
     std::vector<InputFile> inputs;
     std::vector<ClassUse> classes;

@@ -285,6 +285,54 @@ struct PlanZones {
     }
 };
 
+/// Where a change is made: polygons, classes of the land cover, or classes inside polygons.
+struct PlanWhere {
+    Place place;
+    Maybe<PlanPath> file;
+    Maybe<std::string> layer;  ///< of the file
+    Maybe<std::string> query;  ///< an SQL WHERE clause
+    Maybe<std::vector<int>> classes;
+    friend bool operator==(const PlanWhere& a, const PlanWhere& b) {
+        return a.file == b.file && a.layer == b.layer && a.query == b.query && a.classes == b.classes;
+    }
+};
+
+/// Initial, or aged, or both.
+struct PlanChangedAlbedo {
+    Place place;
+    Maybe<double> initial, aged, low, high;
+    friend bool operator==(const PlanChangedAlbedo& a, const PlanChangedAlbedo& b) {
+        return a.initial == b.initial && a.aged == b.aged && a.low == b.low && a.high == b.high;
+    }
+};
+
+/// Exactly one of them.
+struct PlanChangedHeight {
+    Place place;
+    Maybe<PlanLength> add;
+    Maybe<std::string> attribute;  ///< metres to add, of the polygons
+    Maybe<PlanRaster> raster;
+    friend bool operator==(const PlanChangedHeight& a, const PlanChangedHeight& b) {
+        return a.add == b.add && a.attribute == b.attribute && a.raster == b.raster;
+    }
+};
+
+struct PlanChange {
+    Place place;
+    Given<std::string> name;
+    std::optional<PlanWhere> where;
+    std::optional<PlanChangedAlbedo> albedo;
+    Maybe<int> to_class;  ///< a class of the cover's table
+    std::optional<PlanChangedHeight> height;
+    Maybe<double> treatable;
+    Maybe<double> lifetime;
+    Maybe<double> cost;
+    friend bool operator==(const PlanChange& a, const PlanChange& b) {
+        return a.name == b.name && a.where == b.where && a.albedo == b.albedo && a.to_class == b.to_class &&
+               a.height == b.height && a.treatable == b.treatable && a.lifetime == b.lifetime && a.cost == b.cost;
+    }
+};
+
 struct PlanEngine {
     Maybe<int> tile;
     friend bool operator==(const PlanEngine&, const PlanEngine&) = default;
@@ -302,13 +350,14 @@ struct Plan {
     PlanTime time;
     PlanOutputs outputs;
     std::optional<PlanZones> zones;
+    std::vector<PlanChange> changes;
     PlanEngine engine;
 
     /// Same values; where they stand does not matter.
     friend bool operator==(const Plan& a, const Plan& b) {
         return a.title == b.title && a.grid == b.grid && a.surface == b.surface &&
                a.terrain == b.terrain && a.sky == b.sky && a.weather == b.weather && a.time == b.time &&
-               a.outputs == b.outputs && a.zones == b.zones && a.engine == b.engine;
+               a.outputs == b.outputs && a.zones == b.zones && a.changes == b.changes && a.engine == b.engine;
     }
 };
 

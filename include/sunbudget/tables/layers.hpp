@@ -31,6 +31,7 @@ enum class LayerId {
     slope,
     aspect,
     quality,
+    treated,
 };
 enum class Quantity { ratio, radiation, hours, angle, flags };
 enum class SampleType { float32, uint16 };
@@ -48,12 +49,14 @@ struct Layer {
     bool needs_sun = false;         ///< has one band a period; otherwise one band
     bool needs_albedo = false;
     bool needs_terrain = false;
+    bool of_changes = false;  ///< comes with a change; no plan asks for it by name
 };
 
 /// In the order of LayerId.
 [[nodiscard]] std::span<const Layer> layers();
 [[nodiscard]] const Layer& layer(LayerId id) noexcept;
 [[nodiscard]] const Layer* layer_named(std::string_view name) noexcept;
+/// What a plan may ask for.
 [[nodiscard]] std::vector<std::string> layer_names();
 
 /// "1" for ratios and flags, "h", "degree", else the chosen unit.

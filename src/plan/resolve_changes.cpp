@@ -1,0 +1,292 @@
+#include <fmt/format.h>
+
+#include <algorithm>
+
+#include "resolve_parts.hpp"
+#include "sunbudget/base/digest.hpp"
+#include "sunbudget/raster/finish.hpp"
+#include "sunbudget/raster/grid_build.hpp"
+
+namespace sunbudget {
+
+namespace {
+
+/// What is left of a roof's albedo after three years, where only the new one is known: California's Title 24,
+/// part 6, with its factor for products that are not coated in place (from memory).
+double aged_from(double initial) {
+    return 0.20 + 0.70 * (initial - 0.20);
+}
+
+std::optional<double> number_of(const Maybe<double>& given) {
+    return given ? std::optional(**given) : std::nullopt;
+}
+
+/// One change of the plan, with what it says of albedo brought together.
+class ChangeResolver {
+  public:
+    ChangeResolver(const Plan& plan, const PlanChange& wanted, const ResolveOptions& options,
+                   Run& run)
+        : plan_(plan),
+          wanted_(wanted),
+          options_(options),
+          run_(run),
+          role_("changes." + *wanted.name) {}
+
+    void resolve() {
+        change_.name = *wanted_.name;
+        if (wanted_.treatable) change_.treatable = **wanted_.treatable;
+        change_.lifetime_years = number_of(wanted_.lifetime);
+        change_.cost_per_m2 = number_of(wanted_.cost);
+        if (wanted_.where && wanted_.where->file) find_polygons();
+        if (plan_.surface.cover) read_table();
+        find_height();
+        find_albedo();
+        find_classes();
+        add(change_);
+        for (const auto& [case_name, albedo] : cases_) {
+            auto other = change_;
+            other.case_name = case_name;
+            set_albedo(other, albedo);
+            add(std::move(other));
+        }
+        run_.assumptions.push_back(described());
+    }
+
+  private:
+    void find_polygons();
+    void read_table();
+    void find_height();
+    void find_albedo();
+    void find_classes();
+    void set_albedo(Change& change, double albedo) const;
+    void add(Change change);
+    void add_layer(std::size_t base, std::size_t change, bool saved);
+    [[nodiscard]] std::string described() const;
+
+    const Plan& plan_;
+    const PlanChange& wanted_;
+    const ResolveOptions& options_;
+    Run& run_;
+    std::string role_;
+    Change change_;
+    std::optional<ClassTable> table_;
+    std::vector<std::pair<std::int32_t, float>>
+        class_albedo_;  ///< of every class of the run, as it is
+    std::vector<std::pair<std::string, double>> cases_;
+};
+
+void ChangeResolver::find_polygons() {
+    const auto& where = *wanted_.where;
+    const PolygonName name{where.file->value.file, where.layer ? **where.layer : std::string(),
+                           where.query ? **where.query : std::string()};
+    const auto file = inspect_polygons(name);
+    PolygonsWanted fields;
+    if (wanted_.height && wanted_.height->attribute)
+        fields.number_fields = {**wanted_.height->attribute};
+    auto polygons = read_polygons(name, run_.grid, fields);
+    if (polygons.all.empty())
+        throw Error(Cause::input, "no polygon is chosen", name.path.string(),
+                    "look at the query, the layer and the shapes");
+    run_.inputs.push_back({role_ + ".where.file",
+                           name.path.filename().string(),
+                           input_digest(name.path),
+                           {fmt::format("{}, layer {}, {} features, {}", file.driver, file.layer,
+                                        file.features, crs_name(file.crs_wkt))},
+                           1});
+    for (const auto& note : polygons.notes) run_.warnings.push_back(role_ + ".where: " + note);
+    change_.where = std::make_shared<const TreatedArea>(std::move(polygons.all), run_.grid);
+    if (!change_.where->touches({0, 0, run_.grid.width, run_.grid.height}))
+        throw Error(Cause::input, "none of the polygons lies on the grid", name.path.string(),
+                    "look at the CRS of both");
+}
+
+void ChangeResolver::read_table() {
+    const auto& classes = *plan_.surface.cover->classes;
+    const auto* name = std::get_if<std::string>(&classes);
+    table_.emplace(name != nullptr ? shipped_class_table(*name)
+                                   : read_class_table(std::get<PlanPath>(classes).file));
+    for (const auto& row : table_->rows())
+        if (!row.is_nodata()) class_albedo_.emplace_back(row.code, static_cast<float>(row.albedo));
+    for (const auto& use : run_.classes)
+        if (use.albedo && table_->find(use.code) == nullptr)
+            class_albedo_.emplace_back(use.code, static_cast<float>(*use.albedo));
+}
+
+void ChangeResolver::find_height() {
+    if (!wanted_.height) return;
+    HeightChange height;
+    if (wanted_.height->add) height.add_m = (**wanted_.height->add).m;
+    height.add_numbers = wanted_.height->attribute.has_value();
+    if (wanted_.height->raster) {
+        SourceSpec spec;
+        spec.name = raster_of(**wanted_.height->raster);
+        spec.limits = limits_of(options_);
+        height.instead.push_back(Source::open(spec, run_.grid));
+        add_input(run_, role_ + ".height.raster", height.instead.back());
+    }
+    change_.height = std::move(height);
+}
+
+void ChangeResolver::find_albedo() {
+    if (wanted_.to_class) {
+        const auto* row = table_->find(**wanted_.to_class);
+        if (row == nullptr || row->is_nodata())
+            throw Error(Cause::usage,
+                        fmt::format("the table {} has no class {} with an albedo", table_->name(),
+                                    **wanted_.to_class),
+                        {}, fmt::format("see \"sunbudget tables {}\"", table_->name()));
+        change_.albedo = row->albedo;
+        if (row->albedo_low < row->albedo) cases_.emplace_back("low", row->albedo_low);
+        if (row->albedo_high > row->albedo) cases_.emplace_back("high", row->albedo_high);
+    }
+    if (!wanted_.albedo) return;
+    const auto& albedo = *wanted_.albedo;
+    if (albedo.initial) cases_.emplace_back("initial", **albedo.initial);
+    if (albedo.low) cases_.emplace_back("low", **albedo.low);
+    if (albedo.high) cases_.emplace_back("high", **albedo.high);
+    change_.albedo = albedo.aged ? **albedo.aged : aged_from(**albedo.initial);
+}
+
+void ChangeResolver::find_classes() {
+    if (!wanted_.where || !wanted_.where->classes) return;
+    const auto& wanted = **wanted_.where->classes;
+    for (const int code : wanted)
+        if (std::ranges::none_of(class_albedo_, [&](const auto& one) { return one.first == code; }))
+            throw Error(
+                Cause::usage,
+                fmt::format("the table {} has no class {} with an albedo", table_->name(), code),
+                {}, fmt::format("see \"sunbudget tables {}\"", table_->name()));
+    const auto* cover = std::get_if<CoverSurface>(&run_.surface);
+    const auto* image = std::get_if<ReflectanceSurface>(&run_.surface);
+    auto listed = class_albedo_;
+    for (auto& [code, value] : listed)
+        value = std::ranges::find(wanted, code) != wanted.end() ? 1.0f : 0.0f;
+    change_.classes = ChangedClasses{
+        cover != nullptr ? cover->codes : image->fill->codes, CodeValues(listed), {}};
+    if (change_.albedo) set_albedo(change_, *change_.albedo);
+}
+
+void ChangeResolver::set_albedo(Change& change, double albedo) const {
+    change.albedo = albedo;
+    if (!change.classes || !std::holds_alternative<CoverSurface>(run_.surface)) return;
+    auto after = class_albedo_;
+    for (auto& [code, value] : after)
+        if (change.classes->listed.of(code) > 0) {
+            const auto before = static_cast<double>(value);
+            value = static_cast<float>(
+                change.treatable == 1 ? albedo : before + change.treatable * (albedo - before));
+        }
+    change.classes->after = CodeValues(after);
+}
+
+/// Whether a layer shows the change, and whether what is saved of it has a meaning.
+struct Shows {
+    bool after = false, saved = false;
+};
+
+Shows shows(const Change& change, const Layer& layer, const Run& run) {
+    if (!change.case_name.empty()) return {false, layer.id == LayerId::net_shortwave};
+    const auto both = [](bool shown) { return Shows{shown, shown}; };
+    const bool terrain = run.terrain.has_value(), raised = change.height.has_value();
+    const bool ground_lights_sky = waits_for_ground(run.sky);
+    switch (layer.id) {
+        case LayerId::albedo:
+            return {change.albedo.has_value(), false};
+        case LayerId::net_shortwave:
+            return both(true);
+        case LayerId::insolation:
+            return both(terrain || ground_lights_sky);
+        case LayerId::reflected:
+            return both(terrain);
+        case LayerId::diffuse:
+            return both(raised || ground_lights_sky);
+        case LayerId::direct:
+        case LayerId::sunlit_hours:
+            return both(raised);
+        case LayerId::sky_view:
+            return {raised, false};
+        default:
+            return {};
+    }
+}
+
+void ChangeResolver::add(Change change) {
+    const auto number = run_.changes.size();
+    run_.changes.push_back(std::move(change));
+    const auto& added = run_.changes.back();
+    if (added.case_name.empty()) {
+        auto treated = output_layer(layer(LayerId::treated), run_);
+        treated.file.name += "__" + added.name;
+        treated.changed = ChangedLayer{number, false, 0};
+        run_.layers.push_back(std::move(treated));
+    }
+    const auto count = run_.layers.size();
+    for (std::size_t n = 0; n < count; ++n) {
+        if (run_.layers[n].changed) continue;
+        const auto [after, saved] = shows(added, *run_.layers[n].layer, run_);
+        if (after) add_layer(n, number, false);
+        if (saved) add_layer(n, number, true);
+    }
+}
+
+void ChangeResolver::add_layer(std::size_t base, std::size_t change, bool saved) {
+    auto added = run_.layers[base];
+    const auto& made = run_.changes[change];
+    added.changed = ChangedLayer{change, saved, base};
+    auto& file = added.file;
+    file.name += "__" + made.name;
+    if (saved) file.name += made.case_name.empty() ? "__saved" : "__saved_" + made.case_name;
+    file.metadata["change"] = described();
+    if (!made.case_name.empty())
+        file.metadata["case"] =
+            fmt::format("{} albedo, {}", made.case_name, shortest(*made.albedo));
+    if (saved) {
+        file.metadata["layer"] =
+            "what the change saves: before less after; negative where there is more after";
+        for (auto& band : file.bands) band.metadata.erase("standard_name");
+    }
+    check_layer(file);
+    run_.layers.push_back(std::move(added));
+}
+
+std::string ChangeResolver::described() const {
+    std::string text = "change " + change_.name + ": ";
+    std::vector<std::string> parts;
+    if (change_.albedo) {
+        parts.push_back("albedo " + shortest(*change_.albedo));
+        if (wanted_.albedo && !wanted_.albedo->aged)
+            parts.back() += fmt::format(", aged from {} after 0.20 + 0.70 (initial - 0.20)",
+                                        shortest(**wanted_.albedo->initial));
+        if (wanted_.to_class) parts.back() += fmt::format(" of class {}", **wanted_.to_class);
+    }
+    if (change_.height) {
+        const auto& height = *change_.height;
+        parts.push_back(height.add_m ? "heights " + shortest(*height.add_m) + " m more"
+                        : height.add_numbers
+                            ? "heights more by " + **wanted_.height->attribute
+                            : "heights of " +
+                                  (**wanted_.height->raster).path.file.filename().string());
+    }
+    text += joined(parts, "; ");
+    if (change_.treatable < 1)
+        text += fmt::format("; on {} % of the place", shortest(change_.treatable * 100));
+    if (change_.where)
+        text += fmt::format("; inside {} polygons", change_.where->polygons().size());
+    if (change_.classes) {
+        std::vector<std::string> codes;
+        for (const int code : **wanted_.where->classes) codes.push_back(std::to_string(code));
+        text += "; classes " + joined(codes, ", ");
+    }
+    return text;
+}
+
+}  // namespace
+
+void resolve_changes(const Plan& plan, const ResolveOptions& options, Run& run,
+                     RunProblems& problems) {
+    for (const auto& change : plan.changes)
+        problems.attempt(change.name.place,
+                         [&] { ChangeResolver(plan, change, options, run).resolve(); });
+}
+
+}  // namespace sunbudget
