@@ -1,5 +1,6 @@
 #include <fmt/format.h>
 
+#include <algorithm>
 #include <chrono>
 #include <filesystem>
 #include <fstream>
@@ -13,6 +14,7 @@
 #include "sunbudget/engine/output_set.hpp"
 #include "sunbudget/plan/resolve.hpp"
 #include "sunbudget/raster/gdal_setup.hpp"
+#include "sunbudget/report/report_html.hpp"
 #include "sunbudget/report/run_json.hpp"
 
 namespace sunbudget {
@@ -50,9 +52,15 @@ void prepare(const Common& common) {
 
 namespace {
 
+constexpr const char* report_name = "report.html";
+
 /// Says whether the folder holds this run's results already; throws when it holds another's.
 bool already_complete(const fs::path& folder, const Run& run) {
-    if (complete_set(folder).empty()) return false;
+    const auto names = complete_set(folder);
+    if (names.empty()) return false;
+    // A report that was asked for later is a reason to do it again.
+    const bool lacks_report = run.report && std::find(names.begin(), names.end(), report_name) == names.end();
+    if (lacks_report && recorded_run_digest(folder) == run_digest(run)) return false;
     if (recorded_run_digest(folder) == run_digest(run)) return true;
     throw Error(Cause::output, "the folder holds the results of another run", folder.string(),
                 "name another with --out, or replace them with --fresh");
@@ -64,6 +72,10 @@ void publish_run(const Run& run, const EngineOptions& options, Execution& execut
     for (auto& name : write_zones(run, options, outputs, execution)) names.push_back(std::move(name));
     write_text_file(outputs.staged("run.json"), run_json(run, execution));
     names.emplace_back("run.json");
+    if (run.report) {
+        write_text_file(outputs.staged(report_name), report_html(run, execution, outputs));
+        names.emplace_back(report_name);
+    }
     outputs.publish(names);
 }
 

@@ -513,6 +513,8 @@ void Flow::State::note_shaded(const ShadedBlock& part, std::size_t band) const {
 }
 
 void Flow::State::note_band(std::size_t band, const BandPlanes& planes) const {
+    if (!clear_index.empty())
+        note(clear_index[band % bands_at_once], window, band, "clear_sky_index", "1", "what clouds leave of the clear sky's light");
     note(planes.direct, window, band, "direct", "W/m2", "sunlight straight from the sun, on the surface");
     note(planes.diffuse, window, band, "diffuse", "W/m2", "sky light on the surface");
     if (!run.terrain) return;

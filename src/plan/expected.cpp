@@ -61,6 +61,8 @@ std::string expected(const Form& form) {
             if (!form.choices.empty()) return with_or(form.choices);
             if (form.min && form.min == form.max) return shortest(*form.min);
             return "a whole number" + range_of(form);
+        case ValueKind::boolean:
+            return "true or false";
         case ValueKind::length:
             return "a length (250 m, 20 km, 800 ft)" + range_of(form);
         case ValueKind::duration:

@@ -163,6 +163,10 @@ void visit_plan(P& plan, Visitor& v) {
         v.value("above", zones.above);
     });
     v.list("changes", plan.changes, [&](auto& change) { visit_change(change, v); });
+    v.map("report", [&] {
+        v.value("html", plan.report.html);
+        v.value("layers", plan.report.layers);
+    });
     v.map("engine", [&] { v.value("tile", plan.engine.tile); });
 }
 

@@ -50,6 +50,7 @@ class Typed {
     static void get(const Node& node, std::vector<int>& value) {
         for (const auto& item : node.children) value.push_back(static_cast<int>(*read_integer(item)));
     }
+    static void get(const Node& node, bool& value) { value = *read_boolean(node); }
     static void get(const Node& node, WeatherColumn& value) {
         if (const auto number = read_integer(node))
             value.number = static_cast<int>(*number);

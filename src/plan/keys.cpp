@@ -391,6 +391,12 @@ Form change_form() {
                {at_most_one({"albedo", "class"})});
 }
 
+Form report_form() {
+    return map({{"html", {of(ValueKind::boolean)}, "report.html: maps, curves, tables and sources in one file that opens anywhere", "false"},
+                {"layers", {list(choice(layer_names()), 1, {}, true)}, "layers of the run to show; default: all of them"}},
+               {needs("layers", {"html"})});
+}
+
 Form engine_form() {
     return map({{"tile",
                  {{.kind = ValueKind::integer, .choices = {"128", "256", "512", "1024"}}},
@@ -413,6 +419,7 @@ const Form& plan_form() {
              {"outputs", {outputs_form()}, "what to write", {}, true},
              {"zones", {zones_form()}, "parcels, blocks or wards to give figures of, in zones.csv and zones.gpkg"},
              {"changes", {list(change_form(), 1)}, "what-ifs, computed beside the run as it is"},
+             {"report", {report_form()}, "what people read of the run"},
              {"engine", {engine_form()}, "rarely needed"}});
     return form;
 }

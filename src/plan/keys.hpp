@@ -17,6 +17,7 @@ enum class ValueKind {
     raster,  ///< PATH, PATH:N or PATH:NAME
     number,
     integer,
+    boolean,   ///< true or false, without quotes
     length,    ///< "250 m", "20 km", "800 ft"
     duration,  ///< "10 min", "1 h", "30 s"
     date,

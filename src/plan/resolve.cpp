@@ -77,6 +77,7 @@ class Resolver {
         problems_.throw_if_any();
         resolve_changes(plan_, options_, run_, problems_);
         resolve_zones(plan_, run_, problems_);
+        resolve_report();
         refuse_overwriting_inputs();
         problems_.throw_if_any();
         return std::move(run_);
@@ -131,6 +132,12 @@ class Resolver {
         return problems_.attempt(place, [&] { run_.grid = cropped(info.grid, bounds, cell); });
     }
 
+    void resolve_report() {
+        if (!plan_.report.html || !**plan_.report.html) return;
+        run_.report.emplace();
+        for (const auto& id : plan_.report.layers) run_.report->layers.push_back(*id);
+    }
+
     [[nodiscard]] std::vector<fs::path> outputs() const {
         if (!options_.single_file.empty()) return {options_.single_file};
         std::vector<fs::path> files;
@@ -139,6 +146,7 @@ class Resolver {
                 files.push_back(plan_.outputs.directory->value.file / (layer.file.name + ".tif"));
         if (plan_.outputs.directory && plan_.zones)
             for (const auto* name : {"zones.csv", "zones.gpkg", "changes.csv"}) files.push_back(plan_.outputs.directory->value.file / name);
+        if (plan_.outputs.directory && run_.report) files.push_back(plan_.outputs.directory->value.file / "report.html");
         return files;
     }
 

@@ -26,6 +26,7 @@ class CrossCheck {
         unit();
         directions();
         zones();
+        report();
         sky();
         for (const auto& change : plan_.changes) this->change(change);
         if (plan_.weather) weather(*plan_.weather);
@@ -63,6 +64,7 @@ class CrossCheck {
     void unit() const;
     void directions() const;
     void zones() const;
+    void report() const;
     void sky() const;
     void change(const PlanChange& change) const;
     void change_name(const PlanChange& change) const;
@@ -201,6 +203,12 @@ void CrossCheck::zones() const {
         if (*id == LayerId::aspect || *id == LayerId::quality)
             mistakes_.add(id.place, "a mean of " + name + " has no meaning", "leave it out here");
     }
+}
+
+void CrossCheck::report() const {
+    for (const auto& id : plan_.report.layers)
+        if (std::ranges::none_of(plan_.outputs.layers, [&](const auto& other) { return *other == *id; }))
+            mistakes_.add(id.place, "the run does not write " + layer(*id).name, "add it to outputs.layers, or leave it out here");
 }
 
 void CrossCheck::sky() const {

@@ -26,6 +26,11 @@ std::optional<double> read_integer(const Node& node) {
     return value && std::trunc(*value) == *value ? value : std::nullopt;
 }
 
+std::optional<bool> read_boolean(const Node& node) {
+    if (node.shape != Node::Shape::scalar || node.quoted || plain_kind(node.text) != Plain::boolean) return std::nullopt;
+    return node.text.front() == 't' || node.text.front() == 'T';
+}
+
 std::optional<std::string> read_text(const Node& node) {
     if (node.shape != Node::Shape::scalar || node.text.empty()) return std::nullopt;
     if (!node.quoted && plain_kind(node.text) != Plain::text) return std::nullopt;
@@ -147,6 +152,12 @@ Found choice_mismatch(const Node& node, const Form& form) {
     return other(node, form, near ? "did you mean \"" + *near + "\"?" : "");
 }
 
+Found boolean_mismatch(const Node& node, const Form& form) {
+    if (read_boolean(node)) return std::nullopt;
+    const bool quoted = node.quoted && plain_kind(node.text) == Plain::boolean;
+    return other(node, form, quoted ? "remove the quotes" : "");
+}
+
 Found path_mismatch(const Node& node, const Form& form) {
     return text_mismatch(node, form);
 }
@@ -176,6 +187,8 @@ Found mismatch(const Node& scalar, const Form& form) {
         case ValueKind::number:
         case ValueKind::integer:
             return number_mismatch(scalar, form);
+        case ValueKind::boolean:
+            return boolean_mismatch(scalar, form);
         case ValueKind::length:
         case ValueKind::duration:
             return quantity_mismatch(scalar, form);

@@ -22,6 +22,8 @@ struct Unit {
 [[nodiscard]] std::optional<double> read_number(const Node& node);
 /// Whole numbers, 3.0 among them.
 [[nodiscard]] std::optional<double> read_integer(const Node& node);
+/// true or false, in YAML 1.2's three spellings.
+[[nodiscard]] std::optional<bool> read_boolean(const Node& node);
 /// A text that is in quotes, or looks like neither number nor boolean.
 [[nodiscard]] std::optional<std::string> read_text(const Node& node);
 /// In metres or seconds.

@@ -95,6 +95,8 @@ Json of_form(const Form& form) {
         case ValueKind::number:
         case ValueKind::integer:
             return of_number(form);
+        case ValueKind::boolean:
+            return {{"type", "boolean"}};
         case ValueKind::length:
         case ValueKind::duration:
             return of_quantity(form);

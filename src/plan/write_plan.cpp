@@ -153,6 +153,7 @@ class Writer {
     [[nodiscard]] Node node_of(const std::vector<std::string>& texts) const {
         return list_of(texts);
     }
+    [[nodiscard]] Node node_of(bool value) const { return scalar(value ? "true" : "false", false); }
     [[nodiscard]] Node node_of(const WeatherColumn& column) const {
         return column.number > 0 ? number_node(column.number) : text_node(column.name);
     }
@@ -302,6 +303,7 @@ std::string plan_text(const Plan& plan, const std::filesystem::path& folder) {
 std::string plan_digest(const Plan& plan) {
     Plan whole = with_defaults(plan);
     whole.outputs.directory.reset();
+    whole.report = {};
     return sha256_of(written(whole, {{}, true}));
 }
 

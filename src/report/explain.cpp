@@ -168,7 +168,7 @@ std::string sun_text(const Run& run, const PixelAccount& account) {
     if (const auto& at = ways.front().instant)
         text += fmt::format(
             "  at the instant: {:.3f} deg high, azimuth {:.3f} deg, beam {:.1f} W/m2, sky light "
-            "{:.1f} W/m2 on open level ground\n",
+            "{:.1f} W/m2 on open level ground in the run's sky\n",
             deg_from_rad(at->elevation_rad), deg_from_rad(at->azimuth_rad), at->beam_w_m2,
             at->diffuse_w_m2);
     text += fmt::format(
@@ -227,7 +227,7 @@ std::string layers_text(const Run& run, const PixelAccount& account) {
     for (std::size_t n = 0; n < run.layers.size(); ++n) {
         const auto& file = run.layers[n].file;
         const auto name = with_unit(file.name, file.unit);
-        if (run.layers[n].factors.size() == 1 && file.bands.front().description == file.name)
+        if (!run.layers[n].layer->needs_sun)
             text += fmt::format("  {:<34} {:>14}\n", name, number(account.layers[n].front()));
         else
             lines.push_back({name, {}, account.layers[n]});

@@ -7,6 +7,7 @@
 #include <fstream>
 #include <nlohmann/json.hpp>
 
+#include "quality_counts.hpp"
 #include "sunbudget/base/digest.hpp"
 #include "sunbudget/base/text.hpp"
 #include "sunbudget/base/version.hpp"
@@ -154,13 +155,6 @@ Json real_sky_json(const Run& run) {
                            {"global_less_parts_rms_w_m2", report.closure.difference_rms_w_m2}};
     json["share_of_light_left_out"] = report.left_out_share;
     return json;
-}
-
-std::uint64_t pixels_of(const QualityRow& row, const Execution& execution) {
-    std::uint64_t pixels = 0;
-    for (const auto& [flag, count] : execution.flags)
-        if ((flag & row.mask) == row.value) pixels += count;
-    return pixels;
 }
 
 /// Pixels for each meaning of the quality layer, in its own order.

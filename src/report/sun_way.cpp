@@ -19,7 +19,10 @@ SunPlace place_of(const Run& run, const PixelAccount& account) {
     double height_m = run.constant_height_m;
     for (const auto& term : account.probe.terms())
         if (term.name == "height" && !std::isnan(term.value)) height_m = term.value;
-    return {account.place->latitude_rad, account.place->longitude_rad, height_m, run.sky};
+    SunPlace place{account.place->latitude_rad, account.place->longitude_rad, height_m, run.sky};
+    // The pixel's own is among the terms; the light beside the sun's way is open ground's.
+    if (waits_for_ground(place.sky)) place.sky[SkyParameter::ground_albedo].fill(place.ground_albedo);
+    return place;
 }
 
 CivilDate middle_day(const TimePlan& times, std::size_t band, double longitude_rad) {

@@ -1,8 +1,15 @@
 # Turns data files into one C++ source, so that the program carries its tables with it:
-# cmake -DOUT=embedded.cpp -DFILES="a.csv;b.csv" -P embed.cmake
-set(code "// Made by embed.cmake from src/tables/data; edit the files there.\n")
-string(APPEND code "#include \"embedded.hpp\"\n\nnamespace sunbudget {\n\n")
-string(APPEND code "std::span<const EmbeddedFile> embedded_files() noexcept {\n")
+# cmake -DOUT=embedded.cpp -DFILES="a.csv;b.csv" [-DNAME=embedded_files] -P embed.cmake
+# NAME.hpp declares the function NAME (without it: embedded.hpp, embedded_files).
+set(header embedded.hpp)
+set(function embedded_files)
+if(DEFINED NAME)
+  set(header ${NAME}.hpp)
+  set(function ${NAME})
+endif()
+set(code "// Made by embed.cmake from files in a data folder; edit those.\n")
+string(APPEND code "#include \"${header}\"\n\nnamespace sunbudget {\n\n")
+string(APPEND code "std::span<const EmbeddedFile> ${function}() noexcept {\n")
 string(APPEND code "    static constexpr EmbeddedFile files[] = {\n")
 foreach(file IN LISTS FILES)
   get_filename_component(name ${file} NAME)

@@ -134,6 +134,11 @@ struct RunLight {
     std::vector<double> overcast;       ///< light under a closed cover, by band
 };
 
+/// A report for people, once the layers are written.
+struct ReportTask {
+    std::vector<LayerId> layers{};  ///< what is shown, changes of it too; empty: all
+};
+
 /// Everything a plan comes to: resolved, checked and fixed. Shared by all threads.
 struct Run {
     std::string title;
@@ -158,6 +163,7 @@ struct Run {
     std::vector<Change> changes;
     /// A change that has been carried out: albedo and heights are those after it.
     std::shared_ptr<const Change> carried_out;
+    std::optional<ReportTask> report;
 
     std::vector<InputFile> inputs;
     std::vector<ClassUse> classes;

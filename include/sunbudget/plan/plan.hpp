@@ -333,6 +333,13 @@ struct PlanChange {
     }
 };
 
+/// What people read of a run.
+struct PlanReport {
+    Maybe<bool> html;
+    std::vector<Given<LayerId>> layers;  ///< each once; empty: every layer of the run
+    friend bool operator==(const PlanReport&, const PlanReport&) = default;
+};
+
 struct PlanEngine {
     Maybe<int> tile;
     friend bool operator==(const PlanEngine&, const PlanEngine&) = default;
@@ -351,13 +358,14 @@ struct Plan {
     PlanOutputs outputs;
     std::optional<PlanZones> zones;
     std::vector<PlanChange> changes;
+    PlanReport report;
     PlanEngine engine;
 
     /// Same values; where they stand does not matter.
     friend bool operator==(const Plan& a, const Plan& b) {
         return a.title == b.title && a.grid == b.grid && a.surface == b.surface &&
                a.terrain == b.terrain && a.sky == b.sky && a.weather == b.weather && a.time == b.time &&
-               a.outputs == b.outputs && a.zones == b.zones && a.changes == b.changes && a.engine == b.engine;
+               a.outputs == b.outputs && a.zones == b.zones && a.changes == b.changes && a.report == b.report && a.engine == b.engine;
     }
 };
 
@@ -390,7 +398,7 @@ struct PlanText {
 [[nodiscard]] std::string plan_text(const Plan& plan, const std::filesystem::path& folder = {});
 
 /// SHA-256 of everything that shapes the rasters' content and metadata, defaults included; so not
-/// of the output directory, comments, the order of keys or the way numbers are written. Files count
+/// of the output directory, the report, comments, the order of keys or the way numbers are written. Files count
 /// by the name the plan gives them: their content has digests of its own.
 [[nodiscard]] std::string plan_digest(const Plan& plan);
 
