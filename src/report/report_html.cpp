@@ -184,9 +184,12 @@ std::string Report::article(std::size_t layer, const std::string& figure,
                             const std::string& beside) const {
     const auto& file = run_.layers[layer].file;
     return "<article class=\"layer\">\n<div class=\"words\"><h3>" + escaped(words_for(file.name)) +
-           "</h3><p>" + escaped(run_.layers[layer].layer->text) + ". File: " + escaped(file.name) +
-           ".tif</p></div>\n<figure>\n" + figure + "</figure>\n<div class=\"beside\">\n" + beside +
-           "</div>\n</article>\n";
+           "</h3><p>" +
+           (is_difference(file.name) ? "What the change saves, before less after; below 0 the "
+                                       "ground keeps more than before"
+                                     : escaped(run_.layers[layer].layer->text)) +
+           ". File: " + escaped(file.name) + ".tif</p></div>\n<figure>\n" + figure +
+           "</figure>\n<div class=\"beside\">\n" + beside + "</div>\n</article>\n";
 }
 
 std::string Report::curve(std::size_t layer) const {
