@@ -161,7 +161,7 @@ FeatureRow ZoneTable::row(std::size_t row) const {
     if (!question_.periods.empty()) cells.texts.push_back(question_.periods[period]);
     const bool classes = !answer.class_shares.empty();
     auto& numbers = cells.numbers;
-    numbers = {answer.map_area_m2, answer.surface_area_m2, answer.nodata_share, classes ? answer.one_class_share() : nan_value};
+    numbers = {answer.map_area_m2, answer.surface_area_m2, answer.nodata_share, classes ? answer.commonest_class().share : nan_value};
     for (std::size_t n = 0; n < question_.layers.size(); ++n) {
         const auto& found = figures(zone, n, period);
         const bool known = found.weight > 0, adds_up = question_.layers[n].to_total > 0;
@@ -193,8 +193,7 @@ std::vector<std::string> zone_notes(const ZoneQuestion& question, const std::vec
     std::map<std::int32_t, std::size_t> of_one_class;
     for (const auto& answer : answers) {
         if (answer.nodata_share >= 1) ++beyond;
-        if (answer.one_class_share() > 0.99) ++of_one_class[std::max_element(answer.class_shares.begin(), answer.class_shares.end(),
-                                                                            [](const auto& a, const auto& b) { return a.second < b.second; })->first];
+        if (const auto most = answer.commonest_class(); most.share > 0.99) ++of_one_class[most.code];
     }
     if (beyond > 0) notes.push_back(fmt::format("{} of {} zones hold no value: beyond the grid, or nodata throughout", beyond, answers.size()));
     for (const auto& [code, count] : of_one_class) {

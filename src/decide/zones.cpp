@@ -317,9 +317,10 @@ ZoneAnswer unanswered(const ZoneQuestion& question) {
 
 }  // namespace
 
-double ZoneAnswer::one_class_share() const {
-    double most = 0;
-    for (const auto& [code, share] : class_shares) most = std::max(most, share);
+ZoneAnswer::ClassShare ZoneAnswer::commonest_class() const {
+    ClassShare most;
+    for (const auto& [code, share] : class_shares)
+        if (share > most.share) most = {code, share};
     return most;
 }
 

@@ -32,12 +32,13 @@ class ChangeResolver {
           run_(run),
           role_("changes." + *wanted.name) {}
 
+    /// First, where the change has polygons.
+    void find_polygons();
     void resolve() {
         change_.name = *wanted_.name;
         if (wanted_.treatable) change_.treatable = **wanted_.treatable;
         change_.lifetime_years = number_of(wanted_.lifetime);
         change_.cost_per_m2 = number_of(wanted_.cost);
-        if (wanted_.where && wanted_.where->file) find_polygons();
         if (plan_.surface.cover) read_table();
         find_height();
         find_albedo();
@@ -53,7 +54,6 @@ class ChangeResolver {
     }
 
   private:
-    void find_polygons();
     void read_table();
     void find_height();
     void find_albedo();
@@ -284,9 +284,12 @@ std::string ChangeResolver::described() const {
 
 void resolve_changes(const Plan& plan, const ResolveOptions& options, Run& run,
                      RunProblems& problems) {
-    for (const auto& change : plan.changes)
-        problems.attempt(change.name.place,
-                         [&] { ChangeResolver(plan, change, options, run).resolve(); });
+    for (const auto& change : plan.changes) {
+        ChangeResolver resolver(plan, change, options, run);
+        const bool has_polygons = change.where && change.where->file;
+        if (!has_polygons || problems.attempt(change.where->file->place, [&] { resolver.find_polygons(); }))
+            problems.attempt(change.name.place, [&] { resolver.resolve(); });
+    }
 }
 
 }  // namespace sunbudget

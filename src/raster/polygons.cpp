@@ -82,7 +82,8 @@ void apply_query(OGRLayer& layer, const PolygonName& name) {
     if (name.query.empty()) return;
     const GdalMessages messages;
     if (layer.SetAttributeFilter(name.query.c_str()) != OGRERR_NONE)
-        throw Error(Cause::input, "the query cannot be used: " + messages.first_failure(), where_of(name) + ", " + name.query,
+        // GDAL draws an arrow under the place, on lines of its own: the first line says what is wrong.
+        throw Error(Cause::input, "the query cannot be used: " + messages.first_failure().substr(0, messages.first_failure().find('\n')), where_of(name) + ", " + name.query,
                     "write it as in SQL after WHERE: kind = 'flat' AND area > 100");
 }
 
@@ -237,8 +238,15 @@ std::string id_of(const OGRFeature& feature, int id_index) {
     return id_index < 0 ? std::to_string(feature.GetFID()) : const_cast<OGRFeature&>(feature).GetFieldAsString(id_index);
 }
 
-void set_bounds(Polygon& polygon) {
+double number_of(const OGRFeature& feature, int index) {
+    return feature.IsFieldSetAndNotNull(index) ? feature.GetFieldAsDouble(index) : nan_value;
+}
+
+}  // namespace
+
+void measure(Polygon& polygon) noexcept {
     constexpr double far = std::numeric_limits<double>::infinity();
+    polygon.area_px = 0;
     polygon.left = polygon.top = far;
     polygon.right = polygon.bottom = -far;
     for (const auto& ring : polygon.rings) {
@@ -251,12 +259,6 @@ void set_bounds(Polygon& polygon) {
         }
     }
 }
-
-double number_of(const OGRFeature& feature, int index) {
-    return feature.IsFieldSetAndNotNull(index) ? feature.GetFieldAsDouble(index) : nan_value;
-}
-
-}  // namespace
 
 PolygonFile inspect_polygons(const PolygonName& name) {
     const Opened file(name);
@@ -291,7 +293,7 @@ Polygons read_polygons(const PolygonName& name, const Grid& grid, const Polygons
             shape.reset(shape->MakeValid());
         }
         const bool placed = shape == nullptr || add_parts(*shape, to_grid, polygon.rings);
-        set_bounds(polygon);
+        measure(polygon);
         if (!placed)
             unplaced.add(polygon.id);
         else if (!(polygon.area_px > 0))

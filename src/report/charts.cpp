@@ -45,6 +45,15 @@ std::string upright_axis(double low, double high, double step, const std::string
     return text;
 }
 
+/// "2025-03" for "2025-03 to 2025-05"; of a longer name its first dozen characters, none of them cut in two.
+std::string short_name(const std::string& name) {
+    auto text = name.substr(0, name.find(" to "));
+    std::size_t characters = 0, end = 0;
+    for (; end < text.size() && characters <= 12; ++end)
+        if ((static_cast<unsigned char>(text[end]) & 0xC0) != 0x80 && ++characters > 12) break;
+    return text.substr(0, end);
+}
+
 }  // namespace
 
 std::string for_people(double value) {
@@ -118,12 +127,17 @@ std::string curve_svg(std::span<const CurvePoint> points, const std::string& uni
         return left +
                inner_width * (static_cast<double>(i) + 0.5) / static_cast<double>(points.size());
     };
-    const std::size_t every = std::max<std::size_t>(1, (points.size() + 5) / 6);
+    // Names are as wide as their letters: as many are shown as have room side by side.
+    constexpr double letter = 6.2, between = 8;
+    std::size_t longest = 0;
+    for (const auto& point : points) longest = std::max(longest, short_name(point.name).size());
+    const double names_with_room = inner_width / (letter * static_cast<double>(longest) + between);
+    const auto every = static_cast<std::size_t>(std::ceil(std::max(1.0, static_cast<double>(points.size()) / std::max(1.0, names_with_room))));
     bool pen_down = false;
     for (std::size_t i = 0; i < points.size(); ++i) {
         if (i % every == 0)
             content +=
-                text_at(x_of(i), height - 16, "middle", escaped(points[i].name.substr(0, 12)));
+                text_at(x_of(i), height - 16, "middle", escaped(short_name(points[i].name)));
         const bool there = !std::isnan(points[i].mean);
         const double y = top + inner_height * (1 - (points[i].mean - low) / (high - low));
         if (there) way += fmt::format("{}{:.1f} {:.1f}", pen_down ? "L" : "M", x_of(i), y);

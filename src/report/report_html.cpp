@@ -382,9 +382,10 @@ std::string Report::facts() const {
     fact("Grid", describe(run_.grid));
     if (run_.times && run_.times->instant) fact("Time", format_utc(*run_.times->instant));
     if (run_.times && !run_.times->instant)
-        fact("Time", fmt::format("{} to {}, {}, steps of {:g} min",
+        fact("Time", fmt::format("{} to {}{}, {}, steps of {:g} min",
                                  format_date(run_.times->periods.front().days.front().date),
                                  format_date(run_.times->periods.back().days.back().date),
+                                 run_.times->periods.front().days.front().weight != 1 ? " (one day standing for each month)" : "",
                                  run_.times->periods.size() == 1
                                      ? "one period"
                                      : fmt::format("{} periods", run_.times->periods.size()),

@@ -103,6 +103,13 @@ std::string path_of(const Rings& rings, double across, double down) {
     return path;
 }
 
+/// What is kept counts before what arrives: light that neighbours gain is no saving of the treated place.
+std::vector<std::string>::const_iterator saving_to_rank_by(const std::vector<std::string>& header) {
+    for (const auto* layer : {"net_radiation", "net_shortwave"})
+        if (const auto found = std::ranges::find(header, std::string(layer) + "_saved_sum"); found != header.end()) return found;
+    return std::ranges::find_if(header, [](const std::string& name) { return name.ends_with("_saved_sum"); });
+}
+
 }  // namespace
 
 ZoneView zone_view(const std::filesystem::path& csv, const std::string& period, std::size_t most) {
@@ -145,8 +152,7 @@ ZoneView change_view(const std::filesystem::path& csv, std::size_t changes, std:
     const auto header = next_row(in);
     if (!header) throw Error(Cause::input, "cannot read the changes for the report", csv.native());
     ZoneView view{*header, {}, 0, {}, {}};
-    const auto saved = std::ranges::find_if(
-        *header, [](const std::string& name) { return name.ends_with("_saved_sum"); });
+    const auto saved = saving_to_rank_by(*header);
     if (saved == header->end()) return view;
     const auto at = static_cast<std::size_t>(saved - header->begin());
     std::vector<std::pair<double, ZoneView::Row>> kept;

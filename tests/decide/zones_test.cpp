@@ -23,16 +23,11 @@ namespace {
 constexpr double pi = std::numbers::pi;
 
 Polygon polygon_of(Rings rings, std::int64_t fid = 1) {
-    Polygon polygon{fid, std::to_string(fid), std::move(rings), 0, 1e9, 1e9, -1e9, -1e9, {}};
-    for (const auto& ring : polygon.rings) {
-        polygon.area_px += signed_area(ring);
-        for (const auto& p : ring) {
-            polygon.left = std::min(polygon.left, p.column);
-            polygon.right = std::max(polygon.right, p.column);
-            polygon.top = std::min(polygon.top, p.row);
-            polygon.bottom = std::max(polygon.bottom, p.row);
-        }
-    }
+    Polygon polygon;
+    polygon.fid = fid;
+    polygon.id = std::to_string(fid);
+    polygon.rings = std::move(rings);
+    measure(polygon);
     return polygon;
 }
 
@@ -188,7 +183,7 @@ TEST_CASE("zones: shares of classes, and a note where zones differ by light alon
     question.classes = ground.open(ground.raster("cover", [](int c, int) { return c < 350 ? 50 : 10; }, "Byte"), DataKind::code);
     question.class_names = {{50, "Built-up"}};
     const auto answers = zone_answers(question, {polygon_of(circle(100, 100, 30)), polygon_of(circle(200, 100, 30)), polygon_of(circle(350, 100, 30))}, {});
-    CHECK(answers[0].one_class_share() == Approx(1));
+    CHECK(answers[0].commonest_class().share == Approx(1));
     CHECK(answers[2].class_shares.at(10) == Approx(0.5));
     const auto notes = zone_notes(question, answers);
     REQUIRE(notes.size() == 1);

@@ -44,8 +44,11 @@ struct ZoneAnswer {
     std::vector<std::vector<ZoneFigures>> figures;  ///< by layer and band
     std::vector<std::vector<double>> uncertainty;   ///< by layer and band, of the mean; NaN where not known
 
-    /// Share of the commonest class; 0 where there is none.
-    [[nodiscard]] double one_class_share() const;
+    struct ClassShare {
+        std::int32_t code = 0;
+        double share = 0;  ///< 0 where the zone has no class
+    };
+    [[nodiscard]] ClassShare commonest_class() const;
 };
 
 struct ZoneOptions {

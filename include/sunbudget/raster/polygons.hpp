@@ -44,6 +44,9 @@ struct Polygon {
     std::vector<double> numbers;  ///< the fields asked for; NaN where null
 };
 
+/// Fills in area and bounds from the rings.
+void measure(Polygon& polygon) noexcept;
+
 struct PolygonsWanted {
     std::string id_field{};  ///< empty, or "fid": the feature's number
     std::vector<std::string> number_fields{};
