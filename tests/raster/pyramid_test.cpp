@@ -142,8 +142,9 @@ TEST_CASE("Pyramid: overviews beyond the memory limit are made from the spool, w
                 }
         CHECK(spool.missing() == 0);
         CHECK((pyramid.peak_bytes() == 0) == (limit == 0));
-        for (int level = 0; level < static_cast<int>(layout_of(layer).levels.size()); ++level) {
-            const auto& size = layout_of(layer).levels[static_cast<std::size_t>(level)];
+        const auto layout = layout_of(layer);
+        for (int level = 0; level < static_cast<int>(layout.levels.size()); ++level) {
+            const auto& size = layout.levels[static_cast<std::size_t>(level)];
             for (int band = 0; band < 2; ++band)
                 for (int row = 0; row < size.rows; ++row)
                     for (int column = 0; column < size.columns; ++column)
