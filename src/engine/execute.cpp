@@ -129,6 +129,13 @@ InputSizes input_sizes(const Run& run) {
         if (const auto* other = std::get_if<std::vector<Source>>(&run.terrain->slope_from))
             for (const auto& heights : *other) add(heights);
     }
+    if (run.heat.surface_k) add(*run.heat.surface_k);
+    if (run.heat.emissivity)
+        if (const auto* raster = std::get_if<Source>(&*run.heat.emissivity)) add(*raster);
+    if (run.heat.longwave) {
+        if (run.heat.longwave->temperature_k) add(*run.heat.longwave->temperature_k);
+        if (run.heat.longwave->humidity) add(*run.heat.longwave->humidity);
+    }
     return sizes;
 }
 
@@ -149,13 +156,14 @@ std::uint64_t waiting_bytes(const Run& run, std::uint64_t memory_bytes) {
     return std::min(memory_bytes / 4, band_planes(run) * across * tile * sizeof(float));
 }
 
-/// Bytes a thread holds for each pixel of its window: surface, heights, a tile raw and encoded; with
-/// terrain the light of several bands and its parts.
+/// Bytes a thread holds for each pixel of its window: surface, heights, a tile raw and encoded; what heat radiation
+/// goes through; with terrain the light of several bands and its parts.
 std::uint64_t bytes_per_pixel(const Run& run) {
-    constexpr std::uint64_t plain = 40, terrain = 60, a_band = 24, bands_held = 12;
-    if (!run.terrain) return plain;
+    constexpr std::uint64_t plain = 40, terrain = 60, a_band = 24, bands_held = 12, heat = 52;
+    const auto flat = plain + (run.heat.longwave ? heat : 0);
+    if (!run.terrain) return flat;
     const std::uint64_t bands = run.times ? run.times->bands() : 0;
-    return plain + terrain + a_band * std::min(bands, bands_held);
+    return flat + terrain + a_band * std::min(bands, bands_held);
 }
 
 /// What changes add to it: planes of albedo and of reflected light, or a whole flow of its own.

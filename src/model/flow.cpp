@@ -7,6 +7,7 @@
 #include <optional>
 
 #include "beside.hpp"
+#include "heat_flow.hpp"
 #include "sunbudget/base/parallel.hpp"
 #include "sunbudget/model/neighbourhood.hpp"
 #include "sunbudget/model/probe.hpp"
@@ -59,13 +60,25 @@ bool wants(const Run& run, std::initializer_list<LayerId> ids) {
     });
 }
 
-/// What a run asks of its terrain.
+/// What a run asks of its light, its terrain and its air.
 struct Needs {
-    bool suns, sky_view, reflected;
+    bool net_light;  ///< for what becomes of it: net radiation, a balanced temperature
+    bool light, suns, sky_view, reflected;
+    bool heat, scope;
     explicit Needs(const Run& run)
-        : suns(wants(run, {LayerId::insolation, LayerId::direct, LayerId::diffuse, LayerId::net_shortwave, LayerId::sunlit_hours})),
-          sky_view(wants(run, {LayerId::insolation, LayerId::diffuse, LayerId::reflected, LayerId::net_shortwave, LayerId::sky_view})),
-          reflected(wants(run, {LayerId::insolation, LayerId::reflected, LayerId::net_shortwave})) {}
+        : net_light(wants(run, {LayerId::net_radiation}) || (run.heat.surface == SurfaceFrom::balance && any(run, &Layer::needs_surface_temperature))),
+          light(net_light || any(run, &Layer::needs_sun)),
+          suns(net_light || wants(run, {LayerId::insolation, LayerId::direct, LayerId::diffuse, LayerId::net_shortwave, LayerId::sunlit_hours})),
+          sky_view(net_light || run.heat.longwave ||
+                   wants(run, {LayerId::insolation, LayerId::diffuse, LayerId::reflected, LayerId::net_shortwave, LayerId::sky_view})),
+          reflected(net_light || wants(run, {LayerId::insolation, LayerId::reflected, LayerId::net_shortwave})),
+          heat(any(run, &Layer::needs_air) || any(run, &Layer::needs_surface_temperature) || any(run, &Layer::needs_emissivity)),
+          scope(wants(run, {LayerId::sri}) || (run.heat.surface == SurfaceFrom::balance && any(run, &Layer::needs_surface_temperature))) {}
+
+  private:
+    static bool any(const Run& run, bool Layer::*need) {
+        return std::any_of(run.layers.begin(), run.layers.end(), [&](const OutputLayer& layer) { return layer.layer->*need; });
+    }
 };
 
 /// What the light layers of a band are made from.
@@ -108,12 +121,14 @@ void flag_nan(std::span<const float> values, std::span<std::uint16_t> flags, std
 }  // namespace
 
 SharedLight::SharedLight(const Run& run, int threads, const std::filesystem::path& scratch_folder) {
-    if (run.times)
+    if (run.times && Needs(run).light)
         field_ = std::make_unique<LightField>(*run.times, run.sky, run.grid, threads, constant_height(run), run.terrain.has_value(),
                                               run.sky_raster ? &*run.sky_raster : nullptr);
     if (run.terrain) terrain_ = std::make_unique<SharedTerrain>(*run.terrain, run.grid, scratch_folder);
     for (std::size_t i = 0; i < run.changes.size(); ++i)
         if (run.changes[i].height) raised_.push_back(std::make_unique<RaisedRun>(run, i, threads, scratch_folder));
+    if (run.heat.longwave && !run.heat.longwave->by_pixel())
+        longwave_ = std::make_unique<LongwaveField>(*run.times, *run.heat.longwave, run.grid, threads, constant_height(run));
 }
 SharedLight::~SharedLight() = default;
 
@@ -125,9 +140,10 @@ struct Flow::State {
     SurfaceReader surface;
     std::optional<Locator> own_locator;  ///< where no light field has one
     std::optional<BlockShader> shader;
+    std::optional<HeatFlow> heat;
 
     Window window;
-    Plane<float> albedo, heights_m, stored;
+    Plane<float> albedo, heights_m, stored, net_light;
     Plane<std::uint16_t> flags;
     Plane<float> sky_view, slope_deg, aspect_deg, albedo_seen;
     std::vector<LightField::Block> light_blocks;
@@ -143,6 +159,7 @@ struct Flow::State {
     State(const Run& r, const SharedLight& s, int t) : run(r), shared(s), thread(t), needs(r), surface(r), beside(r) {
         for (const auto& one : shared.raised()) raised.push_back(std::make_unique<State>(one->run, one->light(), t));
         for (const auto& raster : run.light.rasters) cloud_readers.emplace_back(raster);
+        if (needs.heat) heat.emplace(run, shared.longwave(), thread);
         if (!run.terrain) return;
         if (shared.field() == nullptr) own_locator.emplace(run.grid);
         shader.emplace(*shared.terrain(), shared.field(), locator(), thread);
@@ -169,6 +186,9 @@ struct Flow::State {
     void dim(const ShadedBlock& part, std::size_t band, double overcast);
     void see_albedo();
     void put_surface_layers(Sink& sink);
+    void flag_outside_scope();
+    void sum_net_light(std::size_t band, const BandPlanes& planes);
+    void put_heat_layers(std::size_t band, Sink& sink);
     template <class Value>
     void note(const Plane<Value>& plane, const Window& frame, std::optional<std::size_t> band, const char* name, const char* unit,
               const char* text) const;
@@ -550,10 +570,84 @@ void Flow::State::put_surface_layers(Sink& sink) {
             case LayerId::aspect: put_plane(n, 0, copied(aspect_deg), sink); break;
             case LayerId::sky_view: put_plane(n, 0, copied(sky_view), sink); break;
             case LayerId::quality: sink.put(n, 0, window, flags); break;
+            case LayerId::emissivity: put_plane(n, 0, copied(heat->emissivity()), sink); break;
+            case LayerId::sri:
+                put_plane(n, 0, [&](int r, std::span<float> out) {
+                    solar_reflectance_index(albedo.row(r), heat->emissivity().row(r), run.heat.wind, out);
+                    for (std::size_t i = 0; i < out.size(); ++i)
+                        if ((flags.row(r)[i] & quality::outside_scope) != 0) out[i] = std::numeric_limits<float>::quiet_NaN();
+                }, sink);
+                break;
             default: break;
         }
     }
     beside.put_treated(sink);
+}
+
+/// Pixels whose temperature no balance of a dry surface gives; for the index also steep ones.
+void Flow::State::flag_outside_scope() {
+    if (!needs.scope) return;
+    constexpr float steepest_deg = 9.5F;  // ASTM E1980: low-sloped surfaces
+    const bool sloped = run.terrain && wants(run, {LayerId::sri});
+    for (int r = 0; r < window.height; ++r) {
+        const auto dry = heat->dry().row(r);
+        const auto flag = flags.row(r);
+        for (std::size_t i = 0; i < flag.size(); ++i) {
+            const bool outside = !(dry[i] >= 1) || (sloped && !(slope_deg.row(r)[i] < steepest_deg));
+            flag[i] = static_cast<std::uint16_t>(flag[i] | (outside ? quality::outside_scope : 0));
+        }
+    }
+}
+
+/// The sunlight a band's surface keeps, for what becomes of it.
+void Flow::State::sum_net_light(std::size_t band, const BandPlanes& planes) {
+    if (!needs.net_light) return;
+    resize(net_light, window);
+    net_light.fill(std::numeric_limits<float>::quiet_NaN());
+    if (!run.light.thin.empty() && run.light.thin[band]) return;
+    std::vector<float> rest(static_cast<std::size_t>(window.width));
+    for (int r = 0; r < window.height; ++r) {
+        const auto sky = planes.diffuse.row(r);
+        std::copy(sky.begin(), sky.end(), rest.begin());
+        if (run.terrain) std::transform(rest.begin(), rest.end(), planes.reflected.row(r).begin(), rest.begin(), std::plus<>());
+        absorbed_shortwave(albedo.row(r), planes.direct.row(r), albedo.row(r), rest, net_light.row(r));
+    }
+}
+
+void Flow::State::put_heat_layers(std::size_t band, Sink& sink) {
+    if (!needs.heat || !run.times) return;
+    const Plane<float> no_plane;
+    const auto& found = heat->band(band, run.terrain ? sky_view : no_plane, net_light);
+    if (band == 0) note(heat->emissivity(), window, {}, "emissivity", "1", "emissivity before rounding");
+    note(heat->air_k(), window, band, "air_temperature", "K", "of the air at the pixel's height");
+    note(heat->sky(), window, band, "longwave_sky", "W/m2", "heat radiation of the whole sky on level open ground");
+    note(net_light, window, band, "net_light", "W/m2", "sunlight that is kept");
+    note(found.down, window, band, "longwave_down", "W/m2", "heat radiation from the sky and the ground in view");
+    note(found.surface_k, window, band, "surface_temperature", "K", "of the ground");
+    note(found.up, window, band, "longwave_up", "W/m2", "heat radiation sent up and reflected");
+    const auto scaled = [&](const Plane<float>& plane, float factor, float offset) {
+        return [&plane, factor, offset](int r, std::span<float> out) {
+            std::transform(plane.row(r).begin(), plane.row(r).end(), out.begin(), [&](float v) { return v * factor + offset; });
+        };
+    };
+    for (std::size_t n = 0; n < run.layers.size(); ++n) {
+        const auto& factors = run.layers[n].factors;
+        if (run.layers[n].changed) continue;
+        const auto factor = static_cast<float>(factors[std::min(band, factors.size() - 1)]);
+        switch (run.layers[n].layer->id) {
+            case LayerId::longwave_down: put_plane(n, band, scaled(found.down, factor, 0), sink); break;
+            case LayerId::longwave_up: put_plane(n, band, scaled(found.up, factor, 0), sink); break;
+            case LayerId::net_longwave: put_plane(n, band, scaled(found.net, factor, 0), sink); break;
+            case LayerId::surface_temperature: put_plane(n, band, scaled(found.surface_k, 1, -273.15F), sink); break;
+            case LayerId::net_radiation:
+                put_plane(n, band, [&](int r, std::span<float> out) {
+                    std::transform(net_light.row(r).begin(), net_light.row(r).end(), found.net.row(r).begin(), out.begin(),
+                                   [&](float light, float heat_left) { return (light + heat_left) * factor; });
+                }, sink);
+                break;
+            default: break;
+        }
+    }
 }
 
 void Flow::State::put_light_layers(std::size_t band, std::size_t held, Sink& sink) {
@@ -562,7 +656,7 @@ void Flow::State::put_light_layers(std::size_t band, std::size_t held, Sink& sin
     note_band(band, light);
     for (std::size_t n = 0; n < run.layers.size(); ++n) {
         const auto& layer = run.layers[n];
-        if (!layer.layer->needs_sun || layer.changed) continue;
+        if (!layer.layer->needs_sun || layer.layer->needs_air || layer.changed) continue;
         const auto factor = static_cast<float>(layer.factors[band]);
         const bool thin = !run.light.thin.empty() && run.light.thin[band] && layer.layer->id != LayerId::sunlit_hours;
         const auto row_of = [&](const LitBand& lit, int r, std::span<float> out) {
@@ -584,26 +678,35 @@ void Flow::State::begin(const Window& where) {
     surface.read(window, albedo, flags);
     read_heights();
     prepare_light();
+    if (heat) heat->read(window, blocks_of(window), heights_m, flags);
     beside.begin(window, albedo);
     for (auto& one : raised) one->begin(where);
 }
 
 /// From shadows to finished planes; the first bands bring the surface's own layers.
 void Flow::State::some_bands(std::size_t first, std::size_t count, Sink& sink) {
-    bands.resize(std::max(bands.size(), count));
-    read_clouds(first, count);
-    beside.some_bands(first, count, ground_lights_sky());
-    if (run.terrain)
-        terrain_bands(first, count);
-    else
-        flat_bands(first, count);
+    const std::size_t lit = shared.field() != nullptr ? count : 0;
+    bands.resize(std::max(bands.size(), lit));
+    read_clouds(first, lit);
+    beside.some_bands(first, lit, ground_lights_sky());
+    if (run.terrain && (lit > 0 || first == 0))
+        terrain_bands(first, lit);
+    else if (!run.terrain)
+        flat_bands(first, lit);
     if (first == 0) {
-        if (count > 0)
+        if (lit > 0)
             flag_missing_light(run.terrain ? open[static_cast<std::size_t>(LightField::Part::beam_up)] : bands[0].direct);
+        flag_outside_scope();
         count_flags();
         put_surface_layers(sink);
     }
-    for (std::size_t i = 0; i < count; ++i) put_light_layers(first + i, i, sink);
+    for (std::size_t i = 0; i < count; ++i) {
+        if (lit > 0) {
+            put_light_layers(first + i, i, sink);
+            sum_net_light(first + i, bands[i]);
+        }
+        put_heat_layers(first + i, sink);
+    }
     for (std::size_t i = 0; i < raised.size(); ++i) {
         SavedSink after(beside, *shared.raised()[i], sink);
         raised[i]->some_bands(first, count, after);
@@ -633,7 +736,8 @@ void Flow::watch(Probe& probe) {
 const std::map<std::uint16_t, std::uint64_t>& Flow::flags() const { return state_->flag_counts; }
 
 std::uint64_t Flow::infinities() const {
-    return state_->surface.infinities() + (state_->shader ? state_->shader->infinities() : 0);
+    return state_->surface.infinities() + (state_->shader ? state_->shader->infinities() : 0) +
+           (state_->heat ? state_->heat->infinities() : 0);
 }
 
 }  // namespace sunbudget

@@ -4,6 +4,7 @@
 
 #include <algorithm>
 #include <array>
+#include <cmath>
 #include <numbers>
 
 #include "sunbudget/base/error.hpp"
@@ -16,6 +17,7 @@ namespace {
 /// The first day that no longer belongs to the month, season or year of `date`.
 CivilDate end_of_bin(const CivilDate& date, Totals totals) {
     switch (totals) {
+        case Totals::hour:
         case Totals::day: return next_day(date);
         case Totals::month: return date.month == 12 ? CivilDate{date.year + 1, 1, 1} : CivilDate{date.year, date.month + 1, 1};
         case Totals::season: {
@@ -31,6 +33,7 @@ CivilDate end_of_bin(const CivilDate& date, Totals totals) {
 /// The first day of the bin that ends before `end`.
 CivilDate start_of_bin(const CivilDate& date, Totals totals) {
     switch (totals) {
+        case Totals::hour:
         case Totals::day: return date;
         case Totals::month: return {date.year, date.month, 1};
         case Totals::season: {
@@ -73,6 +76,15 @@ Period period_of(std::string name, const CivilDate& from, const CivilDate& end, 
     return period;
 }
 
+/// The hours of one day, named by their beginning.
+void add_hours(std::vector<Period>& periods, const CivilDate& day, DailyWindow hours, const Zone& zone) {
+    for (double begin_h = hours.begin_h; begin_h < hours.end_h; begin_h += 1) {
+        const DailyWindow one{begin_h, std::min(begin_h + 1, hours.end_h)};
+        const auto minutes = static_cast<int>(std::lround(begin_h * 60));
+        periods.push_back(period_of(fmt::format("{}T{:02}:{:02}", format_date(day), minutes / 60, minutes % 60), day, next_day(day), one, zone));
+    }
+}
+
 }  // namespace
 
 UtcSeconds TimePlan::earliest() const {
@@ -96,6 +108,11 @@ std::vector<Period> periods_of(CivilDate from, CivilDate to, Totals totals, Dail
     const CivilDate end = next_day(to);
     std::vector<Period> periods;
     for (CivilDate start = from; start < end;) {
+        if (totals == Totals::hour) {
+            add_hours(periods, start, hours, zone);
+            start = next_day(start);
+            continue;
+        }
         const CivilDate stop = std::min(end, totals == Totals::whole ? end : end_of_bin(start, totals));
         periods.push_back(period_of(bin_name(start, stop, totals), start, stop, hours, zone));
         start = stop;

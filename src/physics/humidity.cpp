@@ -1,6 +1,10 @@
 #include "sunbudget/physics/humidity.hpp"
 
+#include <cassert>
 #include <cmath>
+
+#include "float_math.hpp"
+#include "sunbudget/base/simd.hpp"
 
 namespace sunbudget {
 
@@ -10,11 +14,25 @@ constexpr double at_freezing_hpa = 6.108;
 constexpr double slope = 17.27;
 constexpr double pole_celsius = -237.3;
 constexpr double freezing_k = 273.15;
+
+SUNBUDGET_CLONES void saturation_row(std::size_t n, const float* t, float* out) noexcept {
+    for (std::size_t i = 0; i < n; ++i) {
+        const float celsius = t[i] - static_cast<float>(freezing_k);
+        out[i] = static_cast<float>(at_freezing_hpa) *
+                 exp_of(static_cast<float>(slope) * celsius / (celsius - static_cast<float>(pole_celsius)));
+    }
+}
 }  // namespace
 
 double saturation_vapour_pressure_hpa(double temperature_k) noexcept {
     const double celsius = temperature_k - freezing_k;
     return at_freezing_hpa * std::exp(slope * celsius / (celsius - pole_celsius));
+}
+
+void saturation_vapour_pressure(std::span<const float> temperature_k,
+                                std::span<float> pressure_hpa) noexcept {
+    assert(temperature_k.size() == pressure_hpa.size());
+    saturation_row(pressure_hpa.size(), temperature_k.data(), pressure_hpa.data());
 }
 
 double dew_point_k(double vapour_pressure_hpa) noexcept {

@@ -18,6 +18,9 @@ std::string with_or(const std::vector<std::string>& parts) {
 std::string range_of(const Form& form) {
     std::string unit = form.kind == ValueKind::length ? " m" : "";
     double per_unit = 1;
+    if (form.kind == ValueKind::temperature || form.kind == ValueKind::difference) unit = " K";
+    if (form.kind == ValueKind::pressure) unit = " hPa";
+    if (form.kind == ValueKind::lapse) unit = " K/km";
     if (form.kind == ValueKind::duration) {
         unit = " min";
         per_unit = 60;
@@ -67,6 +70,14 @@ std::string expected(const Form& form) {
             return "a length (250 m, 20 km, 800 ft)" + range_of(form);
         case ValueKind::duration:
             return "a duration (10 min, 1 h)" + range_of(form);
+        case ValueKind::temperature:
+            return "a temperature (25 degC, 298 K)" + range_of(form);
+        case ValueKind::difference:
+            return "a difference of temperatures (4 K)" + range_of(form);
+        case ValueKind::pressure:
+            return "a pressure (14 hPa, 1.4 kPa)" + range_of(form);
+        case ValueKind::lapse:
+            return "a lapse (6.5 K/km)" + range_of(form);
         case ValueKind::date:
             return "a date (2025-06-21)";
         case ValueKind::instant:

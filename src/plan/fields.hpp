@@ -64,6 +64,12 @@ void visit_weather(Weather& weather, Visitor& v) {
     v.value("gaps", weather.gaps);
     v.value("station", weather.station);
     v.value("station_elevation", weather.station_elevation);
+    v.value("air_temperature", weather.air_temperature);
+    v.value("relative_humidity", weather.relative_humidity);
+    v.value("dew_point", weather.dew_point);
+    v.value("vapour_pressure", weather.vapour_pressure);
+    v.value("lapse", weather.lapse);
+    v.value("wind", weather.wind);
 }
 
 template <class Change, class Visitor>
@@ -118,6 +124,7 @@ void visit_plan(P& plan, Visitor& v) {
             v.value("offset", albedo.offset);
             v.value("value", albedo.value);
         });
+        v.value("emissivity", plan.surface.emissivity);
     });
     v.map("terrain", [&] {
         v.value("elevation", plan.terrain.elevation);
@@ -139,6 +146,12 @@ void visit_plan(P& plan, Visitor& v) {
         v.value("index", plan.sky.index);
     });
     v.map("weather", plan.weather, [&](auto& weather) { visit_weather(weather, v); });
+    v.map("longwave", [&] {
+        v.value("method", plan.longwave.method);
+        v.value("cloud", plan.longwave.cloud);
+        v.value("cloud_method", plan.longwave.cloud_method);
+    });
+    v.value("surface_temperature", plan.surface_temperature);
     v.map("time", [&] {
         v.value("at", plan.time.at);
         v.value("from", plan.time.from);

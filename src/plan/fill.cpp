@@ -132,6 +132,66 @@ class Typed {
         get(node, value.emplace<PlanPath>());
     }
 
+    static Monthly months(const Node& node, ValueKind kind) {
+        Monthly values{};
+        // A bad one among them has a problem of its own already.
+        const auto one = [&](const Node& item) { return (kind == ValueKind::number ? read_number(item) : read_quantity(item, kind)).value_or(0); };
+        if (node.shape == Node::Shape::scalar)
+            values.fill(one(node));
+        else
+            std::ranges::transform(node.children, values.begin(), one);
+        return values;
+    }
+    /// A number of the map's, or what stands for it.
+    static double number_or(const Node& map, const char* name, double otherwise) {
+        return map.has(name) ? *read_number(*map.find(name)) : otherwise;
+    }
+    static std::string text_or_none(const Node& map, const char* name) {
+        return map.has(name) ? map.find(name)->text : std::string();
+    }
+    void get(const Node& node, PlanFieldRaster& value) const {
+        if (node.has("raster")) get(*node.find("raster"), value.raster);
+        value.unit = text_or_none(node, "unit");
+        value.scale = number_or(node, "scale", 1);
+        value.offset = number_or(node, "offset", 0);
+    }
+    void field(const Node& node, ValueKind kind, std::variant<Monthly, PlanFieldRaster>& value) const {
+        if (node.shape == Node::Shape::map) return get(node, value.emplace<PlanFieldRaster>());
+        value = months(node, kind);
+    }
+    void get(const Node& node, PlanTemperatures& value) const { field(node, ValueKind::temperature, value.value); }
+    void get(const Node& node, PlanPressures& value) const { field(node, ValueKind::pressure, value.value); }
+    void get(const Node& node, PlanShares& value) const { field(node, ValueKind::number, value.value); }
+    static void get(const Node& node, PlanLapse& value) { value.k_km = months(node, ValueKind::lapse); }
+    void get(const Node& node, PlanEmissivity& value) const {
+        if (node.shape == Node::Shape::scalar) return get(node, value.value.emplace<double>());
+        if (node.has("from")) return get(*node.find("from"), value.value.emplace<EmissivityFrom>());
+        get(node, value.value.emplace<PlanFieldRaster>());
+    }
+    void get(const Node& node, PlanSurfaceRaster& value) const {
+        get(*node.find("raster"), value.raster);
+        if (node.has("product")) get(*node.find("product"), value.product.emplace());
+        value.unit = text_or_none(node, "unit");
+        if (node.has("scale")) value.scale = number_or(node, "scale", 1);
+        if (node.has("offset")) value.offset = number_or(node, "offset", 0);
+        value.time = text_or_none(node, "time");
+        if (node.has("covers")) get(*node.find("covers"), value.covers);
+    }
+    void get(const Node& node, PlanSurfaceTemperature& value) const {
+        if (node.shape != Node::Shape::map) {
+            if (node.shape == Node::Shape::scalar && node.text == surface_table_names[0])
+                value.value = SurfaceTable::table;
+            else
+                value.value = months(node, ValueKind::temperature);
+        } else if (node.has("raster")) {
+            get(node, value.value.emplace<PlanSurfaceRaster>());
+        } else if (node.has("from")) {
+            value.value = HeatSource::balance;
+        } else {
+            value.value = PlanDifference{node.has("air_plus") ? *read_quantity(*node.find("air_plus"), ValueKind::difference) : 0};
+        }
+    }
+
     static bool is_choice(const Node& node, const std::string& key) {
         const auto& choices = plan_key(key).forms.front().choices;
         return std::ranges::find(choices, node.text) != choices.end();
@@ -284,6 +344,7 @@ Plan with_defaults(Plan plan) {
         weather.zone.reset();
         weather.years.reset();
         weather.gaps.reset();
+        if (!weather.air_temperature) weather.lapse.reset();
     }
     // Steps, days and totals belong to a period.
     if (!written.from) plan.time = written;

@@ -37,6 +37,13 @@ Form length(double min_m, double max_m) {
 Form duration(double min_s, double max_s) {
     return {.kind = ValueKind::duration, .min = min_s, .max = max_s};
 }
+Form quantity(ValueKind kind, double min, double max) {
+    return {.kind = kind, .min = min, .max = max};
+}
+// From below the coldest night of Antarctica to above the hottest ground.
+Form temperature() {
+    return quantity(ValueKind::temperature, 180, 380);
+}
 Form path_beside_names() {
     return {.kind = ValueKind::path, .beside_names = true};
 }
@@ -175,10 +182,30 @@ Form reflectance_form() {
          needs("offset", {"scale"})});
 }
 
+/// A number, one for each month, or a raster in a unit that is named.
+std::vector<Form> field_forms(const Form& one, const std::vector<std::string>& units) {
+    std::vector<Key> keys{{"raster", {of(ValueKind::raster)}, "a value for each pixel, taken as it is there", {}, true}};
+    if (!units.empty()) keys.push_back({"unit", {choice(units)}, "of the raster", {}, true});
+    keys.push_back({"scale", {number_above(0)}, "value = stored value * scale + offset, in that unit", {}});
+    keys.push_back({"offset", {number()}, "see scale", {}});
+    return {one, list(one, 12, 12), map(std::move(keys))};
+}
+
+Form emissivity_form() {
+    return map({{"raster", {of(ValueKind::raster)}, "emissivity of each pixel"},
+                {"scale", {number_above(0)}, "emissivity = stored value * scale + offset"},
+                {"offset", {number()}, "see scale"},
+                {"from", {choice(emissivity_from_names)}, "cover: of the class; ndvi: from the image (Sobrino 2004), built kinds of a cover keep their class's"}},
+               {exactly_one({"raster", "from"}), needs("scale", {"raster"}), needs("offset", {"raster"})});
+}
+
 Form surface_form() {
     return map({{"cover", {cover_form()}, "albedo from land cover"},
                 {"reflectance", {reflectance_form()}, "albedo from an image's surface reflectance"},
-                {"albedo", {albedo_form()}, "albedo as given"}},
+                {"albedo", {albedo_form()}, "albedo as given"},
+                {"emissivity",
+                 {number(0, 1), emissivity_form()},
+                 "share of a black body's heat radiation: a number, or a map with raster, or with from; default: of the cover's classes"}},
                {at_most_one({"cover", "albedo"}), at_most_one({"reflectance", "albedo"})});
 }
 
@@ -286,8 +313,13 @@ Form weather_units_form() {
 Form weather_form() {
     std::vector<Rule> rules;
     for (const auto* key : {"columns", "units", "flags", "good_flags", "missing", "separator", "decimal", "header", "skip", "comment",
-                            "time_form", "stamp", "interval", "zone", "years", "gaps", "station", "station_elevation"})
+                            "time_form", "stamp", "interval", "zone", "years", "gaps", "station"})
         rules.push_back(needs(key, {"table"}));
+    for (const auto* key : {"air_temperature", "relative_humidity", "dew_point", "vapour_pressure"})
+        rules.push_back(at_most_one({"table", key}));
+    rules.push_back(at_most_one({"relative_humidity", "dew_point"}));
+    rules.push_back(at_most_one({"relative_humidity", "vapour_pressure"}));
+    rules.push_back(at_most_one({"dew_point", "vapour_pressure"}));
     return map(
         {{"table", {of(ValueKind::path)}, "a station's record, rows in order of time"},
          {"columns", {weather_columns_form()}, "which columns to take; default: those with the names of quantities"},
@@ -309,8 +341,53 @@ Form weather_form() {
          {"years", {choice(years_names)}, "typical: the rows stand for every year, whatever theirs is", "own"},
          {"gaps", {choice(gaps_names)}, "report: a day needs 90 % of its light and a month 80 % of its days, else no data; smaller gaps take the day's or month's mean; stop: a sunlit gap stops the run", "report"},
          {"station", {list(number(-180, 180), 2, 2)}, "[latitude, longitude] in degrees; default: the middle of the grid"},
-         {"station_elevation", {length(-500, 9000)}, "height above sea level; default: that of the ground where it is one height"}},
+         {"station_elevation",
+          {length(-500, 9000)},
+          "height above sea level at which table or numbers hold; default: that of the ground where it is one height, numbers hold at every height"},
+         {"air_temperature",
+          field_forms(temperature(), {"degC", "K"}),
+          "without a table: one temperature, one per month, or {raster, unit, scale, offset}"},
+         {"relative_humidity", field_forms(number(0, 1), {}), "likewise, from 0 to 1"},
+         {"dew_point", field_forms(temperature(), {"degC", "K"}), "likewise"},
+         {"vapour_pressure", field_forms(quantity(ValueKind::pressure, 0, 100), {"hPa", "kPa", "Pa"}), "likewise"},
+         {"lapse",
+          {quantity(ValueKind::lapse, -50, 50), list(quantity(ValueKind::lapse, -50, 50), 12, 12)},
+          "how much colder the air is for each km up; negative in an inversion",
+          "6.5 K/km"},
+         {"wind", {choice(wind_names)}, "below 2, 2 to 6, 6 to 10 m/s: for a balanced surface temperature and the solar reflectance index"}},
         std::move(rules));
+}
+
+Form longwave_form() {
+    auto methods = method_names("longwave");
+    methods.push_back("measured");
+    auto laws = method_names("longwave_cloud");
+    std::erase(laws, "crawford-duchon1999");  // its number comes from sunlight, not from a share of the sky
+    return map({{"method",
+                 {choice(methods)},
+                 "the clear sky's heat radiation; default: measured where the table has longwave_down, else " + methods.front()},
+                {"cloud",
+                 {number(0, 1), list(number(0, 1), 12, 12)},
+                 "share of the sky; default: the table's cloud, else told from its global (Crawford & Duchon 1999); without a table that of sky.cloud, else none"},
+                {"cloud_method", {choice(laws)}, "what a share of cloud adds; default: " + laws.front()}});
+}
+
+std::vector<Form> surface_temperature_forms() {
+    return {temperature(), choice(surface_table_names), list(temperature(), 12, 12),
+            map({{"raster", {of(ValueKind::raster)}, "temperature of each pixel"},
+                 {"product", {choice(surface_product_names)}, "Landsat Collection 2 Level-2: K = stored value * 0.00341802 + 149; default: told by the file's name"},
+                 {"unit", {choice({"K", "degC"})}, "of the raster; default: as the product or the file says"},
+                 {"scale", {number_above(0)}, "temperature = stored value * scale + offset, in that unit"},
+                 {"offset", {number()}, "see scale"},
+                 {"time", {of(ValueKind::instant)}, "when it was taken, with its offset from UTC; default: as the product says"},
+                 {"covers", {choice(raster_covers_names)}, "period-mean: the raster holds the mean of each of the run's periods", "instant"},
+                 {"air_plus", {quantity(ValueKind::difference, -50, 80)}, "the air's temperature and so much more"},
+                 {"from",
+                  {choice(heat_source_names)},
+                  "steady balance of light, heat radiation and air, of dry built and bare kinds at an instant"}},
+                {exactly_one({"raster", "air_plus", "from"}), needs("product", {"raster"}), needs("unit", {"raster"}),
+                 needs("scale", {"raster"}), needs("offset", {"raster"}), needs("time", {"raster"}), needs("covers", {"raster"}),
+                 at_most_one({"product", "scale"}), at_most_one({"product", "offset"}), at_most_one({"product", "unit"})})};
 }
 
 Form period_form() {
@@ -414,7 +491,11 @@ const Form& plan_form() {
              {"surface", {surface_form()}, "where albedo comes from"},
              {"terrain", {terrain_form()}, "default: flat ground at 0 m"},
              {"sky", {sky_form()}, "the cloudless atmosphere"},
-             {"weather", {weather_form()}, "what was measured"},
+             {"weather", {weather_form()}, "what was measured, or the air in numbers"},
+             {"longwave", {longwave_form()}, "heat radiation of the sky"},
+             {"surface_temperature",
+              surface_temperature_forms(),
+              "of the ground: one, one per month, table (the weather's column), or one of raster, air_plus and from"},
              {"time", {time_form()}, "needed by every layer of radiation"},
              {"outputs", {outputs_form()}, "what to write", {}, true},
              {"zones", {zones_form()}, "parcels, blocks or wards to give figures of, in zones.csv and zones.gpkg"},

@@ -20,6 +20,10 @@ enum class ValueKind {
     boolean,   ///< true or false, without quotes
     length,    ///< "250 m", "20 km", "800 ft"
     duration,  ///< "10 min", "1 h", "30 s"
+    temperature,  ///< "25 degC", "298 K"
+    difference,   ///< of two temperatures: "4 K"
+    pressure,     ///< "14 hPa", "1.4 kPa"
+    lapse,        ///< "6.5 K/km"
     date,
     instant,
     hours,  ///< "12-17", "6:30-18:30"
@@ -43,7 +47,8 @@ struct Key;
 struct Form {
     ValueKind kind = ValueKind::text;
     std::vector<std::string> choices{};  ///< of a choice; of an integer that has but a few
-    /// Bounds of a number, an integer, a length in m, a duration in s; the count of a list.
+    /// Bounds of a number, an integer, a length in m, a duration in s, a temperature or a difference in K, a
+    /// pressure in hPa, a lapse in K/km; the count of a list.
     std::optional<double> min{};
     std::optional<double> max{};
     bool above_min = false;     ///< `min` itself is not allowed

@@ -9,7 +9,7 @@ namespace sunbudget {
 
 // The words of the plan file for our enumerations, in their order.
 inline constexpr std::array<std::string_view, 2> like_names{"surface", "elevation"};
-inline constexpr std::array<std::string_view, 5> totals_names{"whole", "day", "month", "season",
+inline constexpr std::array<std::string_view, 6> totals_names{"whole", "hour", "day", "month", "season",
                                                               "year"};
 inline constexpr std::array<std::string_view, 2> format_names{"cog", "geotiff"};
 inline constexpr std::array<std::string_view, 3> height_unit_names{"m", "ft", "us-ft"};
@@ -25,6 +25,13 @@ inline constexpr std::array<std::string_view, 2> header_names{"line", "none"};
 inline constexpr std::array<std::string_view, 3> stamp_names{"start", "middle", "end"};
 inline constexpr std::array<std::string_view, 2> years_names{"own", "typical"};
 inline constexpr std::array<std::string_view, 2> gaps_names{"report", "stop"};
+
+inline constexpr std::array<std::string_view, 2> emissivity_from_names{"cover", "ndvi"};
+inline constexpr std::array<std::string_view, 1> surface_table_names{"table"};
+inline constexpr std::array<std::string_view, 1> surface_product_names{"landsat-c2"};
+inline constexpr std::array<std::string_view, 2> raster_covers_names{"instant", "period-mean"};
+inline constexpr std::array<std::string_view, 1> heat_source_names{"balance"};
+inline constexpr std::array<std::string_view, 3> wind_names{"low", "medium", "high"};
 
 constexpr const auto& names_for(LikeInput) {
     return like_names;
@@ -70,6 +77,24 @@ constexpr const auto& names_for(Years) {
 }
 constexpr const auto& names_for(Gaps) {
     return gaps_names;
+}
+constexpr const auto& names_for(EmissivityFrom) {
+    return emissivity_from_names;
+}
+constexpr const auto& names_for(SurfaceTable) {
+    return surface_table_names;
+}
+constexpr const auto& names_for(SurfaceProduct) {
+    return surface_product_names;
+}
+constexpr const auto& names_for(RasterCovers) {
+    return raster_covers_names;
+}
+constexpr const auto& names_for(HeatSource) {
+    return heat_source_names;
+}
+constexpr const auto& names_for(WindCase) {
+    return wind_names;
 }
 
 }  // namespace sunbudget

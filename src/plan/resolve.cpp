@@ -71,6 +71,7 @@ class Resolver {
         resolve_sky(plan_, options_, run_, problems_);
         resolve_time(plan_, run_, problems_);
         resolve_weather(plan_, options_, run_, problems_);
+        resolve_heat(plan_, options_, run_, problems_);
         resolve_clouds(plan_, options_, run_, problems_);
         problems_.throw_if_any();
         resolve_layers(plan_, run_, problems_);
@@ -184,6 +185,30 @@ class Resolver {
 
 }  // namespace
 
+namespace {
+
+/// Rasters of air, emissivity and surface temperature.
+std::vector<std::pair<PlanRaster, Place>> heat_rasters(const Plan& plan) {
+    std::vector<std::pair<PlanRaster, Place>> rasters;
+    const auto add = [&](const auto& given) {
+        if (!given) return;
+        if (const auto* field = std::get_if<PlanFieldRaster>(&(**given).value)) rasters.emplace_back(field->raster, given->place);
+    };
+    add(plan.surface.emissivity);
+    if (plan.weather) {
+        add(plan.weather->air_temperature);
+        add(plan.weather->relative_humidity);
+        add(plan.weather->dew_point);
+        add(plan.weather->vapour_pressure);
+    }
+    if (plan.surface_temperature)
+        if (const auto* raster = std::get_if<PlanSurfaceRaster>(&(**plan.surface_temperature).value))
+            rasters.emplace_back(raster->raster, plan.surface_temperature->place);
+    return rasters;
+}
+
+}  // namespace
+
 std::vector<std::pair<RasterName, Place>> read_rasters(const Plan& plan) {
     std::vector<std::pair<RasterName, Place>> rasters;
     if (plan.surface.cover) rasters.emplace_back(raster_of(*plan.surface.cover->raster), plan.surface.cover->raster.place);
@@ -203,6 +228,7 @@ std::vector<std::pair<RasterName, Place>> read_rasters(const Plan& plan) {
     if (plan.terrain.slope_from)
         if (const auto* path = std::get_if<PlanPath>(&**plan.terrain.slope_from))
             rasters.emplace_back(RasterName{path->file, 1, {}}, plan.terrain.slope_from->place);
+    for (const auto& [raster, place] : heat_rasters(plan)) rasters.emplace_back(raster_of(raster), place);
     if (plan.sky.cloud)
         if (const auto* list = std::get_if<std::vector<PlanRaster>>(&**plan.sky.cloud))
             for (const auto& raster : *list) rasters.emplace_back(raster_of(raster), plan.sky.cloud->place);

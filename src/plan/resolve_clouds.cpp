@@ -207,7 +207,7 @@ void take_sunshine(const Plan& plan, Run& run) {
 }  // namespace
 
 void resolve_clouds(const Plan& plan, const ResolveOptions& options, Run& run, RunProblems& problems) {
-    if (!run.times) return;
+    if (!run.times || !needs_light(plan)) return;
     const bool measured = run.weather && has_light(run.weather->record);
     const auto clouds = plan.sky.cloud ? std::optional(plan.sky.cloud->place) : plan.sky.sunshine ? std::optional(plan.sky.sunshine->place)
                         : plan.sky.index  ? std::optional(plan.sky.index->place)

@@ -23,20 +23,21 @@ std::string period_text(const Period& period, const TimePlan& times) {
 /// From what the flow gives (W m-2, mean over the band's period; hours for each 24) to the stored unit.
 double factor_of(const Layer& layer, OutputUnit unit, double period_s) {
     if (layer.quantity == Quantity::hours) return period_s / seconds_per_day;
+    if (layer.quantity != Quantity::radiation) return 1.0;
     return unit == OutputUnit::w_m2 ? 1.0 : period_s / joules_of(unit);
 }
 
 BandText band_of(const Layer& layer, const Run& run, std::size_t band) {
     BandText text;
     text.description = layer.name;
-    if (layer.needs_sun && run.times->instant) {
+    if (layer.needs_time() && run.times && run.times->instant) {
         text.description = format_utc(*run.times->instant);
         text.metadata["time"] = text.description;
-    } else if (layer.needs_sun) {
+    } else if (layer.needs_time() && run.times) {
         const auto& period = run.times->periods[band];
         text.description = period.name;
         text.metadata["period"] = period_text(period, *run.times);
-        const bool mean = layer.quantity == Quantity::radiation && run.unit == OutputUnit::w_m2;
+        const bool mean = layer.quantity == Quantity::temperature || (layer.quantity == Quantity::radiation && run.unit == OutputUnit::w_m2);
         text.metadata["cell_methods"] = mean ? "time: mean" : "time: sum";
     }
     if (const auto& name = standard_name_of(layer, run.unit); !name.empty()) text.metadata["standard_name"] = name;
@@ -57,7 +58,7 @@ std::map<std::string, std::string> file_metadata(const Layer& layer, const Run& 
     if (const auto* image = std::get_if<ReflectanceSurface>(&run.surface);
         image != nullptr && (layer.needs_albedo || layer.id == LayerId::quality))
         items.merge(reflectance_metadata(*image));
-    if (layer.needs_sun) {
+    if (layer.needs_time() && run.times) {
         if (layer.quantity == Quantity::radiation)
             items["per_area"] = run.terrain ? "square metre of the inclined surface"
                                             : "square metre of horizontal ground: the ground is taken as level and open";
@@ -86,12 +87,13 @@ OutputLayer output_layer(const Layer& layer, const Run& run) {
     file.nearest = layer.id == LayerId::aspect;
     file.sample = layer.sample == SampleType::float32 ? Sample::float32 : Sample::uint16;
     file.unit = unit_of(layer, run.unit);
-    const std::size_t bands = layer.needs_sun ? run.times->bands() : 1;
+    const bool timed = layer.needs_time() && run.times;
+    const std::size_t bands = timed ? run.times->bands() : 1;
     double quantum = 1e300;
     for (std::size_t band = 0; band < bands; ++band) {
-        const double period_s = layer.needs_sun && !run.times->instant ? run.times->periods[band].duration_s : 1;
+        const double period_s = timed && !run.times->instant ? run.times->periods[band].duration_s : 1;
         file.bands.push_back(band_of(layer, run, band));
-        out.factors.push_back(layer.needs_sun ? factor_of(layer, run.unit, period_s) : 1.0);
+        out.factors.push_back(timed ? factor_of(layer, run.unit, period_s) : 1.0);
         quantum = std::min(quantum, quantum_of(layer, run.unit, period_s));
     }
     file.metadata = file_metadata(layer, run);

@@ -79,7 +79,17 @@ bool needs_sun(const Plan& plan) {
                        [](const auto& name) { return layer(*name).needs_sun; });
 }
 
+bool needs_time(const Plan& plan) {
+    return std::any_of(plan.outputs.layers.begin(), plan.outputs.layers.end(),
+                       [](const auto& name) { return layer(*name).needs_time(); });
+}
+
 }  // namespace
+
+bool needs_light(const Plan& plan) {
+    return needs_sun(plan) ||
+           (needs_time(plan) && plan.surface_temperature && std::holds_alternative<HeatSource>((**plan.surface_temperature).value));
+}
 
 Geodetic middle_of(const Grid& grid) {
     const auto place = Locator(grid).at(grid.width / 2.0, grid.height / 2.0);
@@ -88,7 +98,7 @@ Geodetic middle_of(const Grid& grid) {
 }
 
 void resolve_elevation(const Plan& plan, const ResolveOptions& options, Run& run, RunProblems& problems) {
-    const bool needed = needs_sun(plan);
+    const bool needed = needs_light(plan);
     if (!plan.terrain.elevation) {
         if (needed) run.assumptions.emplace_back("no terrain.elevation: the ground is level and open, at 0 m");
         return;
@@ -202,7 +212,7 @@ void resolve_sky_parameter(SkyParameter id, const Plan& plan, const ResolveOptio
     run.sky[id] = std::get<Monthly>(**given);
     for (const double value : run.sky[id])
         if (!judge_number(*parameter, value, given->place, run, problems)) break;
-    if (given->place.is_default && needs_sun(plan))
+    if (given->place.is_default && needs_light(plan))
         run.assumptions.push_back(fmt::format("sky.{} is not given: {}{}", parameter->name, *parameter->default_value,
                                               parameter->unit == "1" ? "" : " " + parameter->unit));
 }
@@ -214,14 +224,14 @@ void resolve_sky(const Plan& plan, const ResolveOptions& options, Run& run, RunP
     if (plan.sky.diffuse) run.sky.diffuse = diffuse_model_named(**plan.sky.diffuse);
     for (std::size_t i = 0; i < sky_parameter_count; ++i) resolve_sky_parameter(static_cast<SkyParameter>(i), plan, options, run, problems);
     if (plan.sky.uncertainty) run.light_uncertainty = **plan.sky.uncertainty;
-    if (waits_for_ground(run.sky) && !run.has_surface() && !run.terrain && needs_sun(plan))
+    if (waits_for_ground(run.sky) && !run.has_surface() && !run.terrain && needs_light(plan))
         run.assumptions.push_back(fmt::format("no surface: the ground that lights the sky is taken to reflect {}", albedo_where_unknown));
 }
 
 void resolve_time(const Plan& plan, Run& run, RunProblems& problems) {
     const auto& time = plan.time;
     if (!time.at && !time.from) return;
-    if (!needs_sun(plan)) {
+    if (!needs_time(plan)) {
         run.assumptions.emplace_back("no layer needs the sun: the plan's time is not used");
         return;
     }
@@ -248,6 +258,7 @@ void resolve_time(const Plan& plan, Run& run, RunProblems& problems) {
     }
     if (time.days && **time.days == DayChoice::mid_month) thin_days(plan, run, times, problems);
     run.times = std::move(times);
+    if (!needs_light(plan)) return;
     for (const auto* family : {"sun_position", "air_mass"})
         run.methods.push_back(&method(family, method_names(family).front()));
     if (run.terrain) run.methods.push_back(&method("diffuse_sky", plan.sky.diffuse ? **plan.sky.diffuse : method_names("diffuse_sky").front()));

@@ -39,6 +39,9 @@ void add_input(Run& run, const std::string& role, const Source& source);
 /// What the files of an image's albedo say of it.
 [[nodiscard]] std::map<std::string, std::string> reflectance_metadata(const ReflectanceSurface& surface);
 
+/// Light is asked for, if only for a balance.
+[[nodiscard]] bool needs_light(const Plan& plan);
+
 // The steps of resolve(), in this order; each fills its part of the run.
 /// After the cover, which becomes the fill.
 void resolve_reflectance(const PlanReflectance& image, const ResolveOptions& options, Run& run, RunProblems& problems);
@@ -50,6 +53,8 @@ void resolve_time(const Plan& plan, Run& run, RunProblems& problems);
 void resolve_weather(const Plan& plan, const ResolveOptions& options, Run& run, RunProblems& problems);
 /// Last of the sky: what the table or the plan's clouds make of it.
 void resolve_clouds(const Plan& plan, const ResolveOptions& options, Run& run, RunProblems& problems);
+/// After surface, sky, time and weather.
+void resolve_heat(const Plan& plan, const ResolveOptions& options, Run& run, RunProblems& problems);
 void resolve_layers(const Plan& plan, Run& run, RunProblems& problems);
 /// A layer of the run as it is: file, bands, units, metadata.
 [[nodiscard]] OutputLayer output_layer(const Layer& layer, const Run& run);

@@ -51,18 +51,29 @@ class CoverClasses {
     }
 
     void fill(CoverSurface& cover, std::vector<ClassUse>& uses) const {
-        std::vector<std::pair<std::int32_t, float>> albedo, source;
+        std::vector<std::pair<std::int32_t, float>> albedo, source, emissivity, built, dry;
+        const auto add_heat = [&](std::int32_t code, const SurfaceClass& row) {
+            const bool is_built = row.kind == Kind::roof || row.kind == Kind::paved || row.kind == Kind::built;
+            emissivity.emplace_back(code, static_cast<float>(row.emissivity));
+            if (is_built) built.emplace_back(code, static_cast<float>(row.emissivity));
+            dry.emplace_back(code, is_built || row.kind == Kind::bare ? 1.0F : 0.0F);
+        };
         for (const auto& row : table_.rows()) {
             if (row.is_nodata()) continue;
             albedo.emplace_back(row.code, static_cast<float>(row.albedo));
             source.emplace_back(row.code, static_cast<float>(quality::class_table));
+            add_heat(row.code, row);
         }
         for (const auto code : unknown()) {
             albedo.emplace_back(code, static_cast<float>(default_->albedo));
             source.emplace_back(code, static_cast<float>(quality::default_class));
+            add_heat(code, *default_);
         }
         cover.albedo = CodeValues(albedo);
         cover.quality = CodeValues(source);
+        cover.emissivity = CodeValues(emissivity);
+        cover.built_emissivity = CodeValues(built);
+        cover.dry = CodeValues(dry);
         for (const auto& [code, pixels] : counts_.counts) {
             const auto* row = table_.find(code);
             const auto* used = row == nullptr ? default_ : row;
@@ -121,7 +132,7 @@ void resolve_cover(const PlanCover& plan, const ResolveOptions& options, Run& ru
         spec.name = raster_of(*plan.raster);
         spec.kind = DataKind::code;
         spec.limits = limits_of(options);
-        CoverSurface cover{Source::open(spec, run.grid), {}, {}, false};
+        CoverSurface cover{Source::open(spec, run.grid), {}, {}, {}, {}, {}, false};
         cover.averaged = cover.codes.values_alignment() == Alignment::averaged;
         add_input(run, "surface.cover.raster", cover.codes);
         if (!table) return;

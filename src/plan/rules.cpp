@@ -61,6 +61,7 @@ class CrossCheck {
     void named_periods() const;
     void named_period(const NamedPeriod& period) const;
     void layers() const;
+    void heat_layers() const;
     void unit() const;
     void directions() const;
     void zones() const;
@@ -108,8 +109,11 @@ void CrossCheck::grid_source() const {
 }
 
 void CrossCheck::weather(const PlanWeather& weather) const {
-    if (!weather.table && !written("weather.table"))
-        mistakes_.add(weather.place, "the weather has no table", "add table: FILE, or remove weather");
+    const bool has_numbers = written("weather.air_temperature") || written("weather.relative_humidity") ||
+                             written("weather.dew_point") || written("weather.vapour_pressure") || written("weather.wind");
+    if (!weather.table && !written("weather.table") && !has_numbers)
+        mistakes_.add(weather.place, "the weather has no table and no numbers",
+                      "add table: FILE, or air_temperature and a humidity, or remove weather");
     if (weather.station && std::abs((**weather.station)[0]) > 90)
         mistakes_.add(weather.station->place, "no place has the latitude " + shortest((**weather.station)[0]),
                       "write [latitude, longitude], such as [52.5, 13.4]");
@@ -131,6 +135,10 @@ void CrossCheck::dates() const {
     if (from && to && **to < **from)
         mistakes_.add(to->place, format_date(**to) + " lies before from, " + format_date(**from),
                       "both days belong to the period: to is the last");
+    constexpr long most_days = 31;  // 744 bands
+    const auto* totals = plan_.time.totals ? std::get_if<Totals>(&**plan_.time.totals) : nullptr;
+    if (from && to && totals != nullptr && *totals == Totals::hour && days_from_civil(**to) - days_from_civil(**from) >= most_days)
+        mistakes_.add(plan_.time.totals->place, "a band for each hour of more than 31 days", "take fewer days, or totals: day");
 }
 
 void CrossCheck::named_periods() const {
@@ -171,7 +179,51 @@ void CrossCheck::layers_without(bool Layer::*need, const std::string& what,
                   joined(names, ", ") + (names.size() == 1 ? " needs " : " need ") + what, todo);
 }
 
+/// What heat radiation asks for. Never a default: a guessed air is a guessed result.
+void CrossCheck::heat_layers() const {
+    const bool table = written("weather.table");
+    const bool humid = written("weather.relative_humidity") || written("weather.dew_point") || written("weather.vapour_pressure");
+    if (!table && !(written("weather.air_temperature") && humid))
+        layers_without(&Layer::needs_air, "the air's temperature and humidity",
+                       "add weather with a table, or with air_temperature and one of relative_humidity, dew_point, vapour_pressure");
+    if (!written("surface_temperature"))
+        layers_without(&Layer::needs_surface_temperature, "the ground's temperature, and the plan has none",
+                       "add surface_temperature: a number, table, or a map with raster, air_plus or from");
+    if (!written("surface.emissivity") && !written("surface.cover"))
+        layers_without(&Layer::needs_emissivity, "an emissivity, and the plan has none",
+                       "add surface.emissivity: a number or {raster: FILE}, or surface.cover, whose classes have one");
+    for (const auto& id : plan_.outputs.layers)
+        if (*id == LayerId::sri && !written("surface.cover"))
+            mistakes_.add(id.place, "sri holds for dry built and bare kinds, and nothing tells the kinds", "add surface.cover");
+    if (plan_.surface.emissivity) {
+        const auto* from = std::get_if<EmissivityFrom>(&plan_.surface.emissivity->value.value);
+        if (from != nullptr && *from == EmissivityFrom::cover && !written("surface.cover"))
+            mistakes_.add(plan_.surface.emissivity->place, "there is no land cover to take the emissivity from", "add surface.cover");
+        if (from != nullptr && *from == EmissivityFrom::ndvi && !written("surface.reflectance"))
+            mistakes_.add(plan_.surface.emissivity->place, "there is no image to take the emissivity from", "add surface.reflectance");
+    }
+    if (plan_.weather && plan_.weather->lapse && !table && has_elevation_raster() && !written("weather.station_elevation"))
+        mistakes_.add(plan_.weather->lapse->place, "nothing says at which height the air's numbers hold", "add weather.station_elevation");
+    if (!plan_.surface_temperature) return;
+    const auto& value = plan_.surface_temperature->value.value;
+    const auto& place = plan_.surface_temperature->place;
+    if (std::holds_alternative<SurfaceTable>(value) && !table)
+        mistakes_.add(place, "there is no weather table with the ground's temperature", "add weather.table");
+    const auto* raster = std::get_if<PlanSurfaceRaster>(&value);
+    if (raster != nullptr && written("time.from") && raster->covers == RasterCovers::instant)
+        mistakes_.add(place, "a raster taken at one moment is no mean of a period: a mid-morning scene is 20 to 45 W/m2 too warm for the day",
+                      "give time.at, or write covers: period-mean if the raster is a mean of the period");
+    if (!std::holds_alternative<HeatSource>(value)) return;
+    if (written("time.from"))
+        mistakes_.add(place, "a balanced temperature holds for an instant, and the plan has periods", "give time.at");
+    if (!written("surface.cover"))
+        mistakes_.add(place, "a balance holds for dry built and bare kinds, and nothing tells the kinds", "add surface.cover");
+}
+
 void CrossCheck::layers() const {
+    heat_layers();
+    if (!written("time"))
+        layers_without(&Layer::needs_air, "a time, and the plan has none", "add time with at, or with from and to");
     if (!written("time"))
         layers_without(&Layer::needs_sun, "the sun, and the plan has no time",
                        "add time with at, or with from and to");

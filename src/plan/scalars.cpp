@@ -11,9 +11,19 @@ namespace sunbudget {
 std::span<const Unit> units_of(ValueKind kind) {
     static constexpr std::array lengths{Unit{"m", 1}, Unit{"km", 1000}, Unit{"ft", 0.3048}};
     static constexpr std::array durations{Unit{"s", 1}, Unit{"min", 60}, Unit{"h", 3600}};
-    if (kind == ValueKind::length) return lengths;
-    if (kind == ValueKind::duration) return durations;
-    return {};
+    static constexpr std::array temperatures{Unit{"degC", 1, 273.15}, Unit{"K", 1}};
+    static constexpr std::array differences{Unit{"K", 1}};
+    static constexpr std::array pressures{Unit{"hPa", 1}, Unit{"kPa", 10}, Unit{"Pa", 0.01}};
+    static constexpr std::array lapses{Unit{"K/km", 1}};
+    switch (kind) {
+        case ValueKind::length: return lengths;
+        case ValueKind::duration: return durations;
+        case ValueKind::temperature: return temperatures;
+        case ValueKind::difference: return differences;
+        case ValueKind::pressure: return pressures;
+        case ValueKind::lapse: return lapses;
+        default: return {};
+    }
 }
 
 std::optional<double> read_number(const Node& node) {
@@ -45,7 +55,7 @@ std::optional<double> read_quantity(const Node& node, ValueKind kind) {
     const auto name = text.substr(text[end] == ' ' ? end + 1 : end);
     const auto unit = std::ranges::find(units_of(kind), name, &Unit::name);
     if (!number || unit == units_of(kind).end()) return std::nullopt;
-    return *number * unit->factor;
+    return *number * unit->factor + unit->offset;
 }
 
 namespace {
@@ -191,6 +201,10 @@ Found mismatch(const Node& scalar, const Form& form) {
             return boolean_mismatch(scalar, form);
         case ValueKind::length:
         case ValueKind::duration:
+        case ValueKind::temperature:
+        case ValueKind::difference:
+        case ValueKind::pressure:
+        case ValueKind::lapse:
             return quantity_mismatch(scalar, form);
         case ValueKind::text:
         case ValueKind::raster:

@@ -99,6 +99,10 @@ Json of_form(const Form& form) {
             return {{"type", "boolean"}};
         case ValueKind::length:
         case ValueKind::duration:
+        case ValueKind::temperature:
+        case ValueKind::difference:
+        case ValueKind::pressure:
+        case ValueKind::lapse:
             return of_quantity(form);
         case ValueKind::path:
             return of_pattern(form.beside_names

@@ -192,6 +192,36 @@ class Writer {
     }
     [[nodiscard]] Node node_of(const Monthly& months) const;
     [[nodiscard]] Node node_of(const NamedPeriod& period) const;
+    [[nodiscard]] Node node_of(const PlanFieldRaster& field) const;
+    [[nodiscard]] Node node_of(const PlanSurfaceRaster& field) const;
+    [[nodiscard]] Node node_of(const PlanTemperatures& field) const { return field_of(field.value, " K"); }
+    [[nodiscard]] Node node_of(const PlanPressures& field) const { return field_of(field.value, " hPa"); }
+    [[nodiscard]] Node node_of(const PlanShares& field) const { return node_of(field.value); }
+    [[nodiscard]] Node node_of(const PlanLapse& lapse) const { return months_of(lapse.k_km, " K/km"); }
+    [[nodiscard]] Node node_of(const PlanEmissivity& emissivity) const {
+        const auto* from = std::get_if<EmissivityFrom>(&emissivity.value);
+        return from != nullptr ? map_of({{"from", node_of(*from)}}) : node_of(emissivity.value);
+    }
+    [[nodiscard]] Node node_of(const PlanSurfaceTemperature& surface) const;
+    [[nodiscard]] Node field_of(const std::variant<Monthly, PlanFieldRaster>& field, const char* unit) const {
+        const auto* months = std::get_if<Monthly>(&field);
+        return months != nullptr ? months_of(*months, unit) : node_of(std::get<PlanFieldRaster>(field));
+    }
+    /// One value for all months, or a list of twelve.
+    [[nodiscard]] Node months_of(const Monthly& months, const char* unit) const {
+        std::vector<std::string> texts;
+        for (const double value : months) texts.push_back(shortest(value) + unit);
+        return std::ranges::count(months, months[0]) == 12 ? node_of(texts.front()) : node_of(texts);
+    }
+    [[nodiscard]] static Node map_of(std::vector<std::pair<const char*, Node>> entries) {
+        Node map;
+        map.shape = Node::Shape::map;
+        for (auto& [key, node] : entries) {
+            node.key = key;
+            map.children.push_back(std::move(node));
+        }
+        return map;
+    }
     template <class... T>
     [[nodiscard]] Node node_of(const std::variant<T...>& value) const {
         return std::visit([&](const auto& one) { return node_of(one); }, value);
@@ -243,6 +273,34 @@ Node Writer::node_of(const PlanInstant& instant) const {
 Node Writer::node_of(const Monthly& months) const {
     if (std::ranges::count(months, months[0]) == 12) return number_node(months[0]);
     return list_of(months);
+}
+
+Node Writer::node_of(const PlanFieldRaster& field) const {
+    std::vector<std::pair<const char*, Node>> entries{{"raster", node_of(field.raster)}};
+    if (!field.unit.empty()) entries.emplace_back("unit", text_node(field.unit));
+    if (field.scale != 1) entries.emplace_back("scale", number_node(field.scale));
+    if (field.offset != 0) entries.emplace_back("offset", number_node(field.offset));
+    return map_of(std::move(entries));
+}
+
+Node Writer::node_of(const PlanSurfaceRaster& field) const {
+    std::vector<std::pair<const char*, Node>> entries{{"raster", node_of(field.raster)}};
+    if (field.product) entries.emplace_back("product", node_of(*field.product));
+    if (!field.unit.empty()) entries.emplace_back("unit", text_node(field.unit));
+    if (field.scale) entries.emplace_back("scale", number_node(*field.scale));
+    if (field.offset) entries.emplace_back("offset", number_node(*field.offset));
+    if (!field.time.empty()) entries.emplace_back("time", text_node(field.time));
+    if (field.covers != RasterCovers::instant) entries.emplace_back("covers", node_of(field.covers));
+    return map_of(std::move(entries));
+}
+
+Node Writer::node_of(const PlanSurfaceTemperature& surface) const {
+    if (const auto* months = std::get_if<Monthly>(&surface.value)) return months_of(*months, " K");
+    if (const auto* table = std::get_if<SurfaceTable>(&surface.value)) return node_of(*table);
+    if (const auto* above = std::get_if<PlanDifference>(&surface.value))
+        return map_of({{"air_plus", text_node(shortest(above->k) + " K")}});
+    if (const auto* from = std::get_if<HeatSource>(&surface.value)) return map_of({{"from", node_of(*from)}});
+    return node_of(std::get<PlanSurfaceRaster>(surface.value));
 }
 
 Node Writer::node_of(const NamedPeriod& period) const {

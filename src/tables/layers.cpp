@@ -24,6 +24,8 @@ constexpr double ratio_quantum = 1.0 / 8192;  // 2^-13: 0.00012, far below any a
 constexpr double angle_quantum_deg = 1.0 / 64;  // far below what a height model's own error does to a slope
 constexpr double time_quantum_h = 1.0 / 64;     // a minute
 constexpr double flux_quantum_w_m2 = 1.0 / 16;
+constexpr double temperature_quantum_k = 1.0 / 64;  // a thermal band's own step is 0.003 K, its error 1 K
+constexpr double index_quantum = 1.0 / 16;          // the index is quoted in whole numbers
 
 const std::vector<Layer>& table() {
     static const std::vector<Layer> rows{
@@ -140,6 +142,72 @@ const std::vector<Layer>& table() {
          .standard_name = {},
          .standard_name_sum = {},
          .of_changes = true},
+        {.id = LayerId::longwave_down,
+         .name = "longwave_down",
+         .quantity = Quantity::radiation,
+         .sample = SampleType::float32,
+         .text = "heat radiation that reaches the surface from the sky and the ground in view",
+         .standard_name = "surface_downwelling_longwave_flux_in_air",
+         .standard_name_sum = "integral_wrt_time_of_surface_downwelling_longwave_flux_in_air",
+         .needs_air = true},
+        {.id = LayerId::longwave_up,
+         .name = "longwave_up",
+         .quantity = Quantity::radiation,
+         .sample = SampleType::float32,
+         .text = "heat radiation that leaves the surface: its own, and what it reflects",
+         .standard_name = "surface_upwelling_longwave_flux_in_air",
+         .standard_name_sum = {},
+         .needs_air = true,
+         .needs_surface_temperature = true,
+         .needs_emissivity = true},
+        {.id = LayerId::net_longwave,
+         .name = "net_longwave",
+         .quantity = Quantity::radiation,
+         .sample = SampleType::float32,
+         .text = "heat radiation the surface keeps: what comes down less what goes up, mostly negative",
+         .standard_name = "surface_net_downward_longwave_flux",
+         .standard_name_sum = "integral_wrt_time_of_surface_net_downward_longwave_flux",
+         .needs_air = true,
+         .needs_surface_temperature = true,
+         .needs_emissivity = true},
+        {.id = LayerId::net_radiation,
+         .name = "net_radiation",
+         .quantity = Quantity::radiation,
+         .sample = SampleType::float32,
+         .text = "all radiation the surface keeps: net shortwave and net longwave",
+         .standard_name = "surface_net_downward_radiative_flux",
+         .standard_name_sum = {},
+         .needs_sun = true,
+         .needs_albedo = true,
+         .needs_air = true,
+         .needs_surface_temperature = true,
+         .needs_emissivity = true},
+        {.id = LayerId::emissivity,
+         .name = "emissivity",
+         .quantity = Quantity::ratio,
+         .sample = SampleType::float32,
+         .text = "share of a black body's heat radiation that the surface sends out",
+         .standard_name = "surface_longwave_emissivity",
+         .standard_name_sum = {},
+         .needs_emissivity = true},
+        {.id = LayerId::surface_temperature,
+         .name = "surface_temperature",
+         .quantity = Quantity::temperature,
+         .sample = SampleType::float32,
+         .text = "temperature of the surface; from a balance it is steady, of dry built and bare ground alone",
+         .standard_name = "surface_temperature",
+         .standard_name_sum = {},
+         .needs_surface_temperature = true},
+        {.id = LayerId::sri,
+         .name = "sri",
+         .quantity = Quantity::index,
+         .sample = SampleType::float32,
+         .text = "solar reflectance index: how cool a dry built or bare surface stays in the sun, 0 black and 100 white; "
+                 "none on slopes of 9.5 degrees and more",
+         .standard_name = {},
+         .standard_name_sum = {},
+         .needs_albedo = true,
+         .needs_emissivity = true},
     };
     return rows;
 }
@@ -209,6 +277,7 @@ std::string_view unit_of(const Layer& layer, OutputUnit unit) noexcept {
         case Quantity::radiation: return name_of(unit);
         case Quantity::hours: return "h";
         case Quantity::angle: return "degree";
+        case Quantity::temperature: return "degC";
         default: return "1";
     }
 }
@@ -223,6 +292,8 @@ double quantum_of(const Layer& layer, OutputUnit unit, double period_s) noexcept
     if (layer.quantity == Quantity::ratio) return ratio_quantum;
     if (layer.quantity == Quantity::angle) return angle_quantum_deg;
     if (layer.quantity == Quantity::hours) return time_quantum_h;
+    if (layer.quantity == Quantity::temperature) return temperature_quantum_k;
+    if (layer.quantity == Quantity::index) return index_quantum;
     if (unit == OutputUnit::w_m2) return flux_quantum_w_m2;
     assert(period_s > 0);
     return power_of_two_below(flux_quantum_w_m2 * period_s / joules_of(unit));

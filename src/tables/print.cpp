@@ -6,8 +6,10 @@
 #include <nlohmann/json.hpp>
 
 #include "csv.hpp"
+#include "materials.hpp"
 #include "sunbudget/base/error.hpp"
 #include "sunbudget/base/text.hpp"
+#include "sunbudget/physics/surface_balance.hpp"
 #include "sunbudget/tables/class_table.hpp"
 #include "sunbudget/tables/layers.hpp"
 #include "sunbudget/tables/methods.hpp"
@@ -93,6 +95,7 @@ Listing method_listing() {
 std::string quantum_text(const Layer& layer) {
     if (layer.quantity == Quantity::ratio) return "2^-13";
     if (layer.quantity == Quantity::flags) return {};
+    if (layer.quantity != Quantity::radiation) return shortest(quantum_of(layer, OutputUnit::w_m2, 0));
     return "1/16 W/m2; of sums the largest power of two not above 1/16 W/m2 times the period";
 }
 
@@ -110,7 +113,7 @@ Listing layer_listing() {
                  {}};
     for (const auto& row : layers()) {
         const auto unit =
-            row.quantity == Quantity::radiation ? joined(output_unit_names(), " or ") : "1";
+            row.quantity == Quantity::radiation ? joined(output_unit_names(), " or ") : std::string(unit_of(row, OutputUnit::w_m2));
         list.rows.push_back({row.name, unit, std::string(name_of(row.sample)), quantum_text(row),
                              row.standard_name, row.standard_name_sum, row.text});
     }
@@ -200,6 +203,32 @@ Listing quality_listing() {
     return list;
 }
 
+/// Of materials whose albedo somebody wrote down: a given roof ages and may be another.
+Listing sri_listing() {
+    Listing list{"sri",
+                 "solar reflectance index of common materials after ASTM E1980: 0 the black, 100 the white reference, in wind below 2, 2 to 6 "
+                 "and 6 to 10 m/s",
+                 {},
+                 {{"material"},
+                  {"albedo", Cell::number},
+                  {"emissivity", Cell::number},
+                  {"sri_low_wind", Cell::number},
+                  {"sri_medium_wind", Cell::number},
+                  {"sri_high_wind", Cell::number},
+                  {"source", Cell::note}},
+                 {}};
+    for (const auto& row : materials) {
+        std::vector<std::string> cells{row.name, shortest(row.albedo), shortest(row.emissivity)};
+        for (const auto wind : {Wind::low, Wind::medium, Wind::high}) {
+            const double index = solar_reflectance_index(row.albedo, row.emissivity, wind);
+            cells.push_back(shortest(std::round(index * 10) / 10 + 0.0));
+        }
+        cells.emplace_back(row.source);
+        list.rows.push_back(std::move(cells));
+    }
+    return list;
+}
+
 struct Printable {
     const char* name;
     Listing (*make)();
@@ -208,6 +237,7 @@ constexpr std::array own_tables{
     Printable{"methods", method_listing}, Printable{"layers", layer_listing},
     Printable{"sensors", sensor_listing}, Printable{"sensor-quality", test_listing},
     Printable{"weights", weight_listing}, Printable{"quality", quality_listing},
+    Printable{"sri", sri_listing},
 };
 
 bool is_shipped(const std::string& name) {

@@ -33,6 +33,8 @@ const std::vector<QualityRow>& table() {
         flag(no_elevation, "no_elevation", "no elevation here: layers on terrain are nodata"),
         flag(outside_projection, "outside_projection", "the pixel has no place on the ground"),
         flag(no_sky, "no_sky", "the raster of the sky has no usable value here: light is nodata"),
+        flag(outside_scope, "outside_scope",
+             "not a dry built or bare surface, or too steep: no balanced temperature, no sri"),
     };
     return rows;
 }

@@ -79,3 +79,16 @@ TEST_CASE("with_mid_month_days: takes Klein's days, whose sun stands as he gives
     }
     CHECK(all == 365);
 }
+
+TEST_CASE("periods_of: hours of the clock, cut at the daily window", "[model][property]") {
+    const auto utc = Zone::parse("UTC");
+    const auto day = periods_of({2025, 6, 20}, {2025, 6, 21}, Totals::hour, {}, utc);
+    REQUIRE(day.size() == 48);
+    CHECK(day[0].name == "2025-06-20T00:00");
+    CHECK(day[47].name == "2025-06-21T23:00");
+    for (const auto& hour : day) CHECK(hour.duration_s == 3600);
+    const auto part = periods_of({2025, 6, 20}, {2025, 6, 20}, Totals::hour, {6.5, 8}, utc);
+    REQUIRE(part.size() == 2);
+    CHECK(part[0].name == "2025-06-20T06:30");
+    CHECK(part[1].duration_s == 1800);
+}

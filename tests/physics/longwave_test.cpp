@@ -178,6 +178,16 @@ TEST_CASE("saturation_vapour_pressure: reproduces FAO-56 Table 2.3", "[physics][
               Approx(table.number(i, "es_kpa")).margin(6e-4).epsilon(0));
 }
 
+TEST_CASE("saturation_vapour_pressure: a row agrees with single values", "[physics][differential]") {
+    // The exponent reaches -40 and has 24 bits; exp makes a relative error of that absolute one.
+    Row t{nodata}, out(132);
+    for (float k = 200; k <= 330; ++k) t.push_back(k);
+    saturation_vapour_pressure(t, out);
+    CHECK(std::isnan(out[0]));
+    for (std::size_t i = 1; i < t.size(); ++i)
+        CHECK(out[i] == Approx(saturation_vapour_pressure_hpa(t[i])).epsilon(1e-5));
+}
+
 TEST_CASE("dew_point: the inverse of saturation, and near FAO-56 eq. 3-11", "[physics][property]") {
     for (double k = 235; k < 320; k += 0.9) {
         const double e = saturation_vapour_pressure_hpa(k);

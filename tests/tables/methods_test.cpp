@@ -4,6 +4,7 @@
 #include <limits>
 
 #include "sunbudget/base/error.hpp"
+#include "sunbudget/physics/longwave.hpp"
 
 using namespace sunbudget;
 using Catch::Matchers::Contains;
@@ -51,7 +52,32 @@ TEST_CASE("method: an unknown name comes with a suggestion", "[tables][edge]") {
     CHECK(method_names("no-such-family").empty());
     CHECK(method_families() ==
           std::vector<std::string>{"sun_position", "air_mass", "clear_sky", "diffuse_sky", "real_sky", "horizon",
-                                                        "albedo"});
+                                   "albedo", "longwave", "longwave_cloud", "surface_temperature",
+                                   "emissivity", "sri"});
+}
+
+TEST_CASE("methods of heat: rows stand in the order of the physics' enumerations", "[tables][property]") {
+    const auto row = [](const char* family, auto which) {
+        return method_names(family).at(static_cast<std::size_t>(which));
+    };
+    CHECK(method_names("longwave").size() == 11);
+    CHECK(row("longwave", LongwaveFormula::dilley_obrien1998) == "dilley-obrien1998");
+    CHECK(row("longwave", LongwaveFormula::prata1996) == "prata1996");
+    CHECK(row("longwave", LongwaveFormula::brutsaert1975) == "brutsaert1975");
+    CHECK(row("longwave", LongwaveFormula::brunt1932) == "brunt1932");
+    CHECK(row("longwave", LongwaveFormula::swinbank1963) == "swinbank1963");
+    CHECK(row("longwave", LongwaveFormula::idso_jackson1969) == "idso-jackson1969");
+    CHECK(row("longwave", LongwaveFormula::idso1981) == "idso1981");
+    CHECK(row("longwave", LongwaveFormula::angstrom1918) == "angstrom1918");
+    CHECK(row("longwave", LongwaveFormula::satterlund1979) == "satterlund1979");
+    CHECK(row("longwave", LongwaveFormula::konzelmann1994) == "konzelmann1994");
+    CHECK(row("longwave", LongwaveFormula::maykut_church1973) == "maykut-church1973");
+    CHECK(method_names("longwave_cloud").size() == 5);
+    CHECK(row("longwave_cloud", LongwaveCloud::unsworth_monteith1975) == "unsworth-monteith1975");
+    CHECK(row("longwave_cloud", LongwaveCloud::crawford_duchon1999) == "crawford-duchon1999");
+    CHECK(row("longwave_cloud", LongwaveCloud::sugita_brutsaert1993) == "sugita-brutsaert1993");
+    CHECK(row("longwave_cloud", LongwaveCloud::maykut_church1973) == "maykut-church1973");
+    CHECK(row("longwave_cloud", LongwaveCloud::jacobs1978) == "jacobs1978");
 }
 
 TEST_CASE("given albedo: 0 and 1 are allowed, beyond is refused", "[tables][edge]") {

@@ -33,17 +33,20 @@ class SharedLight {
     /// `scratch_folder` takes the coarse levels of the elevation; they go with the object.
     SharedLight(const Run& run, int threads, const std::filesystem::path& scratch_folder);
     ~SharedLight();
-    /// Nothing where the run has no time.
+    /// Nothing where no layer needs the sun.
     [[nodiscard]] LightField* field() const { return field_.get(); }
     /// Nothing where the run has no terrain.
     [[nodiscard]] SharedTerrain* terrain() const { return terrain_.get(); }
     /// The runs after each change of height.
     [[nodiscard]] const std::vector<std::unique_ptr<RaisedRun>>& raised() const { return raised_; }
+    /// Nothing where the run has no longwave, or has its air by the pixel.
+    [[nodiscard]] LongwaveField* longwave() const { return longwave_.get(); }
 
   private:
     std::unique_ptr<LightField> field_;
     std::unique_ptr<SharedTerrain> terrain_;
     std::vector<std::unique_ptr<RaisedRun>> raised_;
+    std::unique_ptr<LongwaveField> longwave_;
 };
 
 /// One thread's way from inputs to finished planes.

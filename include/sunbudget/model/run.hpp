@@ -10,6 +10,7 @@
 #include <vector>
 
 #include "sunbudget/model/change.hpp"
+#include "sunbudget/model/heat.hpp"
 #include "sunbudget/model/light.hpp"
 #include "sunbudget/model/measured_sky.hpp"
 #include "sunbudget/model/terrain.hpp"
@@ -31,6 +32,9 @@ struct CoverSurface {
     Source codes;
     CodeValues albedo;          ///< of every code of the table, and of the default class's codes
     CodeValues quality;         ///< the `quality` layer's source number for each code
+    CodeValues emissivity;
+    CodeValues built_emissivity;  ///< of built kinds alone
+    CodeValues dry;               ///< 1 for dry built and bare kinds, 0 for others
     bool averaged = false;      ///< the grid is coarser: class albedos are averaged
 };
 
@@ -156,6 +160,7 @@ struct Run {
     double light_uncertainty = 0.07;  ///< relative standard uncertainty, the same at all times
     std::shared_ptr<const RunWeather> weather;  ///< nothing without a table
     RunLight light;
+    Heat heat;
     std::optional<TimePlan> times;
     OutputUnit unit = OutputUnit::w_m2;
     std::vector<OutputLayer> layers;  ///< those of the run as it is come before those of changes

@@ -26,7 +26,7 @@ struct Period {
     double duration_s = 0;      ///< the hours summed, night included
 };
 
-enum class Totals { whole, day, month, season, year };
+enum class Totals { whole, hour, day, month, season, year };
 
 struct NamedSpan {
     std::string name;
@@ -52,7 +52,8 @@ struct TimePlan {
     [[nodiscard]] UtcSeconds latest() const;
 };
 
-/// Cuts [from, to] (inclusive) into periods. Seasons are the meteorological ones, December to
+/// Cuts [from, to] (inclusive) into periods. Hours are the clock's, the last one shorter where the daily window
+/// ends within it. Seasons are the meteorological ones, December to
 /// February and so on; a part of a month, season or year at either end of the span makes a shorter
 /// period whose name gives its dates.
 [[nodiscard]] std::vector<Period> periods_of(CivilDate from, CivilDate to, Totals totals,

@@ -1,5 +1,7 @@
 #pragma once
 
+#include <span>
+
 namespace sunbudget {
 
 /// Pressure of water vapour in saturated air, over water at every temperature.
@@ -8,6 +10,12 @@ namespace sunbudget {
 /// errors  none; NaN in gives NaN out
 /// source  Tetens' form as FAO-56 (1998) eq. 11 has it
 [[nodiscard]] double saturation_vapour_pressure_hpa(double temperature_k) noexcept;
+/// The same for a row of pixels.
+///
+/// shape   two rows of the same length, which may be one
+/// nodata  NaN through
+/// errors  float: within 1e-5 of the above from 200 to 330 K
+void saturation_vapour_pressure(std::span<const float> temperature_k, std::span<float> pressure_hpa) noexcept;
 
 /// The temperature at which air of that vapour pressure is saturated: the exact inverse of the above.
 ///

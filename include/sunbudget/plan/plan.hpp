@@ -141,11 +141,44 @@ struct PlanReflectance {
     }
 };
 
+/// A raster of a quantity: stored value * scale + offset, in the unit named.
+struct PlanFieldRaster {
+    PlanRaster raster;
+    std::string unit;  ///< as the plan names it; empty for pure numbers
+    double scale = 1;
+    double offset = 0;
+    friend bool operator==(const PlanFieldRaster&, const PlanFieldRaster&) = default;
+};
+/// Numbers in K, hPa or pure ones, or a raster. Apart by type, since each is written with its own unit.
+struct PlanTemperatures {
+    std::variant<Monthly, PlanFieldRaster> value;  ///< K
+    friend bool operator==(const PlanTemperatures&, const PlanTemperatures&) = default;
+};
+struct PlanPressures {
+    std::variant<Monthly, PlanFieldRaster> value;  ///< hPa
+    friend bool operator==(const PlanPressures&, const PlanPressures&) = default;
+};
+struct PlanShares {
+    std::variant<Monthly, PlanFieldRaster> value;
+    friend bool operator==(const PlanShares&, const PlanShares&) = default;
+};
+struct PlanLapse {
+    Monthly k_km{};
+    friend bool operator==(const PlanLapse&, const PlanLapse&) = default;
+};
+
+enum class EmissivityFrom { cover, ndvi };
+struct PlanEmissivity {
+    std::variant<double, PlanFieldRaster, EmissivityFrom> value;
+    friend bool operator==(const PlanEmissivity&, const PlanEmissivity&) = default;
+};
+
 /// At most one of them, but for the cover that fills what the image does not show.
 struct PlanSurface {
     std::optional<PlanCover> cover;
     std::optional<PlanReflectance> reflectance;
     std::optional<PlanAlbedo> albedo;
+    Maybe<PlanEmissivity> emissivity;
     friend bool operator==(const PlanSurface&, const PlanSurface&) = default;
 };
 
@@ -211,6 +244,8 @@ struct PlanZone {
     }
 };
 
+enum class WindCase { low, medium, high };
+
 struct PlanWeather {
     Place place;
     Maybe<PlanPath> table;
@@ -232,14 +267,56 @@ struct PlanWeather {
     Maybe<Gaps> gaps;
     Maybe<std::array<double, 2>> station;  ///< latitude, longitude in degrees
     Maybe<PlanLength> station_elevation;
+    // Without a table.
+    Maybe<PlanTemperatures> air_temperature;
+    Maybe<PlanShares> relative_humidity;
+    Maybe<PlanTemperatures> dew_point;
+    Maybe<PlanPressures> vapour_pressure;
+    Maybe<PlanLapse> lapse;
+    Maybe<WindCase> wind;
     friend bool operator==(const PlanWeather& a, const PlanWeather& b) {
         return a.table == b.table && a.columns == b.columns && a.units == b.units && a.flags == b.flags &&
                a.good_flags == b.good_flags && a.missing == b.missing && a.separator == b.separator &&
                a.decimal == b.decimal && a.header == b.header && a.skip == b.skip && a.comment == b.comment &&
                a.time_form == b.time_form && a.stamp == b.stamp && a.interval_s == b.interval_s && a.zone == b.zone &&
                a.years == b.years && a.gaps == b.gaps && a.station == b.station &&
-               a.station_elevation == b.station_elevation;
+               a.station_elevation == b.station_elevation && a.air_temperature == b.air_temperature &&
+               a.relative_humidity == b.relative_humidity && a.dew_point == b.dew_point &&
+               a.vapour_pressure == b.vapour_pressure && a.lapse == b.lapse && a.wind == b.wind;
     }
+};
+
+struct PlanLongwave {
+    Maybe<std::string> method;
+    Maybe<Monthly> cloud;
+    Maybe<std::string> cloud_method;
+    friend bool operator==(const PlanLongwave&, const PlanLongwave&) = default;
+};
+
+enum class SurfaceTable { table };
+enum class SurfaceProduct { landsat_c2 };
+enum class RasterCovers { instant, period_mean };
+enum class HeatSource { balance };
+
+/// A difference of temperatures.
+struct PlanDifference {
+    double k = 0;
+    friend bool operator==(const PlanDifference&, const PlanDifference&) = default;
+};
+/// A raster of temperatures and when it was taken.
+struct PlanSurfaceRaster {
+    PlanRaster raster;
+    std::optional<SurfaceProduct> product;  ///< says unit, scale, offset and nodata
+    std::string unit;                       ///< K or degC; empty: as the product or the file says
+    std::optional<double> scale;
+    std::optional<double> offset;
+    std::string time;                       ///< an instant with its offset; empty: as the product says
+    RasterCovers covers = RasterCovers::instant;
+    friend bool operator==(const PlanSurfaceRaster&, const PlanSurfaceRaster&) = default;
+};
+struct PlanSurfaceTemperature {
+    std::variant<Monthly, SurfaceTable, PlanSurfaceRaster, PlanDifference, HeatSource> value;  ///< numbers in K
+    friend bool operator==(const PlanSurfaceTemperature&, const PlanSurfaceTemperature&) = default;
 };
 
 /// Has an offset of its own, or the plan has a zone: never both, never neither.
@@ -354,6 +431,8 @@ struct Plan {
     PlanTerrain terrain;
     PlanSky sky;
     std::optional<PlanWeather> weather;
+    PlanLongwave longwave;
+    Maybe<PlanSurfaceTemperature> surface_temperature;
     PlanTime time;
     PlanOutputs outputs;
     std::optional<PlanZones> zones;
@@ -364,7 +443,8 @@ struct Plan {
     /// Same values; where they stand does not matter.
     friend bool operator==(const Plan& a, const Plan& b) {
         return a.title == b.title && a.grid == b.grid && a.surface == b.surface &&
-               a.terrain == b.terrain && a.sky == b.sky && a.weather == b.weather && a.time == b.time &&
+               a.terrain == b.terrain && a.sky == b.sky && a.weather == b.weather && a.longwave == b.longwave &&
+               a.surface_temperature == b.surface_temperature && a.time == b.time &&
                a.outputs == b.outputs && a.zones == b.zones && a.changes == b.changes && a.report == b.report && a.engine == b.engine;
     }
 };

@@ -32,8 +32,15 @@ enum class LayerId {
     aspect,
     quality,
     treated,
+    longwave_down,
+    longwave_up,
+    net_longwave,
+    net_radiation,
+    emissivity,
+    surface_temperature,
+    sri,
 };
-enum class Quantity { ratio, radiation, hours, angle, flags };
+enum class Quantity { ratio, radiation, hours, angle, flags, temperature, index };
 enum class SampleType { float32, uint16 };
 [[nodiscard]] std::string_view name_of(SampleType type) noexcept;
 
@@ -46,10 +53,16 @@ struct Layer {
     std::string text;
     std::string standard_name;      ///< of the CF conventions; empty where none fits
     std::string standard_name_sum;  ///< the same for sums over a period
-    bool needs_sun = false;         ///< has one band a period; otherwise one band
+    bool needs_sun = false;
     bool needs_albedo = false;
     bool needs_terrain = false;
     bool of_changes = false;  ///< comes with a change; no plan asks for it by name
+    bool needs_air = false;         ///< temperature and humidity
+    bool needs_surface_temperature = false;
+    bool needs_emissivity = false;
+
+    /// One band a period; otherwise one band.
+    [[nodiscard]] bool needs_time() const { return needs_sun || needs_air || needs_surface_temperature; }
 };
 
 /// In the order of LayerId.
@@ -59,13 +72,13 @@ struct Layer {
 /// What a plan may ask for.
 [[nodiscard]] std::vector<std::string> layer_names();
 
-/// "1" for ratios and flags, "h", "degree", else the chosen unit.
+/// "1" for ratios, flags and indices, "h", "degree", "degC", else the chosen unit.
 [[nodiscard]] std::string_view unit_of(const Layer& layer, OutputUnit unit) noexcept;
 /// Empty where CF has no name.
 [[nodiscard]] const std::string& standard_name_of(const Layer& layer, OutputUnit unit) noexcept;
 
 /// The step stored values are rounded to, a power of two: albedo 2^-13, fluxes 1/16 W m-2, energies
-/// the largest power of two not above 1/16 W m-2 times the period; 1 for flags.
+/// the largest power of two not above 1/16 W m-2 times the period; 1 for flags; temperatures 1/64 K.
 ///
 /// in      period_s  > 0 for energies (asserted); otherwise not looked at
 [[nodiscard]] double quantum_of(const Layer& layer, OutputUnit unit, double period_s) noexcept;

@@ -29,6 +29,7 @@ inline constexpr std::uint16_t out_of_range = 1u << 10;
 inline constexpr std::uint16_t no_elevation = 1u << 11;
 inline constexpr std::uint16_t outside_projection = 1u << 12;
 inline constexpr std::uint16_t no_sky = 1u << 13;
+inline constexpr std::uint16_t outside_scope = 1u << 14;
 }  // namespace quality
 
 /// One meaning: it holds where (pixel & mask) == value.
