@@ -32,11 +32,14 @@ ChangeTable::ChangeTable(const Run& run, const ZoneQuestion& question,
                          std::string id)
     : run_(run), question_(question), zones_(zones), answers_(answers) {
     for (const auto& layer : run.layers) {
-        if (!layer.changed || !layer.changed->saved || layer.layer->quantity != Quantity::radiation)
+        const auto quantity = layer.layer->quantity;
+        if (!layer.changed || !layer.changed->saved ||
+            (quantity != Quantity::radiation && quantity != Quantity::temperature))
             continue;
         const auto& name = run.layers[layer.changed->base].file.name;
-        if (layer_named(name) != none && std::ranges::find(names_, name) == names_.end())
-            names_.push_back(name);
+        auto& names = quantity == Quantity::radiation ? names_ : mean_names_;
+        if (layer_named(name) != none && std::ranges::find(names, name) == names.end())
+            names.push_back(name);
     }
     for (const auto& change : run.changes)
         if (!change.case_name.empty() &&
@@ -45,7 +48,12 @@ ChangeTable::ChangeTable(const Run& run, const ZoneQuestion& question,
     for (std::size_t c = 0; c < run.changes.size(); ++c) {
         const auto& change = run.changes[c];
         if (!change.case_name.empty()) continue;
-        ChangeRows rows{c, layer_named("treated__" + change.name), {}};
+        ChangeRows rows{c, layer_named("treated__" + change.name), {}, {}};
+        for (const auto& name : mean_names_) {
+            const auto after = name + "__" + change.name;
+            rows.means.push_back(
+                {layer_named(name), layer_named(after), layer_named(after + "__saved"), {}});
+        }
         for (const auto& name : names_) {
             const auto after = name + "__" + change.name;
             rows.layers.push_back(
@@ -67,13 +75,19 @@ ChangeTable::ChangeTable(const Run& run, const ZoneQuestion& question,
     for (const auto& name : names_) {
         for (const auto* what : {"before_sum", "after_sum", "saved_sum", "saved_mean"})
             columns_.push_back({name + "_" + what});
-        for (const auto& one : case_names_) columns_.push_back({name + "_saved_" + one + "_sum"});
+        const auto layer = static_cast<std::size_t>(&name - names_.data());
+        for (std::size_t one = 0; one < case_names_.size(); ++one)
+            if (has_case(layer, one))
+                columns_.push_back({name + "_saved_" + case_names_[one] + "_sum"});
         if (both_halves_)
             for (const auto* what : {"saved_summer_sum", "saved_winter_sum"})
                 columns_.push_back({name + "_" + what});
         columns_.push_back({name + "_saved_per_cost"});
         if (is_energy()) columns_.push_back({name + "_saved_per_cost_in_life"});
     }
+    for (const auto& name : mean_names_)
+        for (const auto* what : {"before_mean", "after_mean", "saved_mean"})
+            columns_.push_back({name + "_" + what});
 }
 
 std::size_t ChangeTable::layer_named(const std::string& name) const {
@@ -111,6 +125,26 @@ double ChangeTable::mean(std::size_t zone, std::size_t layer) const {
                       : nan_value;
 }
 
+bool ChangeTable::has_case(std::size_t layer, std::size_t one) const {
+    return std::ranges::any_of(changes_, [&](const ChangeRows& change) {
+        return change.layers[layer].cases[one] != none;
+    });
+}
+
+/// Over the zone and the time of all periods.
+double ChangeTable::mean_in_time(std::size_t zone, std::size_t layer) const {
+    if (layer == none) return nan_value;
+    double sum = 0, time_s = 0;
+    const auto& bands = answers_[zone].figures[layer];
+    for (std::size_t band = 0; band < bands.size(); ++band) {
+        if (!(bands[band].weight > 0)) return nan_value;
+        const double length_s = halves_.empty() ? 1 : run_.times->periods[band].duration_s;
+        sum += bands[band].mean * length_s;
+        time_s += length_s;
+    }
+    return sum / time_s;
+}
+
 double ChangeTable::treated_m2(std::size_t zone, const ChangeRows& change) const {
     if (change.treated == none) return nan_value;
     const auto& found = answers_[zone].figures[change.treated].front();
@@ -123,7 +157,8 @@ void ChangeTable::put_layer(std::size_t zone, const ChangeRows& change, std::siz
     const double saved = total(zone, of.saved, Half::all);
     numbers.insert(numbers.end(), {total(zone, of.before, Half::all),
                                    total(zone, of.after, Half::all), saved, mean(zone, of.saved)});
-    for (const auto one : of.cases) numbers.push_back(total(zone, one, Half::all));
+    for (std::size_t one = 0; one < of.cases.size(); ++one)
+        if (has_case(layer, one)) numbers.push_back(total(zone, of.cases[one], Half::all));
     if (both_halves_)
         for (const auto half : {Half::summer, Half::winter})
             numbers.push_back(total(zone, of.saved, half));
@@ -143,6 +178,9 @@ FeatureRow ChangeTable::row(std::size_t row) const {
                      {zones_[zone].id, made.name},
                      {treated, made.cost_per_m2.value_or(nan_value) * treated}};
     for (std::size_t n = 0; n < names_.size(); ++n) put_layer(zone, change, n, cells.numbers);
+    for (const auto& of : change.means)
+        for (const auto layer : {of.before, of.after, of.saved})
+            cells.numbers.push_back(mean_in_time(zone, layer));
     return cells;
 }
 

@@ -7,6 +7,7 @@
 #include <filesystem>
 #include <mutex>
 #include <optional>
+#include <set>
 
 #include "sunbudget/base/error.hpp"
 #include "sunbudget/base/parallel.hpp"
@@ -166,13 +167,18 @@ std::uint64_t bytes_per_pixel(const Run& run) {
     return flat + terrain + a_band * std::min(bands, bands_held);
 }
 
-/// What changes add to it: planes of albedo and of reflected light, or a whole flow of its own.
+/// What changes add to it: planes of albedo and of reflected light, of heat where they have layers of it, or a whole
+/// flow of their own.
 std::uint64_t change_bytes_per_pixel(const Run& run) {
-    constexpr std::uint64_t a_plane = sizeof(float), bands_held = 12;
+    constexpr std::uint64_t a_plane = sizeof(float), bands_held = 12, heat_planes = 6;
     const auto held = std::min<std::uint64_t>(run.times ? run.times->bands() : 0, bands_held);
     std::uint64_t bytes = 0, kept = 0;
     for (const auto& layer : run.layers) kept += layer.changed && layer.changed->saved && run.changes[layer.changed->change].height ? held : 0;
     for (const auto& change : run.changes) bytes += change.height ? bytes_per_pixel(run) : (2 + (run.terrain ? held : 0)) * a_plane;
+    std::set<std::size_t> heating;
+    for (const auto& layer : run.layers)
+        if (layer.changed && layer.layer->is_heat() && !run.changes[layer.changed->change].height) heating.insert(layer.changed->change);
+    bytes += heating.size() * heat_planes * a_plane;
     return bytes + kept * a_plane;
 }
 

@@ -56,14 +56,18 @@ Beside::Beside(const Run& run)
         if (!run.changes[i].height) albedos.emplace_back().change = i;
     }
     for (std::size_t n = 0; n < run.layers.size(); ++n) {
-        for (const auto& change : albedos) outputs_[n].push_back(outputs_of(run, change.change, n));
+        for (auto& change : albedos) {
+            const auto& [after, saved] =
+                outputs_[n].emplace_back(outputs_of(run, change.change, n));
+            change.heats = change.heats || ((after || saved) && run.layers[n].layer->is_heat());
+        }
         const auto& changed = run.layers[n].changed;
         if (changed && changed->saved && run.changes[changed->change].height)
             keeps_[changed->base] = true;
     }
 }
 
-void Beside::begin(const Window& window, const Plane<float>& albedo) {
+void Beside::begin(const Window& window, const Plane<float>& albedo, const HeatFlow* heat) {
     window_ = window;
     for (auto& change : albedos) {
         auto& reader = readers_[change.change];
@@ -73,14 +77,20 @@ void Beside::begin(const Window& window, const Plane<float>& albedo) {
         if (!change.touched) continue;
         copy_plane(albedo, change.albedo);
         reader.albedo(window, change.albedo);
+        if (!change.heats || heat == nullptr) continue;
+        copy_plane(heat->emissivity(), change.emissivity);
+        if (!change.emissivity.empty()) reader.emissivity(window, change.emissivity);
+        copy_plane(heat->dry(), change.dry);
+        reader.dry(window, change.dry);
     }
 }
 
-void Beside::some_bands(std::size_t first, std::size_t count, bool ground_lights_sky) {
+void Beside::some_bands(std::size_t first, std::size_t count, std::size_t lit,
+                        bool ground_lights_sky) {
     first_band_ = first;
     const auto prepare = [&](std::vector<Plane<float>>& planes) {
-        planes.resize(std::max(planes.size(), count));
-        for (std::size_t i = 0; i < count; ++i) {
+        planes.resize(std::max(planes.size(), lit));
+        for (std::size_t i = 0; i < lit; ++i) {
             resize(planes[i], window_.width, window_.height);
             planes[i].fill(std::numeric_limits<float>::quiet_NaN());
         }
@@ -112,6 +122,13 @@ void Beside::see(const Window& block, const Window& window, const Plane<float>& 
                 (here ? own_mean : mean).row(r),
                 change.albedo_seen.row(static_cast<int>(block.row - window.row) + r).begin() +
                     (block.column - window.column));
+    }
+}
+
+void Beside::see(float albedo) {
+    for (auto& change : albedos) {
+        resize(change.albedo_seen, window_.width, window_.height);
+        change.albedo_seen.fill(albedo);
     }
 }
 

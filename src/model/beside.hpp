@@ -6,6 +6,7 @@
 #include <string>
 #include <vector>
 
+#include "heat_flow.hpp"
 #include "sunbudget/model/change.hpp"
 #include "sunbudget/model/flow.hpp"
 
@@ -16,12 +17,17 @@ struct BandPlanes {
     Plane<float> direct, diffuse, reflected, hours;
 };
 
-/// A change of albedo in one window: what of light and balance differs from the base.
+/// A change of the ground itself, in albedo or emissivity, in one window: what of light and balance differs
+/// from the base.
 struct ChangedAlbedo {
     std::size_t change = 0;  ///< counts the run's changes
     bool touched =
         false;  ///< false: nothing in sight of the window changes, and the base's planes serve
+    bool heats = false;  ///< one of its layers is about heat
     Plane<float> albedo, albedo_seen;
+    Plane<float> emissivity, dry;  ///< where it heats; empty where the run has none
+    Plane<float> net_light;        ///< of the band at work, likewise
+    HeatPlanes heat;
     Plane<float> open_diffuse;  ///< of the band at work, where the ground lights the sky
     /// By band held; `diffuse` where the ground lights the sky, `reflected` past terrain.
     std::vector<Plane<float>> diffuse, reflected;
@@ -38,12 +44,15 @@ class Beside {
   public:
     explicit Beside(const Run& run);
 
-    void begin(const Window& window, const Plane<float>& albedo);
-    /// Before the light of some bands.
-    void some_bands(std::size_t first, std::size_t count, bool ground_lights_sky);
+    /// `heat` is nothing where the run has none.
+    void begin(const Window& window, const Plane<float>& albedo, const HeatFlow* heat);
+    /// Before some bands, of which none or all are lit.
+    void some_bands(std::size_t first, std::size_t count, std::size_t lit, bool ground_lights_sky);
     /// After the mean albedo of a block was taken from the albedo around it.
     void see(const Window& block, const Window& window, const Plane<float>& around,
              const Plane<float>& mean);
+    /// The same where nobody knows the albedo.
+    void see(float albedo);
 
     /// A row of a layer after a change, before rounding.
     using Row = std::function<void(const ChangedAlbedo&, int row, std::span<float> out)>;

@@ -52,6 +52,9 @@ struct ChangeReader::State {
             }
         }
     }
+
+    void mix(const Window& window, const std::optional<double>& treated,
+             std::optional<CodeValues> ChangedClasses::*of_classes, Plane<float>& plane);
 };
 
 ChangeReader::ChangeReader(const Change& change) : state_(std::make_unique<State>(change)) {}
@@ -70,24 +73,36 @@ void ChangeReader::treated(const Window& window, Plane<float>& share) {
         std::ranges::copy(state_->share.row(r), share.row(r).begin());
 }
 
-void ChangeReader::albedo(const Window& window, Plane<float>& albedo) {
-    auto& s = *state_;
-    if (!s.change.albedo || !touches(window)) return;
-    // Of a pixel of several classes each class is changed by itself.
-    const bool by_class = s.change.classes && s.change.classes->after;
+/// Of a pixel of several classes each class is changed by itself.
+void ChangeReader::State::mix(const Window& window, const std::optional<double>& treated,
+                              std::optional<CodeValues> ChangedClasses::*of_classes,
+                              Plane<float>& plane) {
+    if (!treated || (change.where && !change.where->touches(window))) return;
+    const bool by_class = change.classes && (*change.classes.*of_classes);
     if (by_class) {
-        s.read_place(window);
-        s.codes->read_values(window, *s.change.classes->after, s.values);
+        read_place(window);
+        codes->read_values(window, *(*change.classes.*of_classes), values);
     } else {
-        s.read_treated(window);
+        read_treated(window);
     }
     for (int r = 0; r < window.height; ++r) {
-        const auto row = albedo.row(r), share = s.share.row(r);
+        const auto row = plane.row(r), part = share.row(r);
         for (std::size_t i = 0; i < row.size(); ++i)
-            row[i] =
-                mixed(row[i], by_class ? static_cast<double>(s.values.row(r)[i]) : *s.change.albedo,
-                      static_cast<double>(share[i]));
+            row[i] = mixed(row[i], by_class ? static_cast<double>(values.row(r)[i]) : *treated,
+                           static_cast<double>(part[i]));
     }
+}
+
+void ChangeReader::albedo(const Window& window, Plane<float>& albedo) {
+    state_->mix(window, state_->change.albedo, &ChangedClasses::albedo_after, albedo);
+}
+
+void ChangeReader::emissivity(const Window& window, Plane<float>& emissivity) {
+    state_->mix(window, state_->change.emissivity, &ChangedClasses::emissivity_after, emissivity);
+}
+
+void ChangeReader::dry(const Window& window, Plane<float>& dry) {
+    state_->mix(window, state_->change.dry, &ChangedClasses::dry_after, dry);
 }
 
 void ChangeReader::heights(const Window& window, Plane<float>& heights_m) {

@@ -62,18 +62,24 @@ bool wants(const Run& run, std::initializer_list<LayerId> ids) {
 
 /// What a run asks of its light, its terrain and its air.
 struct Needs {
+    bool albedo_uncertainty;
     bool net_light;  ///< for what becomes of it: net radiation, a balanced temperature
     bool light, suns, sky_view, reflected;
-    bool heat, scope;
+    bool heat, scope, level;
     explicit Needs(const Run& run)
-        : net_light(wants(run, {LayerId::net_radiation}) || (run.heat.surface == SurfaceFrom::balance && any(run, &Layer::needs_surface_temperature))),
+        : albedo_uncertainty(any(run, &Layer::needs_albedo_uncertainty)),
+          net_light(wants(run, {LayerId::net_radiation}) || (run.heat.surface == SurfaceFrom::balance && any(run, &Layer::needs_surface_temperature))),
           light(net_light || any(run, &Layer::needs_sun)),
-          suns(net_light || wants(run, {LayerId::insolation, LayerId::direct, LayerId::diffuse, LayerId::net_shortwave, LayerId::sunlit_hours})),
+          suns(net_light || wants(run, {LayerId::insolation, LayerId::direct, LayerId::diffuse, LayerId::net_shortwave, LayerId::net_shortwave_uncertainty,
+                                          LayerId::sunlit_hours})),
           sky_view(net_light || run.heat.longwave ||
-                   wants(run, {LayerId::insolation, LayerId::diffuse, LayerId::reflected, LayerId::net_shortwave, LayerId::sky_view})),
-          reflected(net_light || wants(run, {LayerId::insolation, LayerId::reflected, LayerId::net_shortwave})),
-          heat(any(run, &Layer::needs_air) || any(run, &Layer::needs_surface_temperature) || any(run, &Layer::needs_emissivity)),
-          scope(wants(run, {LayerId::sri}) || (run.heat.surface == SurfaceFrom::balance && any(run, &Layer::needs_surface_temperature))) {}
+                   wants(run, {LayerId::insolation, LayerId::diffuse, LayerId::reflected, LayerId::net_shortwave, LayerId::net_shortwave_uncertainty,
+                               LayerId::sky_view})),
+          reflected(net_light ||
+                    wants(run, {LayerId::insolation, LayerId::reflected, LayerId::net_shortwave, LayerId::net_shortwave_uncertainty})),
+          heat(std::any_of(run.layers.begin(), run.layers.end(), [](const OutputLayer& layer) { return layer.layer->is_heat(); })),
+          scope(wants(run, {LayerId::sri}) || (run.heat.surface == SurfaceFrom::balance && any(run, &Layer::needs_surface_temperature))),
+          level(run.terrain && wants(run, {LayerId::sri})) {}
 
   private:
     static bool any(const Run& run, bool Layer::*need) {
@@ -87,13 +93,15 @@ struct LitBand {
     const Plane<float>& diffuse;
     const Plane<float>& reflected;
     const Plane<float>& albedo;
+    const Plane<float>& albedo_uncertainty;  ///< looked at for its layer alone
+    float light_uncertainty;                 ///< relative
 };
 
 /// A row of a layer in W m-2 (hours for each 24). `rest` is scratch.
 void light_row(LayerId id, const LitBand& lit, bool terrain, int r, std::vector<float>& rest, std::span<float> out) {
     const auto beam = lit.light.direct.row(r), sky = lit.diffuse.row(r);
     std::span<const float> around = sky;
-    if (terrain && (id == LayerId::insolation || id == LayerId::net_shortwave)) {
+    if (terrain && (id == LayerId::insolation || id == LayerId::net_shortwave || id == LayerId::net_shortwave_uncertainty)) {
         rest.resize(sky.size());
         std::transform(sky.begin(), sky.end(), lit.reflected.row(r).begin(), rest.begin(), std::plus<>());
         around = rest;
@@ -106,6 +114,28 @@ void light_row(LayerId id, const LitBand& lit, bool terrain, int r, std::vector<
         case LayerId::sunlit_hours: copy(lit.light.hours); break;
         case LayerId::insolation: std::transform(beam.begin(), beam.end(), around.begin(), out.begin(), std::plus<>()); break;
         case LayerId::net_shortwave: absorbed_shortwave(lit.albedo.row(r), beam, lit.albedo.row(r), around, out); break;
+        case LayerId::net_shortwave_uncertainty:
+            std::transform(beam.begin(), beam.end(), around.begin(), out.begin(), std::plus<>());
+            absorbed_uncertainty(lit.albedo.row(r), lit.albedo_uncertainty.row(r), out, lit.light_uncertainty, out);
+            break;
+        default: break;
+    }
+}
+
+/// A row of a layer of heat as it is stored, before rounding. `factor` is that from W m-2.
+void heat_row(LayerId id, const HeatPlanes& heat, const Plane<float>& net_light, float factor, int r, std::span<float> out) {
+    const auto from = [&](const Plane<float>& plane, float times, float offset) {
+        std::transform(plane.row(r).begin(), plane.row(r).end(), out.begin(), [&](float value) { return value * times + offset; });
+    };
+    switch (id) {
+        case LayerId::longwave_down: from(heat.down, factor, 0); break;
+        case LayerId::longwave_up: from(heat.up, factor, 0); break;
+        case LayerId::net_longwave: from(heat.net, factor, 0); break;
+        case LayerId::surface_temperature: from(heat.surface_k, 1, -273.15F); break;
+        case LayerId::net_radiation:
+            std::transform(net_light.row(r).begin(), net_light.row(r).end(), heat.net.row(r).begin(), out.begin(),
+                           [&](float light, float heat_left) { return (light + heat_left) * factor; });
+            break;
         default: break;
     }
 }
@@ -143,7 +173,7 @@ struct Flow::State {
     std::optional<HeatFlow> heat;
 
     Window window;
-    Plane<float> albedo, heights_m, stored, net_light;
+    Plane<float> albedo, albedo_uncertainty, heights_m, stored, net_light;
     Plane<std::uint16_t> flags;
     Plane<float> sky_view, slope_deg, aspect_deg, albedo_seen;
     std::vector<LightField::Block> light_blocks;
@@ -186,9 +216,13 @@ struct Flow::State {
     void dim(const ShadedBlock& part, std::size_t band, double overcast);
     void see_albedo();
     void put_surface_layers(Sink& sink);
+    [[nodiscard]] bool outside_scope(const Plane<float>& dry, int r, std::size_t i) const;
     void flag_outside_scope();
-    void sum_net_light(std::size_t band, const BandPlanes& planes);
-    void put_heat_layers(std::size_t band, Sink& sink);
+    void sri_row(const Plane<float>& own_albedo, const Plane<float>& emissivity, const Plane<float>& dry, int r, std::span<float> out) const;
+    [[nodiscard]] LitBand lit(std::size_t held) const;
+    [[nodiscard]] LitBand lit(std::size_t held, const ChangedAlbedo& change) const;
+    void sum_net_light(std::size_t band, const LitBand& ground, Plane<float>& kept) const;
+    void put_heat_layers(std::size_t band, std::size_t held, Sink& sink);
     template <class Value>
     void note(const Plane<Value>& plane, const Window& frame, std::optional<std::size_t> band, const char* name, const char* unit,
               const char* text) const;
@@ -466,6 +500,7 @@ void Flow::State::see_albedo() {
     resize(albedo_seen, window);
     if (!run.has_surface()) {
         albedo_seen.fill(static_cast<float>(albedo_where_unknown));
+        beside.see(static_cast<float>(albedo_where_unknown));
         return;
     }
     Plane<float> around;
@@ -491,6 +526,7 @@ void Flow::State::note(const Plane<Value>& plane, const Window& frame, std::opti
 void Flow::State::note_surface() const {
     note(flags, window, {}, "quality", "1", "flags: where the albedo came from and what was seen");
     if (run.has_surface()) note(albedo, window, {}, "albedo", "1", "albedo before rounding");
+    note(albedo_uncertainty, window, {}, "albedo_uncertainty", "1", "its standard uncertainty");
     if (!run.terrain) return;
     note(heights_m, window, {}, "height", "m", "height of the ground");
     note(slope_deg, window, {}, "slope", "degree", "steepness");
@@ -566,16 +602,21 @@ void Flow::State::put_surface_layers(Sink& sink) {
                     std::copy(change.albedo.row(r).begin(), change.albedo.row(r).end(), out.begin());
                 }, sink);
                 break;
+            case LayerId::albedo_uncertainty: put_plane(n, 0, copied(albedo_uncertainty), sink); break;
             case LayerId::slope: put_plane(n, 0, copied(slope_deg), sink); break;
             case LayerId::aspect: put_plane(n, 0, copied(aspect_deg), sink); break;
             case LayerId::sky_view: put_plane(n, 0, copied(sky_view), sink); break;
             case LayerId::quality: sink.put(n, 0, window, flags); break;
-            case LayerId::emissivity: put_plane(n, 0, copied(heat->emissivity()), sink); break;
+            case LayerId::emissivity:
+                put_plane(n, 0, copied(heat->emissivity()), sink);
+                beside.put(n, 0, stored, [](const auto& change, int r, std::span<float> out) {
+                    std::copy(change.emissivity.row(r).begin(), change.emissivity.row(r).end(), out.begin());
+                }, sink);
+                break;
             case LayerId::sri:
-                put_plane(n, 0, [&](int r, std::span<float> out) {
-                    solar_reflectance_index(albedo.row(r), heat->emissivity().row(r), run.heat.wind, out);
-                    for (std::size_t i = 0; i < out.size(); ++i)
-                        if ((flags.row(r)[i] & quality::outside_scope) != 0) out[i] = std::numeric_limits<float>::quiet_NaN();
+                put_plane(n, 0, [&](int r, std::span<float> out) { sri_row(albedo, heat->emissivity(), heat->dry(), r, out); }, sink);
+                beside.put(n, 0, stored, [&](const auto& change, int r, std::span<float> out) {
+                    sri_row(change.albedo, change.emissivity, change.dry, r, out);
                 }, sink);
                 break;
             default: break;
@@ -585,38 +626,50 @@ void Flow::State::put_surface_layers(Sink& sink) {
 }
 
 /// Pixels whose temperature no balance of a dry surface gives; for the index also steep ones.
+bool Flow::State::outside_scope(const Plane<float>& dry, int r, std::size_t i) const {
+    constexpr float steepest_deg = 9.5F;  // ASTM E1980: low-sloped surfaces
+    return !(dry.row(r)[i] >= 1) || (needs.level && !(slope_deg.row(r)[i] < steepest_deg));
+}
+
 void Flow::State::flag_outside_scope() {
     if (!needs.scope) return;
-    constexpr float steepest_deg = 9.5F;  // ASTM E1980: low-sloped surfaces
-    const bool sloped = run.terrain && wants(run, {LayerId::sri});
     for (int r = 0; r < window.height; ++r) {
-        const auto dry = heat->dry().row(r);
         const auto flag = flags.row(r);
-        for (std::size_t i = 0; i < flag.size(); ++i) {
-            const bool outside = !(dry[i] >= 1) || (sloped && !(slope_deg.row(r)[i] < steepest_deg));
-            flag[i] = static_cast<std::uint16_t>(flag[i] | (outside ? quality::outside_scope : 0));
-        }
+        for (std::size_t i = 0; i < flag.size(); ++i)
+            flag[i] = static_cast<std::uint16_t>(flag[i] | (outside_scope(heat->dry(), r, i) ? quality::outside_scope : 0));
     }
+}
+
+void Flow::State::sri_row(const Plane<float>& own_albedo, const Plane<float>& emissivity, const Plane<float>& dry, int r,
+                          std::span<float> out) const {
+    solar_reflectance_index(own_albedo.row(r), emissivity.row(r), run.heat.wind, out);
+    for (std::size_t i = 0; i < out.size(); ++i)
+        if (outside_scope(dry, r, i)) out[i] = std::numeric_limits<float>::quiet_NaN();
+}
+
+/// A band of those held, over the ground as it is and after a change of it.
+LitBand Flow::State::lit(std::size_t held) const {
+    const auto& light = bands[held];
+    return {light, light.diffuse, light.reflected, albedo, albedo_uncertainty, static_cast<float>(run.light_uncertainty)};
+}
+LitBand Flow::State::lit(std::size_t held, const ChangedAlbedo& change) const {
+    const auto& light = bands[held];
+    return {light, ground_lights_sky() ? change.diffuse[held] : light.diffuse, run.terrain ? change.reflected[held] : light.reflected,
+            change.albedo, albedo_uncertainty, static_cast<float>(run.light_uncertainty)};
 }
 
 /// The sunlight a band's surface keeps, for what becomes of it.
-void Flow::State::sum_net_light(std::size_t band, const BandPlanes& planes) {
-    if (!needs.net_light) return;
-    resize(net_light, window);
-    net_light.fill(std::numeric_limits<float>::quiet_NaN());
-    if (!run.light.thin.empty() && run.light.thin[band]) return;
-    std::vector<float> rest(static_cast<std::size_t>(window.width));
-    for (int r = 0; r < window.height; ++r) {
-        const auto sky = planes.diffuse.row(r);
-        std::copy(sky.begin(), sky.end(), rest.begin());
-        if (run.terrain) std::transform(rest.begin(), rest.end(), planes.reflected.row(r).begin(), rest.begin(), std::plus<>());
-        absorbed_shortwave(albedo.row(r), planes.direct.row(r), albedo.row(r), rest, net_light.row(r));
-    }
+void Flow::State::sum_net_light(std::size_t band, const LitBand& ground, Plane<float>& kept) const {
+    resize(kept, window);
+    if (!run.light.thin.empty() && run.light.thin[band]) return kept.fill(std::numeric_limits<float>::quiet_NaN());
+    std::vector<float> rest;
+    for (int r = 0; r < window.height; ++r) light_row(LayerId::net_shortwave, ground, run.terrain.has_value(), r, rest, kept.row(r));
 }
 
-void Flow::State::put_heat_layers(std::size_t band, Sink& sink) {
+void Flow::State::put_heat_layers(std::size_t band, std::size_t held, Sink& sink) {
     if (!needs.heat || !run.times) return;
     const Plane<float> no_plane;
+    if (needs.net_light) sum_net_light(band, lit(held), net_light);
     const auto& found = heat->band(band, run.terrain ? sky_view : no_plane, net_light);
     if (band == 0) note(heat->emissivity(), window, {}, "emissivity", "1", "emissivity before rounding");
     note(heat->air_k(), window, band, "air_temperature", "K", "of the air at the pixel's height");
@@ -625,35 +678,26 @@ void Flow::State::put_heat_layers(std::size_t band, Sink& sink) {
     note(found.down, window, band, "longwave_down", "W/m2", "heat radiation from the sky and the ground in view");
     note(found.surface_k, window, band, "surface_temperature", "K", "of the ground");
     note(found.up, window, band, "longwave_up", "W/m2", "heat radiation sent up and reflected");
-    const auto scaled = [&](const Plane<float>& plane, float factor, float offset) {
-        return [&plane, factor, offset](int r, std::span<float> out) {
-            std::transform(plane.row(r).begin(), plane.row(r).end(), out.begin(), [&](float v) { return v * factor + offset; });
-        };
-    };
+    for (auto& change : beside.albedos) {
+        if (!change.touched || !change.heats) continue;
+        if (needs.net_light) sum_net_light(band, lit(held, change), change.net_light);
+        if (run.heat.longwave) heat->beside(change.emissivity, change.dry, change.net_light, change.heat);
+    }
     for (std::size_t n = 0; n < run.layers.size(); ++n) {
-        const auto& factors = run.layers[n].factors;
-        if (run.layers[n].changed) continue;
+        const auto& [layer, file, factors, changed] = run.layers[n];
+        if (changed || !layer->is_heat() || !layer->needs_time()) continue;
         const auto factor = static_cast<float>(factors[std::min(band, factors.size() - 1)]);
-        switch (run.layers[n].layer->id) {
-            case LayerId::longwave_down: put_plane(n, band, scaled(found.down, factor, 0), sink); break;
-            case LayerId::longwave_up: put_plane(n, band, scaled(found.up, factor, 0), sink); break;
-            case LayerId::net_longwave: put_plane(n, band, scaled(found.net, factor, 0), sink); break;
-            case LayerId::surface_temperature: put_plane(n, band, scaled(found.surface_k, 1, -273.15F), sink); break;
-            case LayerId::net_radiation:
-                put_plane(n, band, [&](int r, std::span<float> out) {
-                    std::transform(net_light.row(r).begin(), net_light.row(r).end(), found.net.row(r).begin(), out.begin(),
-                                   [&](float light, float heat_left) { return (light + heat_left) * factor; });
-                }, sink);
-                break;
-            default: break;
-        }
+        const auto id = layer->id;
+        put_plane(n, band, [&](int r, std::span<float> out) { heat_row(id, found, net_light, factor, r, out); }, sink);
+        beside.put(n, band, stored, [&](const ChangedAlbedo& change, int r, std::span<float> out) {
+            heat_row(id, change.heat, change.net_light, factor, r, out);
+        }, sink);
     }
 }
 
 void Flow::State::put_light_layers(std::size_t band, std::size_t held, Sink& sink) {
     std::vector<float> rest;
-    const auto& light = bands[held];
-    note_band(band, light);
+    note_band(band, bands[held]);
     for (std::size_t n = 0; n < run.layers.size(); ++n) {
         const auto& layer = run.layers[n];
         if (!layer.layer->needs_sun || layer.layer->needs_air || layer.changed) continue;
@@ -663,12 +707,8 @@ void Flow::State::put_light_layers(std::size_t band, std::size_t held, Sink& sin
             light_row(layer.layer->id, lit, run.terrain.has_value(), r, rest, out);
             for (auto& value : out) value = thin ? std::numeric_limits<float>::quiet_NaN() : value * factor;
         };
-        put_plane(n, band, [&](int r, std::span<float> out) { row_of({light, light.diffuse, light.reflected, albedo}, r, out); }, sink);
-        beside.put(n, band, stored, [&](const ChangedAlbedo& change, int r, std::span<float> out) {
-            row_of({light, ground_lights_sky() ? change.diffuse[held] : light.diffuse, run.terrain ? change.reflected[held] : light.reflected,
-                    change.albedo},
-                   r, out);
-        }, sink);
+        put_plane(n, band, [&](int r, std::span<float> out) { row_of(lit(held), r, out); }, sink);
+        beside.put(n, band, stored, [&](const ChangedAlbedo& change, int r, std::span<float> out) { row_of(lit(held, change), r, out); }, sink);
     }
 }
 
@@ -676,36 +716,34 @@ void Flow::State::put_light_layers(std::size_t band, std::size_t held, Sink& sin
 void Flow::State::begin(const Window& where) {
     window = where;
     surface.read(window, albedo, flags);
+    if (needs.albedo_uncertainty) surface.uncertainty(window, albedo, flags, albedo_uncertainty);
     read_heights();
     prepare_light();
     if (heat) heat->read(window, blocks_of(window), heights_m, flags);
-    beside.begin(window, albedo);
+    beside.begin(window, albedo, heat ? &*heat : nullptr);
     for (auto& one : raised) one->begin(where);
 }
 
 /// From shadows to finished planes; the first bands bring the surface's own layers.
 void Flow::State::some_bands(std::size_t first, std::size_t count, Sink& sink) {
-    const std::size_t lit = shared.field() != nullptr ? count : 0;
-    bands.resize(std::max(bands.size(), lit));
-    read_clouds(first, lit);
-    beside.some_bands(first, lit, ground_lights_sky());
-    if (run.terrain && (lit > 0 || first == 0))
-        terrain_bands(first, lit);
+    const std::size_t sunlit = shared.field() != nullptr ? count : 0;
+    bands.resize(std::max(bands.size(), sunlit));
+    read_clouds(first, sunlit);
+    beside.some_bands(first, count, sunlit, ground_lights_sky());
+    if (run.terrain && (sunlit > 0 || first == 0))
+        terrain_bands(first, sunlit);
     else if (!run.terrain)
-        flat_bands(first, lit);
+        flat_bands(first, sunlit);
     if (first == 0) {
-        if (lit > 0)
+        if (sunlit > 0)
             flag_missing_light(run.terrain ? open[static_cast<std::size_t>(LightField::Part::beam_up)] : bands[0].direct);
         flag_outside_scope();
         count_flags();
         put_surface_layers(sink);
     }
     for (std::size_t i = 0; i < count; ++i) {
-        if (lit > 0) {
-            put_light_layers(first + i, i, sink);
-            sum_net_light(first + i, bands[i]);
-        }
-        put_heat_layers(first + i, sink);
+        if (sunlit > 0) put_light_layers(first + i, i, sink);
+        put_heat_layers(first + i, i, sink);
     }
     for (std::size_t i = 0; i < raised.size(); ++i) {
         SavedSink after(beside, *shared.raised()[i], sink);

@@ -46,6 +46,7 @@ struct HeatFlow::State {
     LongwaveField* field;
     int thread;
     std::optional<PointLongwave> point;
+    std::optional<ChangeReader> change;  ///< one that has been carried out
 
     std::optional<Reader> cover, emissivity_raster, red, nir, surface, temperature, humidity;
     Window window;
@@ -68,6 +69,7 @@ struct HeatFlow::State {
             }
         }
         surface = reader_of(heat.surface_k);
+        if (run.carried_out) change.emplace(*run.carried_out);
         if (!heat.longwave) return;
         point.emplace(*run.times, *heat.longwave);
         temperature = reader_of(heat.longwave->temperature_k);
@@ -79,7 +81,8 @@ struct HeatFlow::State {
     void air_from_field(std::size_t band);
     void air_by_pixel(std::size_t band);
     void surface_by_pixel(const AirMoment& numbers);
-    void longwave_rows(const Plane<float>& sky_view, const Plane<float>& net_shortwave);
+    void come_down(const Plane<float>& sky_view);
+    void go_up(const Plane<float>& own_emissivity, const Plane<float>& own_dry, const Plane<float>& net_shortwave, HeatPlanes& to);
 };
 
 void keep_dry(std::span<const float> dry, std::span<float> values) noexcept {
@@ -190,11 +193,9 @@ void HeatFlow::State::surface_by_pixel(const AirMoment& numbers) {
     }
 }
 
-/// From sky, air and ground to what comes down, goes up and is left.
-void HeatFlow::State::longwave_rows(const Plane<float>& sky_view, const Plane<float>& net_shortwave) {
-    const bool emits = heat.surface != SurfaceFrom::nowhere && heat.emissivity;
-    for (auto* plane : {&out.down, &out.up, &out.net, &surface_black, &out.surface_k}) fit(*plane, window);
-    const auto exchange = static_cast<float>(heat_exchange_w_m2_k(heat.wind));
+/// From the sky and the ground in view.
+void HeatFlow::State::come_down(const Plane<float>& sky_view) {
+    for (auto* plane : {&out.down, &surface_black, &out.surface_k}) fit(*plane, window);
     for (int r = 0; r < window.height; ++r) {
         const auto down = out.down.row(r);
         if (heat.surface == SurfaceFrom::raster) {
@@ -212,14 +213,23 @@ void HeatFlow::State::longwave_rows(const Plane<float>& sky_view, const Plane<fl
             }
             longwave_on_surface(sky_view.row(r), sky.row(r), around, down);
         }
-        if (!emits) continue;
+    }
+}
+
+/// From there to what goes up and is left, where the ground's temperature and emissivity are known.
+void HeatFlow::State::go_up(const Plane<float>& own_emissivity, const Plane<float>& own_dry, const Plane<float>& net_shortwave, HeatPlanes& to) {
+    for (auto* plane : {&to.up, &to.net, &to.surface_k}) fit(*plane, window);
+    if (heat.surface == SurfaceFrom::nowhere || !heat.emissivity) return;
+    const auto exchange = static_cast<float>(heat_exchange_w_m2_k(heat.wind));
+    for (int r = 0; r < window.height; ++r) {
+        const std::span<const float> down = out.down.row(r), emits = own_emissivity.row(r);
         if (heat.surface == SurfaceFrom::balance) {
-            balanced_temperature(net_shortwave.row(r), emissivity.row(r), down, band_air_k.row(r), exchange, out.surface_k.row(r));
-            keep_dry(dry.row(r), out.surface_k.row(r));
-            black_body(out.surface_k.row(r), surface_black.row(r));
+            balanced_temperature(net_shortwave.row(r), emits, down, band_air_k.row(r), exchange, to.surface_k.row(r));
+            keep_dry(own_dry.row(r), to.surface_k.row(r));
+            black_body(to.surface_k.row(r), surface_black.row(r));
         }
-        longwave_up(emissivity.row(r), surface_black.row(r), down, out.up.row(r));
-        net_longwave(emissivity.row(r), surface_black.row(r), down, out.net.row(r));
+        longwave_up(emits, surface_black.row(r), down, to.up.row(r));
+        net_longwave(emits, surface_black.row(r), down, to.net.row(r));
     }
 }
 
@@ -234,6 +244,10 @@ void HeatFlow::read(const Window& window, const std::vector<Window>& blocks, con
     s.heights_m = &heights_m;
     s.read_emissivity(flags);
     s.read_dry();
+    if (s.change) {
+        if (!s.emissivity.empty()) s.change->emissivity(window, s.emissivity);
+        s.change->dry(window, s.dry);
+    }
     if (s.surface) {
         s.surface->read(window, s.surface_k);
         for (int r = 0; r < window.height; ++r) keep_possible(s.surface_k.row(r));
@@ -264,8 +278,13 @@ const HeatPlanes& HeatFlow::band(std::size_t band, const Plane<float>& sky_view,
         s.air_from_field(band);
     else
         s.air_by_pixel(band);
-    s.longwave_rows(sky_view, net_shortwave);
+    s.come_down(sky_view);
+    s.go_up(s.emissivity, s.dry, net_shortwave, s.out);
     return s.out;
+}
+
+void HeatFlow::beside(const Plane<float>& emissivity, const Plane<float>& dry, const Plane<float>& net_shortwave, HeatPlanes& changed) {
+    state_->go_up(emissivity, dry, net_shortwave, changed);
 }
 
 std::uint64_t HeatFlow::infinities() const {

@@ -36,6 +36,10 @@ class HeatFlow {
     /// One band. `sky_view` is empty on open ground; `net_shortwave` is looked at for the balance alone.
     [[nodiscard]] const HeatPlanes& band(std::size_t band, const Plane<float>& sky_view, const Plane<float>& net_shortwave);
 
+    /// The last band once more, over ground changed in itself: `up`, `net` and a balanced `surface_k`. Only where the
+    /// run has longwave.
+    void beside(const Plane<float>& emissivity, const Plane<float>& dry, const Plane<float>& net_shortwave, HeatPlanes& changed);
+
     /// Of the last band, on the way to it: the air, and what the whole sky sends to level open ground.
     [[nodiscard]] const Plane<float>& air_k() const;
     [[nodiscard]] const Plane<float>& sky() const;

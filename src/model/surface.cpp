@@ -126,6 +126,27 @@ void SurfaceReader::read(const Window& window, Plane<float>& albedo, Plane<std::
     if (state_->change) state_->change->albedo(window, albedo);
 }
 
+void SurfaceReader::uncertainty(const Window& window, const Plane<float>& albedo, const Plane<std::uint16_t>& flags,
+                                Plane<float>& uncertainty) {
+    auto& s = *state_;
+    resize(uncertainty, window);
+    uncertainty.fill(nan_value);
+    const auto* image = std::get_if<ReflectanceSurface>(&s.run.surface);
+    const auto* given = std::get_if<GivenSurface>(&s.run.surface);
+    if (const auto* cover = std::get_if<CoverSurface>(&s.run.surface)) s.reader->read_values(window, cover->albedo_uncertainty, uncertainty);
+    if (image != nullptr && image->fill) s.reader->read_values(window, image->fill->albedo_uncertainty, uncertainty);
+    if (given != nullptr && given->uncertainty) uncertainty.fill(static_cast<float>(*given->uncertainty));
+    for (int r = 0; r < window.height; ++r) {
+        const auto row = uncertainty.row(r);
+        const auto a = albedo.row(r);
+        const auto flag = flags.row(r);
+        for (std::size_t i = 0; i < row.size(); ++i) {
+            if (image != nullptr && (flag[i] & quality::source_mask) == quality::reflectance) row[i] = static_cast<float>(image->weights.fit_error);
+            if (std::isnan(a[i])) row[i] = nan_value;
+        }
+    }
+}
+
 std::uint64_t SurfaceReader::infinities() const {
     return (state_->reader ? state_->reader->infinities() : 0) + (state_->image ? state_->image->infinities() : 0);
 }

@@ -88,6 +88,7 @@ void visit_change(Change& change, Visitor& v) {
         v.value("high", albedo.high);
     });
     v.value("class", change.to_class);
+    v.value("emissivity", change.emissivity);
     v.map("height", change.height, [&](auto& height) {
         v.value("add", height.add);
         v.value("attribute", height.attribute);
@@ -123,6 +124,7 @@ void visit_plan(P& plan, Visitor& v) {
             v.value("scale", albedo.scale);
             v.value("offset", albedo.offset);
             v.value("value", albedo.value);
+            v.value("uncertainty", albedo.uncertainty);
         });
         v.value("emissivity", plan.surface.emissivity);
     });

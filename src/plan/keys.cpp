@@ -103,7 +103,11 @@ Form albedo_form() {
                  {number_above(0)},
                  "albedo = stored value * scale + offset; default: the file's own"},
                 {"offset", {number()}, "see scale; default: the file's own"},
-                {"value", {number(0, 1)}, "one albedo everywhere"}},
+                {"value", {number(0, 1)}, "one albedo everywhere"},
+                {"uncertainty",
+                 {number(0, 1)},
+                 "standard uncertainty of the albedo, for the layers albedo_uncertainty and "
+                 "net_shortwave_uncertainty"}},
                {exactly_one({"raster", "value"}), needs("scale", {"raster"}),
                 needs("offset", {"raster"})});
 }
@@ -439,7 +443,7 @@ Form zones_form() {
                 {"id", {of(ValueKind::text)}, "the field that names a zone, or fid", "fid"},
                 {"layers",
                  {list(choice(layer_names()), 1, {}, true)},
-                 "layers of the run to give figures of; default: all but aspect and quality"},
+                 "layers of the run to give figures of, uncertainties beside them; default: all but aspect and quality"},
                 {"above", {number()}, "also give the share of each zone above this value, in the layers' unit"}});
 }
 
@@ -460,7 +464,8 @@ Form change_form() {
     return map({{"name", {of(ValueKind::text)}, "letters, digits, - and _: becomes part of file names", {}, true},
                 {"where", {where}, "default: everywhere"},
                 {"albedo", {albedo}, "of what is treated"},
-                {"class", {integer(0, 65535)}, "what the ground turns into, a class of surface.cover's table: its albedo counts"},
+                {"class", {integer(0, 65535)}, "what the ground turns into, a class of surface.cover's table: its albedo counts, whether it is dry, and where the run's emissivity is by class also its emissivity"},
+                {"emissivity", {{.kind = ValueKind::number, .min = 0, .max = 1, .above_min = true}}, "of what is treated: heat radiation, net radiation, balanced temperature and sri follow"},
                 {"height", {height}, "what becomes of the elevation: trees, roofs; shadows and light are worked out anew"},
                 {"treatable", {{.kind = ValueKind::number, .min = 0, .max = 1, .above_min = true}}, "share of the place that can be treated", "1"},
                 {"lifetime", {number_above(0)}, "in years"},

@@ -1,6 +1,7 @@
 #include <fmt/format.h>
 
 #include <algorithm>
+#include <cmath>
 
 #include "resolve_parts.hpp"
 #include "sunbudget/base/digest.hpp"
@@ -42,6 +43,7 @@ class ChangeResolver {
         if (plan_.surface.cover) read_table();
         find_height();
         find_albedo();
+        find_heat();
         find_classes();
         add(change_);
         for (const auto& [case_name, albedo] : cases_) {
@@ -57,7 +59,12 @@ class ChangeResolver {
     void read_table();
     void find_height();
     void find_albedo();
+    void find_heat();
     void find_classes();
+    using ClassValues = std::vector<std::pair<std::int32_t, float>>;
+    [[nodiscard]] ClassValues of_classes(const CodeValues& values) const;
+    [[nodiscard]] static CodeValues changed(const Change& change, ClassValues values,
+                                            double treated);
     void set_albedo(Change& change, double albedo) const;
     void add(Change change);
     void add_layer(std::size_t base, std::size_t change, bool saved);
@@ -70,8 +77,7 @@ class ChangeResolver {
     std::string role_;
     Change change_;
     std::optional<ClassTable> table_;
-    std::vector<std::pair<std::int32_t, float>>
-        class_albedo_;  ///< of every class of the run, as it is
+    ClassValues class_albedo_;  ///< of every class of the run, as it is
     std::vector<std::pair<std::string, double>> cases_;
 };
 
@@ -147,6 +153,38 @@ void ChangeResolver::find_albedo() {
     change_.albedo = albedo.aged ? **albedo.aged : aged_from(**albedo.initial);
 }
 
+/// Emissivity and dryness, where the run has use for them.
+void ChangeResolver::find_heat() {
+    const auto* row = wanted_.to_class ? table_->find(**wanted_.to_class) : nullptr;
+    if (row != nullptr) change_.dry = is_dry(row->kind) ? 1 : 0;
+    const auto& has = run_.heat.emissivity;
+    if (wanted_.emissivity && has) change_.emissivity = **wanted_.emissivity;
+    if (wanted_.emissivity && !has) {
+        if (!change_.albedo && !change_.height)
+            throw Error(Cause::usage,
+                        "the change changes nothing: no layer of the run needs an emissivity", {},
+                        "add longwave_up, net_longwave, net_radiation, emissivity or sri to "
+                        "outputs.layers");
+        run_.warnings.push_back(role_ +
+                                ".emissivity: no layer of the run needs one, it changes nothing");
+    }
+    const bool by_class = has && (std::holds_alternative<ClassEmissivity>(*has) ||
+                                  std::holds_alternative<NdviEmissivity>(*has));
+    if (row == nullptr || wanted_.emissivity || !by_class) return;
+    if (std::isnan(row->emissivity))
+        throw Error(Cause::usage,
+                    fmt::format("the table {} has no emissivity for class {}", table_->name(),
+                                **wanted_.to_class),
+                    {}, "give emissivity beside class");
+    change_.emissivity = row->emissivity;
+}
+
+ChangeResolver::ClassValues ChangeResolver::of_classes(const CodeValues& values) const {
+    auto all = class_albedo_;
+    for (auto& [code, value] : all) value = values.of(code);
+    return all;
+}
+
 void ChangeResolver::find_classes() {
     if (!wanted_.where || !wanted_.where->classes) return;
     const auto& wanted = **wanted_.where->classes;
@@ -158,25 +196,34 @@ void ChangeResolver::find_classes() {
                 {}, fmt::format("see \"sunbudget tables {}\"", table_->name()));
     const auto* cover = std::get_if<CoverSurface>(&run_.surface);
     const auto* image = std::get_if<ReflectanceSurface>(&run_.surface);
+    if (cover == nullptr) cover = &*image->fill;
     auto listed = class_albedo_;
     for (auto& [code, value] : listed)
         value = std::ranges::find(wanted, code) != wanted.end() ? 1.0f : 0.0f;
-    change_.classes = ChangedClasses{
-        cover != nullptr ? cover->codes : image->fill->codes, CodeValues(listed), {}};
+    change_.classes = ChangedClasses{cover->codes, CodeValues(listed)};
     if (change_.albedo) set_albedo(change_, *change_.albedo);
+    if (change_.emissivity && std::holds_alternative<ClassEmissivity>(*run_.heat.emissivity))
+        change_.classes->emissivity_after =
+            changed(change_, of_classes(cover->emissivity), *change_.emissivity);
+    if (change_.dry)
+        change_.classes->dry_after = changed(change_, of_classes(cover->dry), *change_.dry);
+}
+
+/// What each class has once the listed ones are treated.
+CodeValues ChangeResolver::changed(const Change& change, ClassValues values, double treated) {
+    for (auto& [code, value] : values)
+        if (change.classes->listed.of(code) > 0) {
+            const auto before = static_cast<double>(value);
+            value = static_cast<float>(
+                change.treatable == 1 ? treated : before + change.treatable * (treated - before));
+        }
+    return CodeValues(values);
 }
 
 void ChangeResolver::set_albedo(Change& change, double albedo) const {
     change.albedo = albedo;
     if (!change.classes || !std::holds_alternative<CoverSurface>(run_.surface)) return;
-    auto after = class_albedo_;
-    for (auto& [code, value] : after)
-        if (change.classes->listed.of(code) > 0) {
-            const auto before = static_cast<double>(value);
-            value = static_cast<float>(
-                change.treatable == 1 ? albedo : before + change.treatable * (albedo - before));
-        }
-    change.classes->after = CodeValues(after);
+    change.classes->albedo_after = changed(change, class_albedo_, albedo);
 }
 
 /// Whether a layer shows the change, and whether what is saved of it has a meaning.
@@ -189,20 +236,35 @@ Shows shows(const Change& change, const Layer& layer, const Run& run) {
     const auto both = [](bool shown) { return Shows{shown, shown}; };
     const bool terrain = run.terrain.has_value(), raised = change.height.has_value();
     const bool ground_lights_sky = waits_for_ground(run.sky);
+    const bool lights = raised || change.albedo, emits = change.emissivity.has_value();
+    const bool balanced = run.heat.surface == SurfaceFrom::balance;
+    const bool warms = raised || emits || (balanced && (change.albedo || change.dry));
     switch (layer.id) {
         case LayerId::albedo:
             return {change.albedo.has_value(), false};
+        case LayerId::emissivity:
+            return {emits, false};
+        case LayerId::sri:
+            return {lights || emits || change.dry, false};
         case LayerId::net_shortwave:
-            return both(true);
+            return both(lights);
         case LayerId::insolation:
-            return both(terrain || ground_lights_sky);
+            return both(lights && (terrain || ground_lights_sky));
         case LayerId::reflected:
-            return both(terrain);
+            return both(lights && terrain);
         case LayerId::diffuse:
-            return both(raised || ground_lights_sky);
+            return both(raised || (lights && ground_lights_sky));
         case LayerId::direct:
         case LayerId::sunlit_hours:
+        case LayerId::longwave_down:
             return both(raised);
+        case LayerId::longwave_up:
+        case LayerId::net_longwave:
+            return both(warms);
+        case LayerId::net_radiation:
+            return both(lights || warms);
+        case LayerId::surface_temperature:
+            return both(balanced ? warms : raised && run.heat.surface == SurfaceFrom::air);
         case LayerId::sky_view:
             return {raised, false};
         default:
@@ -238,11 +300,11 @@ void ChangeResolver::add_layer(std::size_t base, std::size_t change, bool saved)
     if (saved) file.name += made.case_name.empty() ? "__saved" : "__saved_" + made.case_name;
     file.metadata["change"] = described();
     if (!made.case_name.empty())
-        file.metadata["case"] =
-            fmt::format("{} albedo, {}", made.case_name, shortest(*made.albedo));
+        file.metadata["case"] = fmt::format("{} albedo, {:.6g}", made.case_name, *made.albedo);
     if (saved) {
         file.metadata["layer"] =
             "what the change saves: before less after; negative where there is more after";
+        if (added.layer->quantity == Quantity::temperature) file.unit = "K";  // a difference
         for (auto& band : file.bands) band.metadata.erase("standard_name");
     }
     check_layer(file);
@@ -253,11 +315,15 @@ std::string ChangeResolver::described() const {
     std::string text = "change " + change_.name + ": ";
     std::vector<std::string> parts;
     if (change_.albedo) {
-        parts.push_back("albedo " + shortest(*change_.albedo));
+        parts.push_back(fmt::format("albedo {:.6g}", *change_.albedo));
         if (wanted_.albedo && !wanted_.albedo->aged)
             parts.back() += fmt::format(", aged from {} after 0.20 + 0.70 (initial - 0.20)",
                                         shortest(**wanted_.albedo->initial));
         if (wanted_.to_class) parts.back() += fmt::format(" of class {}", **wanted_.to_class);
+    }
+    if (change_.emissivity) {
+        parts.push_back("emissivity " + shortest(*change_.emissivity));
+        if (!wanted_.emissivity) parts.back() += fmt::format(" of class {}", **wanted_.to_class);
     }
     if (change_.height) {
         const auto& height = *change_.height;
@@ -287,9 +353,18 @@ void resolve_changes(const Plan& plan, const ResolveOptions& options, Run& run,
     for (const auto& change : plan.changes) {
         ChangeResolver resolver(plan, change, options, run);
         const bool has_polygons = change.where && change.where->file;
-        if (!has_polygons || problems.attempt(change.where->file->place, [&] { resolver.find_polygons(); }))
+        if (!has_polygons ||
+            problems.attempt(change.where->file->place, [&] { resolver.find_polygons(); }))
             problems.attempt(change.name.place, [&] { resolver.resolve(); });
     }
+    const bool given =
+        run.heat.surface == SurfaceFrom::air || run.heat.surface == SurfaceFrom::raster;
+    if (given && std::ranges::any_of(run.layers, [](const auto& layer) {
+            return layer.changed && layer.layer->needs_surface_temperature;
+        }))
+        run.assumptions.emplace_back(
+            "changes: the ground's temperature stays as given; only surface_temperature: {from: "
+            "balance} lets it follow");
 }
 
 }  // namespace sunbudget

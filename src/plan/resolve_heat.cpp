@@ -53,7 +53,7 @@ class HeatResolver {
             run_.heat.wind = static_cast<Wind>(**plan_.weather->wind);
         else if (wants_id(LayerId::sri))
             run_.assumptions.emplace_back("weather.wind: medium, 2 to 6 m/s");
-        if (wants(&Layer::needs_emissivity)) emissivity();
+        if (wants(&Layer::needs_emissivity) || (wants_id(LayerId::surface_temperature) && is_balanced())) emissivity();
         if (wants(&Layer::needs_surface_temperature)) surface();
         const bool by_air = run_.heat.surface == SurfaceFrom::air || run_.heat.surface == SurfaceFrom::balance;
         if (wants(&Layer::needs_air) || (wants(&Layer::needs_surface_temperature) && by_air)) longwave();
@@ -66,6 +66,9 @@ class HeatResolver {
     }
     [[nodiscard]] bool wants_id(LayerId wanted) const {
         return std::ranges::any_of(plan_.outputs.layers, [&](const auto& id) { return *id == wanted; });
+    }
+    [[nodiscard]] bool is_balanced() const {
+        return plan_.surface_temperature && std::holds_alternative<HeatSource>(plan_.surface_temperature->value.value);
     }
     [[nodiscard]] Source opened(const std::string& role, const PlanRaster& raster, std::optional<Scaling> scaling,
                                 std::optional<double> nodata = {}) {

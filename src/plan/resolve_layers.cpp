@@ -44,6 +44,16 @@ BandText band_of(const Layer& layer, const Run& run, std::size_t band) {
     return text;
 }
 
+/// Where the albedo's standard uncertainty comes from; empty where nobody says.
+std::string albedo_uncertainty_text(const Run& run) {
+    const std::string classes = "half of the class's range of published values over the root of 3, as of a rectangular distribution";
+    if (const auto* given = std::get_if<GivenSurface>(&run.surface))
+        return given->uncertainty ? shortest(*given->uncertainty) + ", as the plan says" : std::string();
+    if (const auto* image = std::get_if<ReflectanceSurface>(&run.surface))
+        return shortest(image->weights.fit_error) + ", the error of the bands' weights" + (image->fill ? "; filled pixels: " + classes : "");
+    return std::holds_alternative<CoverSurface>(run.surface) ? classes : std::string();
+}
+
 std::map<std::string, std::string> file_metadata(const Layer& layer, const Run& run) {
     std::map<std::string, std::string> items{{"software", "sunbudget " + std::string(program_version())},
                                              {"plan_digest", run.plan_digest},
@@ -58,6 +68,7 @@ std::map<std::string, std::string> file_metadata(const Layer& layer, const Run& 
     if (const auto* image = std::get_if<ReflectanceSurface>(&run.surface);
         image != nullptr && (layer.needs_albedo || layer.id == LayerId::quality))
         items.merge(reflectance_metadata(*image));
+    if (const auto text = albedo_uncertainty_text(run); layer.needs_albedo && !text.empty()) items["albedo_uncertainty"] = text;
     if (layer.needs_time() && run.times) {
         if (layer.quantity == Quantity::radiation)
             items["per_area"] = run.terrain ? "square metre of the inclined surface"
@@ -106,11 +117,26 @@ OutputLayer output_layer(const Layer& layer, const Run& run) {
     return out;
 }
 
+namespace {
+
+/// Classes whose table gives no range have no uncertainty, and the layers ask for one.
+void refuse_without_range(const Run& run) {
+    std::vector<std::string> without;
+    for (const auto& use : run.classes)
+        if (use.albedo && !use.albedo_low) without.push_back(fmt::format("{} \"{}\"", use.code, use.name));
+    if (!without.empty())
+        throw Error(Cause::usage, "the class table gives no range of albedo for " + joined(without, ", ") + ", and the layer needs one", {},
+                    "add the columns albedo_low and albedo_high, or leave the layer out");
+}
+
+}  // namespace
+
 void resolve_layers(const Plan& plan, Run& run, RunProblems& problems) {
     if (plan.outputs.unit) run.unit = **plan.outputs.unit;
     if (plan.outputs.format) run.overviews = **plan.outputs.format == FileFormat::cog;
     for (const auto& name : plan.outputs.layers)
         problems.attempt(name.place, [&] {
+            if (layer(*name).needs_albedo_uncertainty) refuse_without_range(run);
             run.layers.push_back(output_layer(layer(*name), run));
             check_layer(run.layers.back().file);
         });
@@ -129,7 +155,7 @@ void resolve_zones(const Plan& plan, Run& run, RunProblems& problems) {
                 task.layers.push_back(output.file.name);
     if (zones.layers.empty())
         for (const auto& output : run.layers)
-            if (output.layer->quantity != Quantity::flags && output.layer->id != LayerId::aspect) task.layers.push_back(output.file.name);
+            if (output.layer->quantity != Quantity::flags && output.layer->id != LayerId::aspect && !output.layer->needs_albedo_uncertainty) task.layers.push_back(output.file.name);
     if (plan.surface.cover) task.cover = raster_of(*plan.surface.cover->raster);
     problems.attempt(zones.file.place, [&] {
         const auto file = inspect_polygons(task.shapes);

@@ -1,6 +1,7 @@
 #include <fmt/format.h>
 
 #include <algorithm>
+#include <cmath>
 #include <set>
 
 #include "resolve_parts.hpp"
@@ -18,6 +19,12 @@ std::string class_text(std::int32_t code, std::uint64_t pixels, const RasterInfo
     const auto called = name == info.class_names.end() || name->second.empty() ? "" : " \"" + name->second + "\"";
     return fmt::format("{}{} ({} {})", code, called, pixels, pixels == 1 ? "pixel" : "pixels");
 }
+
+/// A table without a range has the albedo for both ends.
+bool has_range(const SurfaceClass& row) { return row.albedo_low < row.albedo_high; }
+
+/// Standard uncertainty of what lies anywhere in a range: JCGM 100:2008, 4.3.7 (from memory).
+double range_uncertainty(double low, double high) { return (high - low) / 2 / std::sqrt(3.0); }
 
 /// Table rows and the raster's classes brought together.
 class CoverClasses {
@@ -51,25 +58,29 @@ class CoverClasses {
     }
 
     void fill(CoverSurface& cover, std::vector<ClassUse>& uses) const {
-        std::vector<std::pair<std::int32_t, float>> albedo, source, emissivity, built, dry;
+        std::vector<std::pair<std::int32_t, float>> albedo, uncertainty, source, emissivity, built, dry;
+        const auto add_albedo = [&](std::int32_t code, const SurfaceClass& row) {
+            albedo.emplace_back(code, static_cast<float>(row.albedo));
+            if (has_range(row)) uncertainty.emplace_back(code, static_cast<float>(range_uncertainty(row.albedo_low, row.albedo_high)));
+        };
         const auto add_heat = [&](std::int32_t code, const SurfaceClass& row) {
-            const bool is_built = row.kind == Kind::roof || row.kind == Kind::paved || row.kind == Kind::built;
             emissivity.emplace_back(code, static_cast<float>(row.emissivity));
-            if (is_built) built.emplace_back(code, static_cast<float>(row.emissivity));
-            dry.emplace_back(code, is_built || row.kind == Kind::bare ? 1.0F : 0.0F);
+            if (is_built(row.kind)) built.emplace_back(code, static_cast<float>(row.emissivity));
+            dry.emplace_back(code, is_dry(row.kind) ? 1.0F : 0.0F);
         };
         for (const auto& row : table_.rows()) {
             if (row.is_nodata()) continue;
-            albedo.emplace_back(row.code, static_cast<float>(row.albedo));
+            add_albedo(row.code, row);
             source.emplace_back(row.code, static_cast<float>(quality::class_table));
             add_heat(row.code, row);
         }
         for (const auto code : unknown()) {
-            albedo.emplace_back(code, static_cast<float>(default_->albedo));
+            add_albedo(code, *default_);
             source.emplace_back(code, static_cast<float>(quality::default_class));
             add_heat(code, *default_);
         }
         cover.albedo = CodeValues(albedo);
+        cover.albedo_uncertainty = CodeValues(uncertainty);
         cover.quality = CodeValues(source);
         cover.emissivity = CodeValues(emissivity);
         cover.built_emissivity = CodeValues(built);
@@ -78,7 +89,10 @@ class CoverClasses {
             const auto* row = table_.find(code);
             const auto* used = row == nullptr ? default_ : row;
             uses.push_back({code, row == nullptr ? "default: " + used->name : used->name, pixels,
-                            used->is_nodata() ? std::nullopt : std::optional(used->albedo)});
+                            used->is_nodata() ? std::nullopt : std::optional(used->albedo), {}, {}});
+            if (used->is_nodata() || !has_range(*used)) continue;
+            uses.back().albedo_low = used->albedo_low;
+            uses.back().albedo_high = used->albedo_high;
         }
     }
 
@@ -132,7 +146,7 @@ void resolve_cover(const PlanCover& plan, const ResolveOptions& options, Run& ru
         spec.name = raster_of(*plan.raster);
         spec.kind = DataKind::code;
         spec.limits = limits_of(options);
-        CoverSurface cover{Source::open(spec, run.grid), {}, {}, {}, {}, {}, false};
+        CoverSurface cover{Source::open(spec, run.grid), {}, {}, {}, {}, {}, {}, false};
         cover.averaged = cover.codes.values_alignment() == Alignment::averaged;
         add_input(run, "surface.cover.raster", cover.codes);
         if (!table) return;
@@ -151,8 +165,9 @@ void resolve_cover(const PlanCover& plan, const ResolveOptions& options, Run& ru
 }
 
 void resolve_given(const PlanAlbedo& plan, const ResolveOptions& options, Run& run, RunProblems& problems) {
+    const auto uncertainty = plan.uncertainty ? std::optional(**plan.uncertainty) : std::nullopt;
     if (plan.value) {
-        run.surface.emplace<GivenSurface>(GivenSurface{**plan.value});
+        run.surface.emplace<GivenSurface>(GivenSurface{**plan.value, uncertainty});
         const auto* parameter = method("albedo", "given").parameter("value");
         if (judge(*parameter, **plan.value) == Verdict::unusual)
             run.warnings.push_back(fmt::format("surface.albedo.value: {} is outside the usual {}", **plan.value,
@@ -168,7 +183,7 @@ void resolve_given(const PlanAlbedo& plan, const ResolveOptions& options, Run& r
             spec.scaling = Scaling{plan.scale ? **plan.scale : 1.0, plan.offset ? **plan.offset : 0.0};
         auto source = Source::open(spec, run.grid);
         add_input(run, "surface.albedo.raster", source);
-        run.surface.emplace<GivenSurface>(GivenSurface{std::move(source)});
+        run.surface.emplace<GivenSurface>(GivenSurface{std::move(source), uncertainty});
         run.methods.push_back(&method("albedo", "given"));
     });
 }

@@ -230,6 +230,9 @@ void CrossCheck::layers() const {
     if (!written("surface.cover") && !written("surface.reflectance") && !written("surface.albedo"))
         layers_without(&Layer::needs_albedo, "an albedo, and the plan has none",
                        "add surface with cover, reflectance or albedo");
+    if (plan_.surface.albedo && !written("surface.albedo.uncertainty"))
+        layers_without(&Layer::needs_albedo_uncertainty, "the albedo's uncertainty, and nothing tells that of a given albedo",
+                       "add surface.albedo.uncertainty, a standard uncertainty such as 0.03");
     if (!has_elevation_raster())
         layers_without(&Layer::needs_terrain, "terrain, and the plan has no elevation raster", "add terrain.elevation");
     for (const auto& id : plan_.outputs.layers)
@@ -254,6 +257,8 @@ void CrossCheck::zones() const {
             mistakes_.add(id.place, "the run does not write " + name, "add it to outputs.layers, or leave it out here");
         if (*id == LayerId::aspect || *id == LayerId::quality)
             mistakes_.add(id.place, "a mean of " + name + " has no meaning", "leave it out here");
+        if (layer(*id).needs_albedo_uncertainty)
+            mistakes_.add(id.place, name + " has no columns of its own: it stands beside its layer's", "leave it out here");
     }
 }
 
@@ -283,8 +288,8 @@ void CrossCheck::change(const PlanChange& change) const {
     change_name(change);
     change_albedo(change);
     change_height(change);
-    if (!change.albedo && !change.to_class && !change.height)
-        mistakes_.add(change.place, "the change changes nothing", "give albedo, class or height");
+    if (!change.albedo && !change.to_class && !change.emissivity && !change.height)
+        mistakes_.add(change.place, "the change changes nothing", "give albedo, class, emissivity or height");
     if (!change.where) return;
     if (!change.where->file && !change.where->classes)
         mistakes_.add(change.where->place, "nothing says where", "give file, or classes of the land cover");
@@ -311,7 +316,8 @@ void CrossCheck::change_albedo(const PlanChange& change) const {
         mistakes_.add(change.to_class->place, "the plan has no land cover whose table has the class", "add surface.cover, or give albedo");
     if (!change.albedo) return;
     const auto& [place, initial, aged, low, high] = *change.albedo;
-    if (!written("surface")) mistakes_.add(place, "there is no albedo to change", "add surface");
+    if (!written("surface.cover") && !written("surface.reflectance") && !written("surface.albedo"))
+        mistakes_.add(place, "there is no albedo to change", "add surface with cover, reflectance or albedo");
     if (!initial && !aged) mistakes_.add(place, "the albedo is not given", "give aged, or initial");
     if (low && high && **low > **high) mistakes_.add(low->place, "low lies above high", "exchange the two");
     if (low && aged && **low > **aged) mistakes_.add(low->place, "low lies above aged", "low is the least to expect of an aged surface");

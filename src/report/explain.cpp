@@ -55,6 +55,12 @@ const ClassUse* class_of(const Run& run, const InputPixel& input) {
     return found == run.classes.end() ? nullptr : &*found;
 }
 
+std::string range_text(const ClassUse& use) {
+    return use.albedo_low ? fmt::format(", published from {} to {}", number(*use.albedo_low),
+                                        number(*use.albedo_high))
+                          : std::string();
+}
+
 /// Weight and reflectance of each band of an image: their products and the constant add up to the albedo.
 struct WeightedBand {
     std::string name;
@@ -128,9 +134,9 @@ std::string albedo_text(const Run& run, const PixelAccount& account) {
             text += fmt::format("  {}: {}\n", row.name, row.text);
     for (const auto& input : account.inputs)
         if (const auto* use = class_of(run, input))
-            text += fmt::format(
-                "  class {} \"{}\": {}\n", use->code, printable(use->name),
-                use->albedo ? "albedo " + number(*use->albedo) : std::string("no data"));
+            text += fmt::format("  class {} \"{}\": {}\n", use->code, printable(use->name),
+                                use->albedo ? "albedo " + number(*use->albedo) + range_text(*use)
+                                            : std::string("no data"));
     for (const auto& band : weighted_bands(run, account))
         text += fmt::format("  {}: reflectance {} x weight {} = {:.6f}\n", band.name,
                             number(band.reflectance), band.weight, band.reflectance * band.weight);
@@ -227,7 +233,7 @@ std::string layers_text(const Run& run, const PixelAccount& account) {
     for (std::size_t n = 0; n < run.layers.size(); ++n) {
         const auto& file = run.layers[n].file;
         const auto name = with_unit(file.name, file.unit);
-        if (!run.layers[n].layer->needs_sun)
+        if (!run.layers[n].layer->needs_time() || !run.times)
             text += fmt::format("  {:<34} {:>14}\n", name, number(account.layers[n].front()));
         else
             lines.push_back({name, {}, account.layers[n]});

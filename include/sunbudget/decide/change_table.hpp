@@ -37,12 +37,16 @@ class ChangeTable {
         std::size_t change;          ///< counts the run's changes
         std::size_t treated;         ///< the layer of treated shares
         std::vector<Layers> layers;  ///< as names_
+        std::vector<Layers> means;   ///< as mean_names_
     };
     static constexpr std::size_t none = static_cast<std::size_t>(-1);
 
     [[nodiscard]] std::size_t layer_named(const std::string& name) const;
     [[nodiscard]] double total(std::size_t zone, std::size_t layer, Half half) const;
     [[nodiscard]] double mean(std::size_t zone, std::size_t layer) const;
+    [[nodiscard]] double mean_in_time(std::size_t zone, std::size_t layer) const;
+    /// Whether any change has the case's saving of the layer.
+    [[nodiscard]] bool has_case(std::size_t layer, std::size_t one) const;
     [[nodiscard]] double treated_m2(std::size_t zone, const ChangeRows& change) const;
     [[nodiscard]] bool is_energy() const;
     void put_layer(std::size_t zone, const ChangeRows& change, std::size_t layer,
@@ -53,6 +57,7 @@ class ChangeTable {
     const std::vector<Polygon>& zones_;
     const std::vector<ZoneAnswer>& answers_;
     std::vector<std::string> names_;       ///< layers of the base of which something is saved
+    std::vector<std::string> mean_names_;  ///< likewise, of which nothing adds up: temperatures
     std::vector<std::string> case_names_;  ///< initial, low, high: those that any change has
     std::vector<ChangeRows> changes_;
     std::vector<Half> halves_;  ///< of the year, by period

@@ -23,8 +23,8 @@ struct HeightChange {
 struct ChangedClasses {
     Source codes;
     CodeValues listed;  ///< 1 for the classes, 0 for all others
-    /// The albedo of every class after the change, where the run's own albedo comes from this cover.
-    std::optional<CodeValues> after;
+    /// What every class has after the change, where the run's own comes from this cover.
+    std::optional<CodeValues> albedo_after{}, emissivity_after{}, dry_after{};
 };
 
 /// A named what-if beside the run as it is. Never changes, and may be shared between threads.
@@ -36,6 +36,8 @@ struct Change {
     std::optional<ChangedClasses> classes{};     ///< nothing: every class
     double treatable = 1;                        ///< share of the place that is treated
     std::optional<double> albedo{};              ///< of what is treated
+    std::optional<double> emissivity{};          ///< likewise; nothing where the run needs none
+    std::optional<double> dry{};  ///< 1 where it becomes a dry built or bare kind, 0 where another
     std::optional<HeightChange> height{};
     std::optional<double> lifetime_years{};
     std::optional<double> cost_per_m2{};  ///< of treated map area, in a currency of the user's
@@ -56,6 +58,9 @@ class ChangeReader {
     void treated(const Window& window, Plane<float>& share);
     /// Turns albedo before into albedo after. It mixes linearly; NaN stays.
     void albedo(const Window& window, Plane<float>& albedo);
+    /// The same for emissivity, and for dryness: 1 where a surface is dry and built or bare.
+    void emissivity(const Window& window, Plane<float>& emissivity);
+    void dry(const Window& window, Plane<float>& dry);
     /// The same for heights. A pixel that lies partly inside is raised by that part.
     void heights(const Window& window, Plane<float>& heights_m);
 

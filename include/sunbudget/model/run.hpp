@@ -31,6 +31,7 @@ namespace sunbudget {
 struct CoverSurface {
     Source codes;
     CodeValues albedo;          ///< of every code of the table, and of the default class's codes
+    CodeValues albedo_uncertainty;  ///< of those whose range the table has
     CodeValues quality;         ///< the `quality` layer's source number for each code
     CodeValues emissivity;
     CodeValues built_emissivity;  ///< of built kinds alone
@@ -41,6 +42,7 @@ struct CoverSurface {
 /// Albedo as given: a raster, or one number for all.
 struct GivenSurface {
     std::variant<double, Source> albedo;
+    std::optional<double> uncertainty;  ///< standard; nothing: nobody said
 };
 
 /// One band of an image and its weight.
@@ -109,6 +111,7 @@ struct ClassUse {
     std::string name;
     std::uint64_t pixels = 0;  ///< of the raster, as counted or sampled
     std::optional<double> albedo;
+    std::optional<double> albedo_low, albedo_high;  ///< where the table has a range
 };
 
 /// A weather table of a run.

@@ -17,4 +17,18 @@ void absorbed_shortwave(std::span<const float> albedo_direct, std::span<const fl
                         std::span<const float> albedo_diffuse, std::span<const float> diffuse,
                         std::span<float> absorbed) noexcept;
 
+/// Standard uncertainty of absorbed shortwave, to first order:
+/// light * sqrt(u(albedo)^2 + ((1 - albedo) * light_uncertainty)^2).
+///
+/// shape   four rows of the same length; uncertainty may be the row `light`
+/// units   albedo and its standard uncertainty [1]; light and uncertainty alike [W m-2] or [J m-2];
+///         light_uncertainty is relative and the same at all times, so that sums have it too
+/// nodata  NaN in any input gives NaN out
+/// errors  none; rows of unequal length are a caller's bug (asserted)
+/// source  law of propagation for inputs that do not hang on each other, JCGM 100:2008, 5.1.2
+///         (from memory)
+void absorbed_uncertainty(std::span<const float> albedo, std::span<const float> albedo_uncertainty,
+                          std::span<const float> light, float light_uncertainty,
+                          std::span<float> uncertainty) noexcept;
+
 }  // namespace sunbudget

@@ -83,9 +83,10 @@ struct PlanAlbedo {
     Maybe<double> scale;
     Maybe<double> offset;
     Maybe<double> value;
+    Maybe<double> uncertainty;
     friend bool operator==(const PlanAlbedo& a, const PlanAlbedo& b) {
         return a.raster == b.raster && a.scale == b.scale && a.offset == b.offset &&
-               a.value == b.value;
+               a.value == b.value && a.uncertainty == b.uncertainty;
     }
 };
 
@@ -400,12 +401,13 @@ struct PlanChange {
     std::optional<PlanWhere> where;
     std::optional<PlanChangedAlbedo> albedo;
     Maybe<int> to_class;  ///< a class of the cover's table
+    Maybe<double> emissivity;
     std::optional<PlanChangedHeight> height;
     Maybe<double> treatable;
     Maybe<double> lifetime;
     Maybe<double> cost;
     friend bool operator==(const PlanChange& a, const PlanChange& b) {
-        return a.name == b.name && a.where == b.where && a.albedo == b.albedo && a.to_class == b.to_class &&
+        return a.name == b.name && a.where == b.where && a.albedo == b.albedo && a.to_class == b.to_class && a.emissivity == b.emissivity &&
                a.height == b.height && a.treatable == b.treatable && a.lifetime == b.lifetime && a.cost == b.cost;
     }
 };

@@ -36,6 +36,14 @@ enum class Kind {
 enum class Scale { facet, local };
 
 [[nodiscard]] std::string_view name_of(Kind kind) noexcept;
+/// Roofs, paving and other works of builders.
+[[nodiscard]] constexpr bool is_built(Kind kind) noexcept {
+    return kind == Kind::roof || kind == Kind::paved || kind == Kind::built;
+}
+/// Ground that no plant or water cools: what a dry surface's balance holds for.
+[[nodiscard]] constexpr bool is_dry(Kind kind) noexcept {
+    return is_built(kind) || kind == Kind::bare;
+}
 [[nodiscard]] std::string_view name_of(Scale scale) noexcept;
 [[nodiscard]] std::optional<Kind> kind_named(std::string_view name) noexcept;
 [[nodiscard]] std::optional<Scale> scale_named(std::string_view name) noexcept;

@@ -21,11 +21,13 @@ enum class OutputUnit { w_m2, mj_m2, kwh_m2 };
 
 enum class LayerId {
     albedo,
+    albedo_uncertainty,
     insolation,
     direct,
     diffuse,
     reflected,
     net_shortwave,
+    net_shortwave_uncertainty,
     sunlit_hours,
     sky_view,
     slope,
@@ -60,7 +62,10 @@ struct Layer {
     bool needs_air = false;         ///< temperature and humidity
     bool needs_surface_temperature = false;
     bool needs_emissivity = false;
+    bool needs_albedo_uncertainty = false;
 
+    /// Made from air, emissivity or the ground's temperature.
+    [[nodiscard]] bool is_heat() const { return needs_air || needs_surface_temperature || needs_emissivity; }
     /// One band a period; otherwise one band.
     [[nodiscard]] bool needs_time() const { return needs_sun || needs_air || needs_surface_temperature; }
 };
