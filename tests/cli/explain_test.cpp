@@ -104,14 +104,18 @@ TEST_CASE("explain: figures equal the demo town's files to the last bit, months 
               "time: " +
               time +
               "\n"
+              "weather: {air_temperature: 25 degC, relative_humidity: 0.5}\n"
+              "surface_temperature: {air_plus: 5 K}\n"
               "outputs: {directory: out, unit: " +
               unit +
               ", layers: [albedo, insolation, direct, diffuse, reflected, net_shortwave, "
-              "sky_view, slope, aspect, quality" +
+              "sky_view, slope, aspect, quality, albedo_uncertainty, net_shortwave_uncertainty, "
+              "emissivity, longwave_down, longwave_up, net_radiation" +
               hours +
               "]}\n"
               "changes:\n"
-              "  - {name: pale, where: {classes: [50]}, albedo: {aged: 0.6}, treatable: 0.5}\n"
+              "  - {name: pale, where: {classes: [50]}, albedo: {aged: 0.6}, emissivity: 0.88, "
+              "treatable: 0.5}\n"
               "  - {name: higher, where: {file: " +
               (*town / "roofs.gpkg").string() + "}, height: {add: 3 m}}\n");
     compare(desk, "albedo");

@@ -135,6 +135,16 @@ TEST_CASE("balanced temperature: dry built and bare ground alone, and the balanc
                         273.15 - static_cast<double>(celsius));
     });
     CHECK(worst < 0.002);
+    // Asked for alone it has its emissivity and its light all the same.
+    const auto alone = computed(folder.path(), town +
+                                                   "weather: {air_temperature: 25 degC, relative_humidity: 0.5, wind: low}\n"
+                                                   "surface_temperature: {from: balance}\n"
+                                                   "time: {at: 2025-06-21T11:00Z}\n"
+                                                   "outputs: {layers: [surface_temperature]}\n");
+    CHECK(largest(alone["surface_temperature"], [&](int c, int r, float celsius) {
+              const auto other = static_cast<float>(at(found["surface_temperature"], c, r));
+              return celsius == other || (std::isnan(celsius) && std::isnan(other)) ? 0.0 : 1.0;
+          }) == 0);
     CHECK(outside >= side * side / 2);
     int level = 0;
     CHECK(largest(found["sri"], [&](int c, int r, float index) {
