@@ -56,7 +56,7 @@ const ClassUse* class_of(const Run& run, const InputPixel& input) {
 }
 
 std::string range_text(const ClassUse& use) {
-    return use.albedo_low ? fmt::format(", published from {} to {}", number(*use.albedo_low),
+    return use.albedo_low ? fmt::format(", range {} to {}", number(*use.albedo_low),
                                         number(*use.albedo_high))
                           : std::string();
 }

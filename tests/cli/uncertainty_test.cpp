@@ -204,5 +204,5 @@ TEST_CASE(
     CHECK(explained.exit_code == 0);
     CHECK_THAT(explained.out, Contains("its standard uncertainty") &&
                                   Contains("net_shortwave_uncertainty_w_m2") &&
-                                  Contains("published from 0.05 to 0.2"));
+                                  Contains("range 0.05 to 0.2"));
 }
