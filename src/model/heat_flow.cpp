@@ -25,6 +25,10 @@ const CoverSurface* cover_of(const Run& run) {
     return image != nullptr && image->fill ? &*image->fill : nullptr;
 }
 
+/// Of snow, whose NDVI is that of bare soil. Fresh and old snow 0.98 to 0.99, broadband (from memory of Warren,
+/// Rev. Geophys. 20, 1982, 67-89, and Dozier & Warren, Water Resour. Res. 18, 1982, 1424-1434).
+constexpr float snow_emissivity = 0.985F;
+
 /// Temperatures no ground has (a scene's clamped numbers under cloud) are no data.
 void keep_possible(std::span<float> kelvin) noexcept {
     constexpr float coldest_k = 180, hottest_k = 380;
@@ -115,6 +119,7 @@ void HeatFlow::State::read_emissivity(const Plane<std::uint16_t>& flags) {
             const bool seen = (flag[i] & quality::source_mask) == quality::reflectance;
             if (!seen) row[i] = cover ? class_emissivity.row(r)[i] : nan_value;
             if (seen && cover && !std::isnan(built.row(r)[i])) row[i] = built.row(r)[i];
+            if (seen && (flag[i] & quality::snow) != 0) row[i] = snow_emissivity;
         }
     }
 }

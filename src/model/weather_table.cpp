@@ -27,22 +27,15 @@ namespace {
 
 constexpr std::string_view blanks = " \t";
 
-/// Takes one cell off the front, quotes removed. A doubled quote inside a quoted cell stays doubled: no
-/// number and no time has one.
-std::string_view take_cell(std::string_view& rest, char separator) {
-    if (rest.starts_with('"')) {
-        const auto end = rest.find('"', 1);
-        if (end != rest.npos) {
-            const auto cell = rest.substr(1, end - 1);
-            const auto next = rest.find(separator, end);
-            rest.remove_prefix(next == rest.npos ? rest.size() : next + 1);
-            return cell;
-        }
-    }
-    const auto next = rest.find(separator);
-    const auto cell = trimmed(rest.substr(0, next));
-    rest.remove_prefix(next == rest.npos ? rest.size() : next + 1);
-    return cell;
+/// Takes one cell off the front, quotes removed; nothing of `rest` is left behind the last. A doubled quote
+/// inside a quoted cell stays doubled: no number and no time has one.
+std::string_view take_cell(std::optional<std::string_view>& rest, char separator) {
+    const auto line = *rest;
+    const auto quote = line.starts_with('"') ? line.find('"', 1) : line.npos;
+    const auto next = line.find(separator, quote == line.npos ? 0 : quote);
+    // Behind a separator there is one more cell, be it empty.
+    rest = next == line.npos ? std::nullopt : std::optional(line.substr(next + 1));
+    return quote == line.npos ? trimmed(line.substr(0, next)) : line.substr(1, quote - 1);
 }
 
 /// The separator that a line has most of; blanks where it has none.
@@ -127,7 +120,7 @@ WeatherCells WeatherTable::cells_of(std::string_view line) const {
         }
         return cells;
     }
-    for (auto rest = line; !rest.empty();) cells.push_back(take_cell(rest, separator_));
+    for (std::optional rest = line; rest;) cells.push_back(take_cell(rest, separator_));
     return cells;
 }
 

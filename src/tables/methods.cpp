@@ -214,8 +214,8 @@ std::vector<Method> heat_rows() {
                  "ASTM E1980-11: heat exchange of 5, 12 and 30 W m-2 K-1 in low, medium and high wind"),
         heat_row(emissivity, "class-table", "the emissivity of the pixel's land-cover class", "the class table's own sources, row by row"),
         heat_row(emissivity, "given", "a raster or one number", "given by the user"),
-        heat_row(emissivity, "sobrino2004", "from red and near-infrared reflectance by thresholds of the NDVI; built kinds keep their class's",
-                 "Sobrino, Jimenez-Munoz & Paolini, Remote Sens. Environ. 90, 2004, 434-440 (from memory; its soil term is a thermal band's)"),
+        heat_row(emissivity, "sobrino2004", "from red and near-infrared reflectance by thresholds of the NDVI; built kinds keep their class's, snow has 0.985",
+                 "Sobrino, Jimenez-Munoz & Paolini, Remote Sens. Environ. 90, 2004, 434-440 (from memory; its soil term is a thermal band's); snow: Dozier & Warren 1982 (from memory)"),
         heat_row("sri", "astm-e1980", "solar reflectance index at 1000 W/m2, air at 310 K, a sky of 300 K, solved for every pixel", "ASTM E1980-11"),
     };
 }

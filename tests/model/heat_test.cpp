@@ -155,6 +155,25 @@ TEST_CASE("balanced temperature: dry built and bare ground alone, and the balanc
     CHECK(level > 100);
 }
 
+TEST_CASE("emissivity from NDVI: what the image's quality calls snow has snow's, not bare soil's", "[heat][property]") {
+    const TemporaryFolder folder;
+    const auto frame = frame_about("EPSG:32633", 47.0, 15.0, 30, side, side);
+    std::string bands;
+    for (const auto& [name, reflectance] : {std::pair{"blue", 0.6F}, {"red", 0.6F}, {"nir", 0.55F}, {"swir1", 0.1F}, {"swir2", 0.1F}}) {
+        write_heights(folder.path() / (std::string(name) + ".tif"), frame, Plane<float>(side, side, (reflectance + 0.2F) / 2.75e-5F), {"Int16", "", 0});
+        bands += std::string(bands.empty() ? "" : ", ") + name + ": " + name + ".tif";
+    }
+    // QA_PIXEL of USGS Collection 2: bit 6 clear, bit 5 snow.
+    Plane<float> quality(side, side, 64);
+    for (int r = 0; r < side; ++r) quality.at(3, r) = 32;
+    write_heights(folder.path() / "qa.tif", frame, quality, {"Int16", "", 1});
+    const auto found = computed(folder.path(), "surface: {emissivity: {from: ndvi}, reflectance: {sensor: landsat-oli-c2, product: surface-reflectance, "
+                                               "implausible: allow, quality: qa.tif, bands: {" + bands + "}}}\noutputs: {layers: [emissivity]}\n");
+    // 0.98 - 0.042 red (Sobrino et al. 2004) beside it; numbers are stored in steps of 2.75e-5.
+    CHECK(at(found["emissivity"], 2, 7) == Approx(0.98 - 0.042 * 0.6).margin(1e-5));
+    CHECK(at(found["emissivity"], 3, 7) == Approx(0.985).margin(1e-6));
+}
+
 TEST_CASE("Landsat's stored temperatures are known by name or product, and 0 is no data", "[heat][edge]") {
     const TemporaryFolder folder;
     make_ground(folder.path());

@@ -169,6 +169,22 @@ TEST_CASE("weather: nonsense is refused at its row", "[model][weather]") {
     CHECK_THAT(many, Contains("20 more problems"));
 }
 
+TEST_CASE("weather: an empty last cell is a missing value like any other", "[model][weather][edge]") {
+    const std::string sign = GENERATE(",", ";", "\t");
+    CAPTURE(sign);
+    const auto row = [&](const std::string& time, const std::string& air, const std::string& wind) { return time + sign + air + sign + wind + "\n"; };
+    const auto record = read_weather(row("time", "air_temperature [degC]", "wind [m/s]") + row("2025-06-01T10:00Z", "20", "") +
+                                         row("2025-06-01T11:00Z", "", "3") + row("2025-06-01T12:00Z", "", ""),
+                                     plain());
+    REQUIRE(record.intervals.size() == 3);
+    CHECK(record.values(Weather::air_temperature)[0] == Approx(293.15));
+    CHECK(record.missing(Weather::air_temperature) == 2);
+    CHECK(record.missing(Weather::wind) == 2);
+    CHECK(record.values(Weather::wind)[1] == 3);
+    // A row that ends before the column has a problem, as ever.
+    CHECK_THAT(told(row("time", "air_temperature [degC]", "wind [m/s]") + "2025-06-01T10:00Z" + sign + "20\n", plain()), Contains("the row has 2 cells, not 3"));
+}
+
 TEST_CASE("weather: rows out of order, doubled or overlapping are refused", "[model][weather]") {
     const auto rows = [](const char* a, const char* b, const char* c) {
         return told(std::string("time,global [W/m2]\n") + a + ",1\n" + b + ",1\n" + c + ",1\n", plain());
