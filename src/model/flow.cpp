@@ -72,7 +72,7 @@ struct Needs {
           light(net_light || any(run, &Layer::needs_sun)),
           suns(net_light || wants(run, {LayerId::insolation, LayerId::direct, LayerId::diffuse, LayerId::net_shortwave, LayerId::net_shortwave_uncertainty,
                                           LayerId::sunlit_hours})),
-          sky_view(net_light || run.heat.longwave ||
+          sky_view(net_light || (run.heat.longwave && !run.heat.longwave->daily) ||
                    wants(run, {LayerId::insolation, LayerId::diffuse, LayerId::reflected, LayerId::net_shortwave, LayerId::net_shortwave_uncertainty,
                                LayerId::sky_view})),
           reflected(net_light ||
@@ -673,7 +673,10 @@ void Flow::State::put_heat_layers(std::size_t band, std::size_t held, Sink& sink
     const auto& found = heat->band(band, run.terrain ? sky_view : no_plane, net_light);
     if (band == 0) note(heat->emissivity(), window, {}, "emissivity", "1", "emissivity before rounding");
     note(heat->air_k(), window, band, "air_temperature", "K", "of the air at the pixel's height");
-    note(heat->sky(), window, band, "longwave_sky", "W/m2", "heat radiation of the whole sky on level open ground");
+    if (run.heat.longwave && run.heat.longwave->daily)
+        note(found.net, window, band, "net_longwave", "W/m2", "of whole days, level open ground, before rounding");
+    else
+        note(heat->sky(), window, band, "longwave_sky", "W/m2", "heat radiation of the whole sky on level open ground");
     note(net_light, window, band, "net_light", "W/m2", "sunlight that is kept");
     note(found.down, window, band, "longwave_down", "W/m2", "heat radiation from the sky and the ground in view");
     note(found.surface_k, window, band, "surface_temperature", "K", "of the ground");

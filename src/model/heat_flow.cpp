@@ -87,6 +87,7 @@ struct HeatFlow::State {
     void surface_by_pixel(const AirMoment& numbers);
     void come_down(const Plane<float>& sky_view);
     void go_up(const Plane<float>& own_emissivity, const Plane<float>& own_dry, const Plane<float>& net_shortwave, HeatPlanes& to);
+    void take_net(HeatPlanes& to);
 };
 
 void keep_dry(std::span<const float> dry, std::span<float> values) noexcept {
@@ -198,6 +199,12 @@ void HeatFlow::State::surface_by_pixel(const AirMoment& numbers) {
     }
 }
 
+/// A daily method's field is of the net already.
+void HeatFlow::State::take_net(HeatPlanes& to) {
+    fit(to.net, window);
+    for (int r = 0; r < window.height; ++r) std::copy(sky.row(r).begin(), sky.row(r).end(), to.net.row(r).begin());
+}
+
 /// From the sky and the ground in view.
 void HeatFlow::State::come_down(const Plane<float>& sky_view) {
     for (auto* plane : {&out.down, &surface_black, &out.surface_k}) fit(*plane, window);
@@ -283,13 +290,20 @@ const HeatPlanes& HeatFlow::band(std::size_t band, const Plane<float>& sky_view,
         s.air_from_field(band);
     else
         s.air_by_pixel(band);
+    if (s.heat.longwave->daily) {
+        s.take_net(s.out);
+        return s.out;
+    }
     s.come_down(sky_view);
     s.go_up(s.emissivity, s.dry, net_shortwave, s.out);
     return s.out;
 }
 
 void HeatFlow::beside(const Plane<float>& emissivity, const Plane<float>& dry, const Plane<float>& net_shortwave, HeatPlanes& changed) {
-    state_->go_up(emissivity, dry, net_shortwave, changed);
+    if (state_->heat.longwave->daily)
+        state_->take_net(changed);
+    else
+        state_->go_up(emissivity, dry, net_shortwave, changed);
 }
 
 std::uint64_t HeatFlow::infinities() const {

@@ -11,6 +11,7 @@ namespace sunbudget {
 namespace {
 
 constexpr double nan_value = std::numeric_limits<double>::quiet_NaN();
+constexpr double zero_celsius_k = 273.15;
 /// Far below the quantum of stored fluxes (1/16 W m-2).
 constexpr double tolerance_w_m2 = 1.0 / 256;
 
@@ -58,9 +59,25 @@ void PointLongwave::add(Weighted& to, const AirMoment& air, int month, double we
     to.weight += weight;
 }
 
+void PointLongwave::add_daily(Weighted& to, const CivilDate& date, double height_m) const {
+    const auto* day = longwave_.daily->on(date);
+    if (day == nullptr) return;
+    const double lapse_k_m = longwave_.lapse_k_m[static_cast<std::size_t>(date.month - 1)], rise_m = height_m - *longwave_.height_m;
+    OpenLongwave open;
+    open.sky_w_m2 = daily_net_longwave_w_m2(longwave_.daily->method, *day, rise_m, lapse_k_m);
+    open.air_k = (day->min_celsius + day->max_celsius) / 2 + zero_celsius_k - lapse_k_m * rise_m;
+    if (std::isnan(open.sky_w_m2)) return;
+    add_scaled(to.sum, open, 1);
+    to.weight += 1;
+}
+
 /// The mean over the part of a day that is covered; the weight is the covered share.
 PointLongwave::Weighted PointLongwave::of_day(const DayPart& day, double longitude_rad, double height_m) const {
     Weighted mean;
+    if (longwave_.daily) {
+        add_daily(mean, day.date, height_m);
+        return mean;
+    }
     if (longwave_.rows.empty()) {
         add(mean, longwave_.months[static_cast<std::size_t>(day.date.month - 1)], day.date.month, 1, height_m);
         return mean;

@@ -20,6 +20,11 @@ namespace {
 constexpr double no_value = std::numeric_limits<double>::quiet_NaN();
 constexpr std::size_t no_line = 0;
 
+bool is_one_of(Weather quantity, std::initializer_list<Weather> some) { return std::find(some.begin(), some.end(), quantity) != some.end(); }
+bool is_humidity(Weather quantity) {
+    return is_one_of(quantity, {Weather::relative_humidity, Weather::relative_humidity_max, Weather::relative_humidity_min});
+}
+
 /// A column in use.
 struct Column {
     Weather quantity;
@@ -73,6 +78,7 @@ class Reader {
     void take_row(std::size_t line, const WeatherCells& cells);
     [[nodiscard]] double value_of(Column& column, std::size_t line, const WeatherCells& cells);
     void look_at_humidity();
+    void look_at_extremes(const Row& row);
     [[nodiscard]] bool is_missing(std::string_view text) const;
     [[nodiscard]] std::optional<double> number_in(std::string_view text) const;
     void lay_out();
@@ -148,7 +154,22 @@ void Reader::take_row(std::size_t line, const WeatherCells& cells) {
     }
     row.values.reserve(columns_.size());
     for (auto& column : columns_) row.values.push_back(value_of(column, line, cells));
+    look_at_extremes(row);
     rows_.push_back(std::move(row));
+}
+
+/// The highest of a day is not below the lowest.
+void Reader::look_at_extremes(const Row& row) {
+    const auto value = [&](Weather quantity) {
+        for (std::size_t c = 0; c < columns_.size(); ++c)
+            if (columns_[c].quantity == quantity) return row.values[c];
+        return no_value;
+    };
+    for (const auto& [most, least] : {std::pair{Weather::air_temperature_max, Weather::air_temperature_min},
+                                      std::pair{Weather::relative_humidity_max, Weather::relative_humidity_min}})
+        if (value(most) < value(least))
+            problems_.add(row.line, weather_names[static_cast<std::size_t>(most)], "lies below " + std::string(weather_names[static_cast<std::size_t>(least)]),
+                          "look at the columns, or empty the cells");
 }
 
 double Reader::value_of(Column& column, std::size_t line, const WeatherCells& cells) {
@@ -183,7 +204,7 @@ double Reader::value_of(Column& column, std::size_t line, const WeatherCells& ce
 /// A fraction read as per cent is dry beyond any desert all along.
 void Reader::look_at_humidity() {
     for (const auto& column : columns_)
-        if (column.quantity == Weather::relative_humidity && column.unit.name == "%" && column.highest <= 1 && column.highest > 0)
+        if (is_one_of(column.quantity, {Weather::relative_humidity, Weather::relative_humidity_max}) && column.unit.name == "%" && column.highest <= 1 && column.highest > 0)
             problems_.add(no_line, weather_names[static_cast<std::size_t>(column.quantity)],
                           "no value is above " + shortest(column.highest) + " %", "say weather.units: {relative_humidity: \"1\"} if these are fractions");
 }
@@ -315,7 +336,7 @@ void Reader::fill() {
                                           column.unit.name, shortest(span.end - span.begin), value),
                               "look at the column, its unit and weather.interval");
             // A wet or a dry sensor errs a little beyond the scale's ends.
-            values.push_back(column.quantity == Weather::relative_humidity && !std::isnan(value) ? std::clamp(value, 0.0, 1.0) : value);
+            values.push_back(is_humidity(column.quantity) && !std::isnan(value) ? std::clamp(value, 0.0, 1.0) : value);
         }
     }
     problems_.throw_if_any();

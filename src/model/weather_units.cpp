@@ -41,11 +41,15 @@ std::span<const Row> rows_of(Weather quantity) {
         case Weather::diffuse:
         case Weather::longwave_down: return irradiance;
         case Weather::cloud: return cloud_share;
-        case Weather::relative_humidity: return share;
+        case Weather::relative_humidity:
+        case Weather::relative_humidity_max:
+        case Weather::relative_humidity_min: return share;
         case Weather::vapour_pressure:
         case Weather::pressure: return pressure;
         case Weather::wind: return speed;
         case Weather::air_temperature:
+        case Weather::air_temperature_max:
+        case Weather::air_temperature_min:
         case Weather::dew_point:
         case Weather::surface_temperature: break;
     }
@@ -77,10 +81,14 @@ WeatherLimits weather_limits(Weather quantity) {
         case Weather::beam: return {-50, 1500};
         case Weather::diffuse: return {-50, 1200};
         case Weather::cloud: return {0, 1};
-        case Weather::air_temperature: return {180, 335};
+        case Weather::air_temperature:
+        case Weather::air_temperature_max:
+        case Weather::air_temperature_min: return {180, 335};
         case Weather::dew_point: return {170, 315};
         case Weather::surface_temperature: return {170, 380};
-        case Weather::relative_humidity: return {-0.02, 1.1};  // sensors near saturation and in dry air
+        case Weather::relative_humidity:
+        case Weather::relative_humidity_max:
+        case Weather::relative_humidity_min: return {-0.02, 1.1};  // sensors near saturation and in dry air
         case Weather::vapour_pressure: return {0, 80};
         case Weather::pressure: return {300, 1100};
         case Weather::wind: return {0, 110};

@@ -65,6 +65,8 @@ void visit_weather(Weather& weather, Visitor& v) {
     v.value("station", weather.station);
     v.value("station_elevation", weather.station_elevation);
     v.value("air_temperature", weather.air_temperature);
+    v.value("air_temperature_max", weather.air_temperature_max);
+    v.value("air_temperature_min", weather.air_temperature_min);
     v.value("relative_humidity", weather.relative_humidity);
     v.value("dew_point", weather.dew_point);
     v.value("vapour_pressure", weather.vapour_pressure);

@@ -344,7 +344,7 @@ Plan with_defaults(Plan plan) {
         weather.zone.reset();
         weather.years.reset();
         weather.gaps.reset();
-        if (!weather.air_temperature) weather.lapse.reset();
+        if (!weather.air_temperature && !weather.air_temperature_max) weather.lapse.reset();
     }
     // Steps, days and totals belong to a period.
     if (!written.from) plan.time = written;

@@ -319,8 +319,10 @@ Form weather_form() {
     for (const auto* key : {"columns", "units", "flags", "good_flags", "missing", "separator", "decimal", "header", "skip", "comment",
                             "time_form", "stamp", "interval", "zone", "years", "gaps", "station"})
         rules.push_back(needs(key, {"table"}));
-    for (const auto* key : {"air_temperature", "relative_humidity", "dew_point", "vapour_pressure"})
+    for (const auto* key : {"air_temperature", "air_temperature_max", "air_temperature_min", "relative_humidity", "dew_point", "vapour_pressure"})
         rules.push_back(at_most_one({"table", key}));
+    rules.push_back(needs("air_temperature_max", {"air_temperature_min"}));
+    rules.push_back(needs("air_temperature_min", {"air_temperature_max"}));
     rules.push_back(at_most_one({"relative_humidity", "dew_point"}));
     rules.push_back(at_most_one({"relative_humidity", "vapour_pressure"}));
     rules.push_back(at_most_one({"dew_point", "vapour_pressure"}));
@@ -351,9 +353,13 @@ Form weather_form() {
          {"air_temperature",
           field_forms(temperature(), {"degC", "K"}),
           "without a table: one temperature, one per month, or {raster, unit, scale, offset}"},
-         {"relative_humidity", field_forms(number(0, 1), {}), "likewise, from 0 to 1"},
-         {"dew_point", field_forms(temperature(), {"degC", "K"}), "likewise"},
-         {"vapour_pressure", field_forms(quantity(ValueKind::pressure, 0, 100), {"hPa", "kPa", "Pa"}), "likewise"},
+         {"air_temperature_max",
+          {temperature(), list(temperature(), 12, 12)},
+          "the day's highest, for longwave.method fao56 and asce2005 without a table: one, or one per month"},
+         {"air_temperature_min", {temperature(), list(temperature(), 12, 12)}, "the day's lowest, likewise"},
+         {"relative_humidity", field_forms(number(0, 1), {}), "as air_temperature, from 0 to 1"},
+         {"dew_point", field_forms(temperature(), {"degC", "K"}), "as air_temperature"},
+         {"vapour_pressure", field_forms(quantity(ValueKind::pressure, 0, 100), {"hPa", "kPa", "Pa"}), "as air_temperature"},
          {"lapse",
           {quantity(ValueKind::lapse, -50, 50), list(quantity(ValueKind::lapse, -50, 50), 12, 12)},
           "how much colder the air is for each km up; negative in an inversion",
@@ -365,11 +371,12 @@ Form weather_form() {
 Form longwave_form() {
     auto methods = method_names("longwave");
     methods.push_back("measured");
+    for (const auto& name : method_names("longwave_daily")) methods.push_back(name);
     auto laws = method_names("longwave_cloud");
     std::erase(laws, "crawford-duchon1999");  // its number comes from sunlight, not from a share of the sky
     return map({{"method",
                  {choice(methods)},
-                 "the clear sky's heat radiation; default: measured where the table has longwave_down, else " + methods.front()},
+                 "the clear sky's heat radiation; fao56 and asce2005: the net of whole days after those papers; default: measured where the table has longwave_down, else " + methods.front()},
                 {"cloud",
                  {number(0, 1), list(number(0, 1), 12, 12)},
                  "share of the sky; default: the table's cloud, else told from its global (Crawford & Duchon 1999); without a table that of sky.cloud, else none"},

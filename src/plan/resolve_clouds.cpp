@@ -83,17 +83,12 @@ void measure(const Plan& plan, Run& run) {
     tell(run, sky.report);
 }
 
-double overcast_of(const Plan& plan, int month) {
-    constexpr double published = 0.25;  // Kasten & Czeplak 1980
-    return plan.sky.overcast ? (**plan.sky.overcast)[static_cast<std::size_t>(month - 1)] : published;
-}
-
 /// The mean over a band's days.
 double overcast_of(const Plan& plan, const TimePlan& times, std::size_t band) {
-    if (times.instant) return overcast_of(plan, times.zone.local(*times.instant).date.month);
+    if (times.instant) return overcast_in(plan, times.zone.local(*times.instant).date.month);
     double sum = 0, days = 0;
     for (const auto& day : times.periods[band].days) {
-        sum += overcast_of(plan, day.date.month) * day.weight;
+        sum += overcast_in(plan, day.date.month) * day.weight;
         days += day.weight;
     }
     return sum / days;
@@ -132,7 +127,7 @@ void take_mean_cloud(const Plan& plan, const Monthly& clouds, Run& run) {
     for (std::size_t m = 0; m < months.size(); ++m) {
         // At an instant there is one sky, not a mixture of skies.
         months[m] = run.times->instant ? cloud_at_an_hour(clouds[m])
-                                       : cloud_over_a_period(clouds[m], overcast_of(plan, static_cast<int>(m) + 1));
+                                       : cloud_over_a_period(clouds[m], overcast_in(plan, static_cast<int>(m) + 1));
     }
     trust(plan, cloud_uncertainty, run);
     run.methods.push_back(&method("real_sky", run.times->instant ? "kasten-czeplak1980" : "mean-cloud"));
@@ -205,6 +200,11 @@ void take_sunshine(const Plan& plan, Run& run) {
 }
 
 }  // namespace
+
+double overcast_in(const Plan& plan, int month) {
+    constexpr double published = 0.25;  // Kasten & Czeplak 1980
+    return plan.sky.overcast ? (**plan.sky.overcast)[static_cast<std::size_t>(month - 1)] : published;
+}
 
 void resolve_clouds(const Plan& plan, const ResolveOptions& options, Run& run, RunProblems& problems) {
     if (!run.times || !needs_light(plan)) return;

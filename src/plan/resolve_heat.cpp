@@ -49,6 +49,7 @@ class HeatResolver {
         : plan_(plan), options_(options), run_(run), problems_(problems) {}
 
     void resolve() {
+        if (is_daily(plan_)) return daily();
         if (plan_.weather && plan_.weather->wind)
             run_.heat.wind = static_cast<Wind>(**plan_.weather->wind);
         else if (wants_id(LayerId::sri))
@@ -94,6 +95,7 @@ class HeatResolver {
     void surface_raster(const PlanSurfaceRaster& raster, const Place& place);
     void judge_time(const std::optional<UtcSeconds>& taken, const PlanSurfaceRaster& raster);
     void longwave();
+    void daily();
     void air_numbers(const PlanWeather& weather, Longwave& found);
     void air_of_table(Longwave& found);
     void clouds(Longwave& found);
@@ -292,7 +294,7 @@ void HeatResolver::air_of_table(Longwave& found) {
 
 void HeatResolver::find_thin_bands() {
     const auto& longwave = *run_.heat.longwave;
-    if (longwave.rows.empty()) return;
+    if (longwave.rows.empty() && !longwave.daily) return;
     const PointLongwave point(*run_.times, longwave);
     const double longitude_rad = middle_of(run_.grid).longitude_rad;
     std::vector<std::string> names;
@@ -302,9 +304,19 @@ void HeatResolver::find_thin_bands() {
         if (thin) names.push_back(run_.times->instant ? format_utc(*run_.times->instant) : run_.times->periods[band].name);
     }
     if (names.size() == run_.times->bands())
-        throw Error(Cause::input, "the weather table covers too little of every period for longwave: " + joined(names, ", "), {},
-                    "choose a time that the table covers");
+        throw Error(Cause::input, "too little is known of every period for longwave: " + joined(names, ", "), {},
+                    "choose a time that the weather table covers");
     if (!names.empty()) run_.warnings.push_back("longwave: no value where the weather table covers too little: " + joined(names, ", "));
+}
+
+/// Net of whole days: it stands for the sky, the ground's temperature and its emissivity.
+void HeatResolver::daily() {
+    problems_.attempt(plan_.longwave.method->place, [&] {
+        // What was wrong with the weather or the time is said already.
+        if (!wants(&Layer::needs_air) || !run_.times || !plan_.weather || (plan_.weather->table && !run_.weather)) return;
+        run_.heat.longwave = daily_longwave(plan_, run_);
+        find_thin_bands();
+    });
 }
 
 void HeatResolver::longwave() {

@@ -39,6 +39,14 @@ void add_input(Run& run, const std::string& role, const Source& source);
 /// What the files of an image's albedo say of it.
 [[nodiscard]] std::map<std::string, std::string> reflectance_metadata(const ReflectanceSurface& surface);
 
+/// Light under a closed cover in a month, as a share of the clear sky's.
+[[nodiscard]] double overcast_in(const Plan& plan, int month);
+
+/// The plan's longwave is net and of whole days.
+[[nodiscard]] bool is_daily(const Plan& plan);
+/// Such longwave; throws what is wrong with it. The plan has weather, the run its time.
+[[nodiscard]] Longwave daily_longwave(const Plan& plan, Run& run);
+
 /// Light is asked for, if only for a balance.
 [[nodiscard]] bool needs_light(const Plan& plan);
 

@@ -62,6 +62,7 @@ class CrossCheck {
     void named_period(const NamedPeriod& period) const;
     void layers() const;
     void heat_layers() const;
+    void daily_longwave() const;
     void unit() const;
     void directions() const;
     void zones() const;
@@ -109,7 +110,7 @@ void CrossCheck::grid_source() const {
 }
 
 void CrossCheck::weather(const PlanWeather& weather) const {
-    const bool has_numbers = written("weather.air_temperature") || written("weather.relative_humidity") ||
+    const bool has_numbers = written("weather.air_temperature") || written("weather.air_temperature_max") || written("weather.relative_humidity") ||
                              written("weather.dew_point") || written("weather.vapour_pressure") || written("weather.wind");
     if (!weather.table && !written("weather.table") && !has_numbers)
         mistakes_.add(weather.place, "the weather has no table and no numbers",
@@ -179,8 +180,46 @@ void CrossCheck::layers_without(bool Layer::*need, const std::string& what,
                   joined(names, ", ") + (names.size() == 1 ? " needs " : " need ") + what, todo);
 }
 
+/// The net of whole days: no instant, no part of a day, and no other layer of heat.
+void CrossCheck::daily_longwave() const {
+    const auto& name = **plan_.longwave.method;
+    const auto& place = plan_.longwave.method->place;
+    const auto refuse = [&](const char* section, const char* key, const std::string& what, const std::string& todo) {
+        if (written(std::string(section) + "." + key)) mistakes_.add(place_of(section, key), what, todo);
+    };
+    refuse("time", "at", "longwave " + name + " is of whole days", "give time.from and time.to, or another longwave.method");
+    refuse("time", "hours", "longwave " + name + " is of whole days", "leave hours out, or give another longwave.method");
+    const auto* totals = plan_.time.totals ? std::get_if<Totals>(&**plan_.time.totals) : nullptr;
+    if (totals != nullptr && *totals == Totals::hour)
+        mistakes_.add(plan_.time.totals->place, "longwave " + name + " is of whole days", "take totals: day, or another longwave.method");
+    refuse("longwave", "cloud", name + " takes its clouds from the day's sunlight", "give sky.cloud or sky.sunshine, or a table with global");
+    refuse("longwave", "cloud_method", name + " has its own term for clouds", "leave it out");
+    refuse("weather", "air_temperature", name + " takes the day's highest and lowest temperature", "give air_temperature_max and air_temperature_min");
+    for (const auto& id : plan_.outputs.layers) {
+        const auto& wanted = layer(*id);
+        const bool of_heat = wanted.needs_air || wanted.needs_surface_temperature || wanted.needs_emissivity;
+        if (of_heat && *id != LayerId::net_longwave && *id != LayerId::net_radiation)
+            mistakes_.add(id.place, "longwave " + name + " gives the net alone: there is no " + wanted.name + " with it", "leave it out, or give another longwave.method");
+    }
+    const bool humid = written("weather.relative_humidity") || written("weather.dew_point") || written("weather.vapour_pressure");
+    if (!written("weather.table") && !(written("weather.air_temperature_max") && humid))
+        mistakes_.add(place, name + " needs the day's highest and lowest temperature and a humidity",
+                      "add weather with a table, or with air_temperature_max, air_temperature_min and one of dew_point, vapour_pressure, relative_humidity");
+    if (!plan_.weather || !plan_.weather->air_temperature_max || !plan_.weather->air_temperature_min) return;
+    const auto& highest = std::get<Monthly>(plan_.weather->air_temperature_max->value.value);
+    const auto& lowest = std::get<Monthly>(plan_.weather->air_temperature_min->value.value);
+    for (std::size_t month = 0; month < highest.size(); ++month)
+        if (highest[month] < lowest[month])
+            return mistakes_.add(plan_.weather->air_temperature_max->place, "the day's highest temperature lies below its lowest", "exchange the two");
+}
+
 /// What heat radiation asks for. Never a default: a guessed air is a guessed result.
 void CrossCheck::heat_layers() const {
+    const auto daily = method_names("longwave_daily");
+    if (plan_.longwave.method && std::ranges::find(daily, **plan_.longwave.method) != daily.end()) return daily_longwave();
+    if (plan_.weather && plan_.weather->air_temperature_max)
+        mistakes_.add(plan_.weather->air_temperature_max->place, "only longwave.method " + joined(daily, " and ") + " take the day's highest and lowest temperature",
+                      "give air_temperature, or that method");
     const bool table = written("weather.table");
     const bool humid = written("weather.relative_humidity") || written("weather.dew_point") || written("weather.vapour_pressure");
     if (!table && !(written("weather.air_temperature") && humid))

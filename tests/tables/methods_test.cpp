@@ -52,7 +52,7 @@ TEST_CASE("method: an unknown name comes with a suggestion", "[tables][edge]") {
     CHECK(method_names("no-such-family").empty());
     CHECK(method_families() ==
           std::vector<std::string>{"sun_position", "air_mass", "clear_sky", "diffuse_sky", "real_sky", "horizon",
-                                   "albedo", "longwave", "longwave_cloud", "surface_temperature",
+                                   "albedo", "longwave", "longwave_daily", "longwave_cloud", "surface_temperature",
                                    "emissivity", "sri"});
 }
 
@@ -72,6 +72,7 @@ TEST_CASE("methods of heat: rows stand in the order of the physics' enumerations
     CHECK(row("longwave", LongwaveFormula::satterlund1979) == "satterlund1979");
     CHECK(row("longwave", LongwaveFormula::konzelmann1994) == "konzelmann1994");
     CHECK(row("longwave", LongwaveFormula::maykut_church1973) == "maykut-church1973");
+    CHECK(method_names("longwave_daily") == std::vector<std::string>{"fao56", "asce2005"});
     CHECK(method_names("longwave_cloud").size() == 5);
     CHECK(row("longwave_cloud", LongwaveCloud::unsworth_monteith1975) == "unsworth-monteith1975");
     CHECK(row("longwave_cloud", LongwaveCloud::crawford_duchon1999) == "crawford-duchon1999");

@@ -6,6 +6,7 @@
 #include <optional>
 #include <vector>
 
+#include "sunbudget/model/daily_air.hpp"
 #include "sunbudget/model/smooth_field.hpp"
 #include "sunbudget/model/time_plan.hpp"
 #include "sunbudget/physics/longwave.hpp"
@@ -45,13 +46,15 @@ struct Longwave {
     std::optional<Source> humidity;
     HumidityAs humidity_as = HumidityAs::relative;
     std::array<double, 12> humidity_numbers{};  ///< told that way, beside a raster of the temperature alone
+    // In the place of all that: the net of whole days.
+    std::optional<DailyNet> daily;
 
     [[nodiscard]] bool by_pixel() const { return temperature_k || humidity; }
 };
 
 /// A band's longwave over level open ground: of an instant, or means over a period.
 struct OpenLongwave {
-    double sky_w_m2 = 0;
+    double sky_w_m2 = 0;            ///< under a daily method the net longwave, and the others but air_k are 0
     double air_black_w_m2 = 0;      ///< sigma T^4 of the air
     double surface_black_w_m2 = 0;  ///< of the ground, where the run knows its temperature without looking at pixels
     double air_k = 0;
@@ -85,6 +88,7 @@ class PointLongwave {
     };
     [[nodiscard]] Weighted covered(std::size_t band, double longitude_rad, double height_m) const;
     void add(Weighted& to, const AirMoment& air, int month, double weight, double height_m) const;
+    void add_daily(Weighted& to, const CivilDate& date, double height_m) const;
     [[nodiscard]] Weighted of_day(const DayPart& day, double longitude_rad, double height_m) const;
     template <class Visit>
     void each_month(std::size_t band, Visit&& visit) const;

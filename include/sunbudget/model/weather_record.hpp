@@ -27,12 +27,17 @@ enum class Weather {
     wind,
     longwave_down,
     surface_temperature,
+    air_temperature_max,    ///< of the row's interval
+    air_temperature_min,
+    relative_humidity_max,  ///< [0, 1]
+    relative_humidity_min,
 };
-inline constexpr std::size_t weather_quantities = 12;
+inline constexpr std::size_t weather_quantities = 16;
 /// As a plan names them, in the order of the enumeration.
 inline constexpr std::array<const char*, weather_quantities> weather_names{
     "global",    "beam",            "diffuse",  "cloud", "air_temperature", "relative_humidity",
-    "dew_point", "vapour_pressure", "pressure", "wind",  "longwave_down",   "surface_temperature"};
+    "dew_point", "vapour_pressure", "pressure", "wind",  "longwave_down",   "surface_temperature",
+    "air_temperature_max", "air_temperature_min", "relative_humidity_max", "relative_humidity_min"};
 /// The columns that make up a time: either `time`, or a day and an hour in parts.
 inline constexpr std::array<const char*, 7> weather_time_names{"time", "year", "month", "day", "day_of_year", "hour", "minute"};
 

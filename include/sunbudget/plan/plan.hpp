@@ -270,6 +270,8 @@ struct PlanWeather {
     Maybe<PlanLength> station_elevation;
     // Without a table.
     Maybe<PlanTemperatures> air_temperature;
+    Maybe<PlanTemperatures> air_temperature_max;  ///< of a day, for daily methods: numbers alone
+    Maybe<PlanTemperatures> air_temperature_min;
     Maybe<PlanShares> relative_humidity;
     Maybe<PlanTemperatures> dew_point;
     Maybe<PlanPressures> vapour_pressure;
@@ -282,6 +284,7 @@ struct PlanWeather {
                a.time_form == b.time_form && a.stamp == b.stamp && a.interval_s == b.interval_s && a.zone == b.zone &&
                a.years == b.years && a.gaps == b.gaps && a.station == b.station &&
                a.station_elevation == b.station_elevation && a.air_temperature == b.air_temperature &&
+               a.air_temperature_max == b.air_temperature_max && a.air_temperature_min == b.air_temperature_min &&
                a.relative_humidity == b.relative_humidity && a.dew_point == b.dew_point &&
                a.vapour_pressure == b.vapour_pressure && a.lapse == b.lapse && a.wind == b.wind;
     }
