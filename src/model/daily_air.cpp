@@ -49,15 +49,21 @@ struct Mean {
 
 class Builder {
   public:
-    Builder(const WeatherRecord& record, const Station& station, const TimePlan& times, const std::function<double(const CivilDate&)>& otherwise)
-        : record_(record), station_(station), times_(times), otherwise_(otherwise), track_(times.earliest(), times.latest()),
+    Builder(const WeatherRecord& record, const Station& station, const TimePlan& times,
+            const std::function<double(const CivilDate&)>& otherwise)
+        : record_(record),
+          station_(station),
+          times_(times),
+          otherwise_(otherwise),
+          track_(times.earliest(), times.latest()),
           up_(up_direction(station.latitude_rad, station.longitude_rad)) {}
 
     DailyRecord built() {
         choose_columns();
         for (const auto& date : dates_of(times_)) {
             const auto day = of_day(date);
-            const bool whole = !std::isnan(day.min_celsius + day.max_celsius + day.vapour_kpa + day.relative_sunlight);
+            const bool whole = !std::isnan(day.min_celsius + day.max_celsius + day.vapour_kpa +
+                                           day.relative_sunlight);
             if (whole)
                 found_.days.push_back(day);
             else
@@ -68,17 +74,24 @@ class Builder {
 
   private:
     [[nodiscard]] bool has(Weather quantity) const { return record_.has(quantity); }
-    [[nodiscard]] double value(Weather quantity, std::size_t row) const { return record_.values(quantity)[row]; }
+    [[nodiscard]] double value(Weather quantity, std::size_t row) const {
+        return record_.values(quantity)[row];
+    }
     void use(Weather quantity) { found_.used[static_cast<std::size_t>(quantity)] = true; }
-    [[nodiscard]] bool short_rows() const { return !record_.days && record_.interval_s <= longest_row_s; }
+    [[nodiscard]] bool short_rows() const {
+        return !record_.days && record_.interval_s <= longest_row_s;
+    }
 
     void choose_columns();
     void choose_humidity();
     [[nodiscard]] DailyAir of_day(const CivilDate& date) const;
     [[nodiscard]] double vapour_kpa(std::size_t first, std::size_t last, const DailyAir& day) const;
-    [[nodiscard]] double relative_sunlight(std::size_t first, std::size_t last, const TimeSpan& span, const CivilDate& date) const;
+    [[nodiscard]] double relative_sunlight(std::size_t first, std::size_t last,
+                                           const TimeSpan& span, const CivilDate& date) const;
     [[nodiscard]] double measured_share(const TimeSpan& span) const;
-    [[nodiscard]] double seconds(std::size_t row) const { return record_.intervals[row].end - record_.intervals[row].begin; }
+    [[nodiscard]] double seconds(std::size_t row) const {
+        return record_.intervals[row].end - record_.intervals[row].begin;
+    }
     [[nodiscard]] Mean mean_of(Weather quantity, std::size_t first, std::size_t last) const {
         Mean mean;
         for (auto row = first; row < last; ++row) mean.add(value(quantity, row), seconds(row));
@@ -103,9 +116,13 @@ void Builder::choose_columns() {
         highest_ = Weather::air_temperature_max;
         lowest_ = Weather::air_temperature_min;
     } else if (!has(Weather::air_temperature)) {
-        throw Error(Cause::input, "the weather table has neither air_temperature nor both air_temperature_max and air_temperature_min", {}, "name their columns in weather.columns");
+        throw Error(Cause::input,
+                    "the weather table has neither air_temperature nor both air_temperature_max "
+                    "and air_temperature_min",
+                    {}, "name their columns in weather.columns");
     } else if (!short_rows()) {
-        throw Error(Cause::input, "rows of more than 3 h do not show " + needs, {}, "name columns air_temperature_max and air_temperature_min in weather.columns");
+        throw Error(Cause::input, "rows of more than 3 h do not show " + needs, {},
+                    "name columns air_temperature_max and air_temperature_min in weather.columns");
     }
     use(highest_);
     use(lowest_);
@@ -114,8 +131,10 @@ void Builder::choose_columns() {
         use(Weather::global);
         found_.sunlight_from = "the table's global";
     } else if (has(Weather::beam) || has(Weather::diffuse)) {
-        throw Error(Cause::input, "the weather table has beam or diffuse light and no global, of which the method takes its clouds", {},
-                    "name a column global, or leave the others out of weather.columns");
+        throw Error(Cause::input,
+                    "the weather table has beam or diffuse light and no global, of which the "
+                    "method takes its clouds",
+                    {}, "name a column global, or leave the others out of weather.columns");
     } else if (has(Weather::cloud)) {
         use(Weather::cloud);
         found_.sunlight_from = "the table's mean cloud, 1 - 0.75 N";
@@ -147,24 +166,33 @@ void Builder::choose_humidity() {
         use(Weather::relative_humidity);
         found_.humidity_from = "mean relative humidity";
     } else {
-        throw Error(Cause::input, "the weather table has no humidity (dew_point, relative_humidity_max and relative_humidity_min, vapour_pressure or relative_humidity)", {},
-                    "name its column in weather.columns");
+        throw Error(Cause::input,
+                    "the weather table has no humidity (dew_point, relative_humidity_max and "
+                    "relative_humidity_min, vapour_pressure or relative_humidity)",
+                    {}, "name its column in weather.columns");
     }
 }
 
 double Builder::vapour_kpa(std::size_t first, std::size_t last, const DailyAir& day) const {
     const double needed_s = air_day_needs * seconds_per_day;
-    const auto if_enough = [&](const Mean& mean, double factor) { return mean.seconds < needed_s ? nan_value : mean.value() * factor; };
+    const auto if_enough = [&](const Mean& mean, double factor) {
+        return mean.seconds < needed_s ? nan_value : mean.value() * factor;
+    };
     switch (humidity_) {
         case Humidity::dew_point: {
             Mean mean;
-            for (auto row = first; row < last; ++row) mean.add(fao56_saturation_kpa(value(Weather::dew_point, row) - zero_celsius_k), seconds(row));
+            for (auto row = first; row < last; ++row)
+                mean.add(fao56_saturation_kpa(value(Weather::dew_point, row) - zero_celsius_k),
+                         seconds(row));
             return if_enough(mean, 1);
         }
-        case Humidity::vapour_pressure: return if_enough(mean_of(Weather::vapour_pressure, first, last), 1 / hpa_per_kpa);
+        case Humidity::vapour_pressure:
+            return if_enough(mean_of(Weather::vapour_pressure, first, last), 1 / hpa_per_kpa);
         case Humidity::relative:
-            return if_enough(mean_of(Weather::relative_humidity, first, last), mean_saturation_kpa(day.min_celsius, day.max_celsius));
-        case Humidity::extremes: break;
+            return if_enough(mean_of(Weather::relative_humidity, first, last),
+                             mean_saturation_kpa(day.min_celsius, day.max_celsius));
+        case Humidity::extremes:
+            break;
     }
     double most = -1, least = 2, known_s = 0;
     for (auto row = first; row < last; ++row) {
@@ -175,7 +203,8 @@ double Builder::vapour_kpa(std::size_t first, std::size_t last, const DailyAir& 
         known_s += seconds(row);
     }
     if (known_s < needed_s) return nan_value;
-    return fao56_vapour_pressure_kpa(day.min_celsius, day.max_celsius, most * percent, least * percent);
+    return fao56_vapour_pressure_kpa(day.min_celsius, day.max_celsius, most * percent,
+                                     least * percent);
 }
 
 /// The share of a day's light that falls on rows with a global, by the height of the sun alone.
@@ -190,31 +219,40 @@ double Builder::measured_share(const TimeSpan& span) const {
     return measured / all;
 }
 
-double Builder::relative_sunlight(std::size_t first, std::size_t last, const TimeSpan& span, const CivilDate& date) const {
+double Builder::relative_sunlight(std::size_t first, std::size_t last, const TimeSpan& span,
+                                  const CivilDate& date) const {
     if (has(Weather::global)) {
         const double share = measured_share(span);
         if (!(share >= air_day_needs)) return nan_value;
         Mean mean;
         for (auto row = first; row < last; ++row) {
             const double global = value(Weather::global, row);
-            mean.add(global < 0 ? 0 : global, seconds(row));  // sensors show a little below 0 at night
+            mean.add(global < 0 ? 0 : global,
+                     seconds(row));  // sensors show a little below 0 at night
         }
-        return mean.sum / share / joules_per_mj / daily_clear_mj_m2(date, station_.latitude_rad, station_.height_m);
+        return mean.sum / share / joules_per_mj /
+               daily_clear_mj_m2(date, station_.latitude_rad, station_.height_m);
     }
     if (!has(Weather::cloud)) return otherwise_(date);
     const auto mean = mean_of(Weather::cloud, first, last);
-    return mean.seconds < air_day_needs * seconds_per_day ? nan_value : 1 - (1 - overcast) * mean.value();
+    return mean.seconds < air_day_needs * seconds_per_day ? nan_value
+                                                          : 1 - (1 - overcast) * mean.value();
 }
 
 /// NaN in what is not known.
 DailyAir Builder::of_day(const CivilDate& date) const {
     const auto utc = span_of(DayPart{date}, times_.zone, station_.longitude_rad);
     const TimeSpan span{utc.begin, utc.end};
-    const auto before = [](const TimeSpan& row, UtcSeconds t) { return (row.begin + row.end) / 2 < t; };
+    const auto before = [](const TimeSpan& row, UtcSeconds t) {
+        return (row.begin + row.end) / 2 < t;
+    };
     const auto& rows = record_.intervals;
-    const auto first = static_cast<std::size_t>(std::lower_bound(rows.begin(), rows.end(), span.begin, before) - rows.begin());
-    const auto last = static_cast<std::size_t>(std::lower_bound(rows.begin(), rows.end(), span.end, before) - rows.begin());
-    DailyAir day{date, std::numeric_limits<double>::infinity(), -std::numeric_limits<double>::infinity(), nan_value, nan_value};
+    const auto first = static_cast<std::size_t>(
+        std::lower_bound(rows.begin(), rows.end(), span.begin, before) - rows.begin());
+    const auto last = static_cast<std::size_t>(
+        std::lower_bound(rows.begin(), rows.end(), span.end, before) - rows.begin());
+    DailyAir day{date, std::numeric_limits<double>::infinity(),
+                 -std::numeric_limits<double>::infinity(), nan_value, nan_value};
     double known_s = 0;
     for (auto row = first; row < last; ++row) {
         const double high = value(highest_, row), low = value(lowest_, row);
@@ -232,21 +270,29 @@ DailyAir Builder::of_day(const CivilDate& date) const {
 }  // namespace
 
 const DailyAir* DailyNet::on(const CivilDate& date) const {
-    const auto found = std::lower_bound(days.begin(), days.end(), date, [](const DailyAir& day, const CivilDate& d) { return day.date < d; });
+    const auto found =
+        std::lower_bound(days.begin(), days.end(), date,
+                         [](const DailyAir& day, const CivilDate& d) { return day.date < d; });
     return found != days.end() && found->date == date ? &*found : nullptr;
 }
 
-double daily_net_longwave_w_m2(DailyMethod method, const DailyAir& day, double rise_m, double lapse_k_m) {
+double daily_net_longwave_w_m2(DailyMethod method, const DailyAir& day, double rise_m,
+                               double lapse_k_m) {
     const double cooler_k = lapse_k_m * rise_m;
     const double low = day.min_celsius - cooler_k, high = day.max_celsius - cooler_k;
     // At the station itself the vapour stays as it was, to the bit.
-    const double share = cooler_k == 0 ? 1 : mean_saturation_kpa(low, high) / mean_saturation_kpa(day.min_celsius, day.max_celsius);
-    const auto up = method == DailyMethod::fao56 ? fao56_net_longwave_mj_m2_day : asce2005_net_longwave_mj_m2_day;
-    return -up(low, high, day.vapour_kpa * share, day.relative_sunlight) * joules_per_mj / seconds_per_day;
+    const double share = cooler_k == 0 ? 1
+                                       : mean_saturation_kpa(low, high) /
+                                             mean_saturation_kpa(day.min_celsius, day.max_celsius);
+    const auto up = method == DailyMethod::fao56 ? fao56_net_longwave_mj_m2_day
+                                                 : asce2005_net_longwave_mj_m2_day;
+    return -up(low, high, day.vapour_kpa * share, day.relative_sunlight) * joules_per_mj /
+           seconds_per_day;
 }
 
 double daily_clear_mj_m2(const CivilDate& date, double latitude_rad, double height_m) {
-    return fao56_clear_share(height_m) * fao56_extraterrestrial_mj_m2_day(day_of_year(date), latitude_rad);
+    return fao56_clear_share(height_m) *
+           fao56_extraterrestrial_mj_m2_day(day_of_year(date), latitude_rad);
 }
 
 std::vector<CivilDate> dates_of(const TimePlan& times) {
@@ -256,7 +302,8 @@ std::vector<CivilDate> dates_of(const TimePlan& times) {
     return {dates.begin(), dates.end()};
 }
 
-DailyRecord daily_air(const WeatherRecord& record, const Station& station, const TimePlan& times, const std::function<double(const CivilDate&)>& otherwise) {
+DailyRecord daily_air(const WeatherRecord& record, const Station& station, const TimePlan& times,
+                      const std::function<double(const CivilDate&)>& otherwise) {
     return Builder(record, station, times, otherwise).built();
 }
 

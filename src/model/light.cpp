@@ -153,7 +153,11 @@ std::vector<SunStep> PointLight::path(std::size_t band, double latitude_rad, dou
     std::vector<SunStep> path;
     const LocalFrame frame(latitude_rad, longitude_rad);
     const double pressure = pressure_ratio(height_m);
-    const auto apparent_at = [&](UtcSeconds utc) { return apparent_sine(frame.to(work_->track.at(utc))[2], pressure); };
+    const auto pressure_at = [&](UtcSeconds utc) {
+        if (!work_->sky.pressure) return pressure;
+        return pressure * work_->sky.pressure_factor(utc, work_->times.zone.local(utc, longitude_rad).date.month);
+    };
+    const auto apparent_at = [&](UtcSeconds utc) { return apparent_sine(frame.to(work_->track.at(utc))[2], pressure_at(utc)); };
     UtcSeconds last_end = 0;
     double last_sine = 0;
     work_->visit(band, 0, work_->sky, latitude_rad, longitude_rad, height_m, [&](const LitMoment& m) {

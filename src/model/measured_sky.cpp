@@ -49,6 +49,7 @@ class Builder {
           track_(times.earliest() - 2 * seconds_per_day, times.latest() + 2 * seconds_per_day), pressure_(pressure_ratio(station.height_m)) {
         clean_[SkyParameter::turbidity].fill(clean_turbidity);
         air_[SkyParameter::turbidity].fill(air_alone);
+        clean_.pressure = air_.pressure = clear.pressure;
         clear_.diffuse = DiffuseModel::liu_jordan1963;  // the parts are not asked for
     }
 

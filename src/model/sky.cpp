@@ -174,6 +174,7 @@ bool waits_for_ground(const Sky& sky) {
 SkyMoment sky_moment(const Sky& sky, const SkyInstant& when) {
     SkyInstant at = when;
     at.extraterrestrial_normal_w_m2 = outside_the_air(sky.model, when.extraterrestrial_normal_w_m2);
+    at.pressure_ratio *= sky.pressure_factor(at.utc, at.month);
     const auto clear = clear_moment(sky, at);
     if (!sky.measured && !sky.mean_cloud) return clear;
     const double direct_w_m2 = clear.beam_normal_w_m2 * std::max(0.0, std::sin(at.elevation_rad));

@@ -143,6 +143,11 @@ void balanced_temperature(std::span<const float> absorbed_w_m2, std::span<const 
                 longwave_down_w_m2.data(), air_k.data(), exchange, temperature_k.data());
 }
 
+Wind wind_case(double wind_m_s) noexcept {
+    if (wind_m_s < 2) return Wind::low;
+    return wind_m_s < 6 ? Wind::medium : Wind::high;
+}
+
 double heat_exchange_w_m2_k(Wind wind) noexcept {
     return exchange_w_m2_k[static_cast<std::size_t>(wind)];
 }

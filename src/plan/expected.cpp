@@ -21,6 +21,7 @@ std::string range_of(const Form& form) {
     if (form.kind == ValueKind::temperature || form.kind == ValueKind::difference) unit = " K";
     if (form.kind == ValueKind::pressure) unit = " hPa";
     if (form.kind == ValueKind::lapse) unit = " K/km";
+    if (form.kind == ValueKind::speed) unit = " m/s";
     if (form.kind == ValueKind::duration) {
         unit = " min";
         per_unit = 60;
@@ -78,6 +79,8 @@ std::string expected(const Form& form) {
             return "a pressure (14 hPa, 1.4 kPa)" + range_of(form);
         case ValueKind::lapse:
             return "a lapse (6.5 K/km)" + range_of(form);
+        case ValueKind::speed:
+            return "a speed (3.4 m/s, 12 km/h, 7 kn)" + range_of(form);
         case ValueKind::date:
             return "a date (2025-06-21)";
         case ValueKind::instant:

@@ -72,6 +72,8 @@ void visit_weather(Weather& weather, Visitor& v) {
     v.value("vapour_pressure", weather.vapour_pressure);
     v.value("lapse", weather.lapse);
     v.value("wind", weather.wind);
+    v.value("pressure", weather.pressure);
+    v.value("pressure_at", weather.pressure_at);
 }
 
 template <class Change, class Visitor>

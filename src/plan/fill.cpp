@@ -162,6 +162,12 @@ class Typed {
     void get(const Node& node, PlanTemperatures& value) const { field(node, ValueKind::temperature, value.value); }
     void get(const Node& node, PlanPressures& value) const { field(node, ValueKind::pressure, value.value); }
     void get(const Node& node, PlanShares& value) const { field(node, ValueKind::number, value.value); }
+    static void get(const Node& node, PlanWind& value) {
+        if (node.shape == Node::Shape::scalar && std::ranges::find(wind_names, node.text) != wind_names.end())
+            get(node, value.value.emplace<WindCase>());
+        else
+            value.value = months(node, ValueKind::speed);
+    }
     static void get(const Node& node, PlanLapse& value) { value.k_km = months(node, ValueKind::lapse); }
     void get(const Node& node, PlanEmissivity& value) const {
         if (node.shape == Node::Shape::scalar) return get(node, value.value.emplace<double>());

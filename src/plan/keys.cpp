@@ -364,7 +364,13 @@ Form weather_form() {
           {quantity(ValueKind::lapse, -50, 50), list(quantity(ValueKind::lapse, -50, 50), 12, 12)},
           "how much colder the air is for each km up; negative in an inversion",
           "6.5 K/km"},
-         {"wind", {choice(wind_names)}, "below 2, 2 to 6, 6 to 10 m/s: for a balanced surface temperature and the solar reflectance index"}},
+         {"wind",
+          {choice(wind_names), quantity(ValueKind::speed, 0, 110), list(quantity(ValueKind::speed, 0, 110), 12, 12)},
+          "below 2, 2 to 6, 6 to 10 m/s, or a speed: for a balanced surface temperature and the solar reflectance index; default: the table's wind at the instant, else medium"},
+         {"pressure",
+          {quantity(ValueKind::pressure, 300, 1100), list(quantity(ValueKind::pressure, 300, 1100), 12, 12)},
+          "of the air, for the clear sky and for refraction: one, or one per month; default: the table's column, else the standard atmosphere's"},
+         {"pressure_at", {choice(pressure_at_names)}, "where the pressure holds: at the station, or brought down to the sea; default: station"}},
         std::move(rules));
 }
 

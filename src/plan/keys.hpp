@@ -24,6 +24,7 @@ enum class ValueKind {
     difference,   ///< of two temperatures: "4 K"
     pressure,     ///< "14 hPa", "1.4 kPa"
     lapse,        ///< "6.5 K/km"
+    speed,        ///< "3.4 m/s", "12 km/h", "7 kn"
     date,
     instant,
     hours,  ///< "12-17", "6:30-18:30"
@@ -48,7 +49,7 @@ struct Form {
     ValueKind kind = ValueKind::text;
     std::vector<std::string> choices{};  ///< of a choice; of an integer that has but a few
     /// Bounds of a number, an integer, a length in m, a duration in s, a temperature or a difference in K, a
-    /// pressure in hPa, a lapse in K/km; the count of a list.
+    /// pressure in hPa, a lapse in K/km, a speed in m/s; the count of a list.
     std::optional<double> min{};
     std::optional<double> max{};
     bool above_min = false;     ///< `min` itself is not allowed

@@ -32,6 +32,7 @@ inline constexpr std::array<std::string_view, 1> surface_product_names{"landsat-
 inline constexpr std::array<std::string_view, 2> raster_covers_names{"instant", "period-mean"};
 inline constexpr std::array<std::string_view, 1> heat_source_names{"balance"};
 inline constexpr std::array<std::string_view, 3> wind_names{"low", "medium", "high"};
+inline constexpr std::array<std::string_view, 2> pressure_at_names{"station", "sea-level"};
 
 constexpr const auto& names_for(LikeInput) {
     return like_names;
@@ -95,6 +96,9 @@ constexpr const auto& names_for(HeatSource) {
 }
 constexpr const auto& names_for(WindCase) {
     return wind_names;
+}
+constexpr const auto& names_for(PressureAt) {
+    return pressure_at_names;
 }
 
 }  // namespace sunbudget

@@ -71,8 +71,10 @@ class Resolver {
         resolve_sky(plan_, options_, run_, problems_);
         resolve_time(plan_, run_, problems_);
         resolve_weather(plan_, options_, run_, problems_);
+        resolve_pressure(plan_, run_, problems_);
         resolve_heat(plan_, options_, run_, problems_);
         resolve_clouds(plan_, options_, run_, problems_);
+        tell_unused_columns(run_);
         problems_.throw_if_any();
         resolve_layers(plan_, run_, problems_);
         problems_.throw_if_any();

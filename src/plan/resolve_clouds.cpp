@@ -77,6 +77,8 @@ void measure(const Plan& plan, Run& run) {
     run.light.measured = sky.report;
     run.light.thin = sky.thin;
     const bool by_cloud = sky.report.from == "cloud";
+    for (const auto quantity : {Weather::global, Weather::beam, Weather::diffuse, Weather::cloud})
+        if (run.weather->record.has(quantity) && by_cloud == (quantity == Weather::cloud)) run.use(quantity);
     trust(plan, by_cloud ? cloud_uncertainty : measured_uncertainty, run);
     run.assumptions.push_back("weather.table: the light of the run is the station's (" + sky.report.from + "), taken to each pixel's height, horizon and slope");
     run.methods.push_back(&method("real_sky", by_cloud ? "kasten-czeplak1980" : "measured"));

@@ -50,12 +50,10 @@ class HeatResolver {
 
     void resolve() {
         if (is_daily(plan_)) return daily();
-        if (plan_.weather && plan_.weather->wind)
-            run_.heat.wind = static_cast<Wind>(**plan_.weather->wind);
-        else if (wants_id(LayerId::sri))
-            run_.assumptions.emplace_back("weather.wind: medium, 2 to 6 m/s");
-        if (wants(&Layer::needs_emissivity) || (wants_id(LayerId::surface_temperature) && is_balanced())) emissivity();
         if (wants(&Layer::needs_surface_temperature)) surface();
+        // A balance sends out heat radiation whether or not a layer of it is written.
+        if (wants(&Layer::needs_emissivity) || run_.heat.surface == SurfaceFrom::balance) emissivity();
+        if (wants_id(LayerId::sri) || run_.heat.surface == SurfaceFrom::balance) wind();
         const bool by_air = run_.heat.surface == SurfaceFrom::air || run_.heat.surface == SurfaceFrom::balance;
         if (wants(&Layer::needs_air) || (wants(&Layer::needs_surface_temperature) && by_air)) longwave();
         if (wants_id(LayerId::sri)) run_.methods.push_back(&method("sri", "astm-e1980"));
@@ -67,9 +65,6 @@ class HeatResolver {
     }
     [[nodiscard]] bool wants_id(LayerId wanted) const {
         return std::ranges::any_of(plan_.outputs.layers, [&](const auto& id) { return *id == wanted; });
-    }
-    [[nodiscard]] bool is_balanced() const {
-        return plan_.surface_temperature && std::holds_alternative<HeatSource>(plan_.surface_temperature->value.value);
     }
     [[nodiscard]] Source opened(const std::string& role, const PlanRaster& raster, std::optional<Scaling> scaling,
                                 std::optional<double> nodata = {}) {
@@ -96,6 +91,10 @@ class HeatResolver {
     void judge_time(const std::optional<UtcSeconds>& taken, const PlanSurfaceRaster& raster);
     void longwave();
     void daily();
+    void wind() {
+        problems_.attempt(plan_.weather && plan_.weather->wind ? plan_.weather->wind->place : Place{}, [&] { run_.heat.wind = resolved_wind(plan_, run_); });
+    }
+    void use_columns(const AirRecord& air, const AirWants& wants);
     void air_numbers(const PlanWeather& weather, Longwave& found);
     void air_of_table(Longwave& found);
     void clouds(Longwave& found);
@@ -202,7 +201,6 @@ void HeatResolver::surface() {
     } else if (std::holds_alternative<HeatSource>(value)) {
         run_.heat.surface = SurfaceFrom::balance;
         run_.methods.push_back(&method("surface_temperature", "balance"));
-        if (!plan_.weather || !plan_.weather->wind) run_.assumptions.emplace_back("weather.wind: medium, 2 to 6 m/s, for the balanced temperature");
     } else {
         run_.heat.surface = SurfaceFrom::raster;
         surface_raster(std::get<PlanSurfaceRaster>(value), plan_.surface_temperature->place);
@@ -258,6 +256,31 @@ void HeatResolver::air_numbers(const PlanWeather& weather, Longwave& found) {
         run_.assumptions.emplace_back("weather.station_elevation: none, the air's numbers hold at every height");
 }
 
+/// Which columns the longwave is made from: a humidity stands in where one before it has no value, and the formula
+/// with its clouds where the measured longwave has none.
+void HeatResolver::use_columns(const AirRecord& air, const AirWants& wants) {
+    const auto& record = run_.weather->record;
+    const auto use = [&](Weather quantity) {
+        if (record.has(quantity)) run_.use(quantity);
+    };
+    const auto empty = [&](Weather quantity, std::size_t row) { return !record.has(quantity) || std::isnan(record.values(quantity)[row]); };
+    use(Weather::air_temperature);
+    for (std::size_t row = 0; row < record.intervals.size(); ++row)
+        for (const auto humidity : {Weather::vapour_pressure, Weather::dew_point, Weather::relative_humidity})
+            if (!empty(humidity, row)) {
+                use(humidity);
+                break;
+            }
+    if (wants.surface) use(Weather::surface_temperature);
+    const bool measured = air.cloud_from == "longwave_down";
+    if (measured) use(Weather::longwave_down);
+    if (!wants.cloud || (measured && record.missing(Weather::longwave_down) == 0)) return;
+    if (record.has(Weather::cloud)) return use(Weather::cloud);
+    if (!record.has(Weather::global)) return;
+    use(Weather::global);
+    if (!plan_.weather->pressure) use(Weather::pressure);  // of the clear sky it is held against
+}
+
 void HeatResolver::air_of_table(Longwave& found) {
     const auto& weather = *run_.weather;
     found.height_m = weather.station.height_m;
@@ -274,6 +297,7 @@ void HeatResolver::air_of_table(Longwave& found) {
     if (needs_air_itself && !weather.record.has(Weather::air_temperature))
         throw Error(Cause::input, "the weather table has no air_temperature", {}, "name its column in weather.columns");
     auto air = air_record(weather.record, weather.station, run_.sky, wants);
+    use_columns(air, wants);
     found.rows = std::move(air.rows);
     if (found.rows.empty()) throw Error(Cause::input, "no row of the weather table has all that longwave needs: temperature, humidity and what else the plan takes from it");
     if (air.cloud_from.empty() && wants.cloud) run_.assumptions.emplace_back("longwave.cloud: the table tells no cloud, the sky counts as clear");

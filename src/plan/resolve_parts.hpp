@@ -59,6 +59,12 @@ void resolve_sky(const Plan& plan, const ResolveOptions& options, Run& run, RunP
 void resolve_time(const Plan& plan, Run& run, RunProblems& problems);
 /// After the time, which a typical year is laid over.
 void resolve_weather(const Plan& plan, const ResolveOptions& options, Run& run, RunProblems& problems);
+/// The pressure of the sky, from the plan or the table. After the weather.
+void resolve_pressure(const Plan& plan, Run& run, RunProblems& problems);
+/// Says which of a table's columns the run is not made from. After all that takes some.
+void tell_unused_columns(Run& run);
+/// The wind at the ground, and where it is from.
+[[nodiscard]] Wind resolved_wind(const Plan& plan, Run& run);
 /// Last of the sky: what the table or the plan's clouds make of it.
 void resolve_clouds(const Plan& plan, const ResolveOptions& options, Run& run, RunProblems& problems);
 /// After surface, sky, time and weather.

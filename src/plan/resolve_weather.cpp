@@ -1,6 +1,5 @@
 #include <fmt/format.h>
 
-#include <algorithm>
 #include <fstream>
 #include <system_error>
 
@@ -55,16 +54,6 @@ std::vector<std::string> notes_of(const RunWeather& weather) {
         if (const auto missing = record.missing(static_cast<Weather>(q)); missing > 0)
             notes.push_back(fmt::format("{}: {} rows without a value", weather_names[q], missing));
     return notes;
-}
-
-/// Columns that were read and that no layer is made from: said, so that nobody thinks they count.
-std::string unused_columns(const Plan& plan, const WeatherRecord& record) {
-    if (std::ranges::any_of(plan.outputs.layers, [](const auto& id) { return layer(*id).needs_air; })) return {};
-    std::vector<std::string> names;
-    for (auto q = static_cast<std::size_t>(Weather::air_temperature); q < weather_quantities; ++q)
-        if (record.has(static_cast<Weather>(q))) names.emplace_back(weather_names[q]);
-    if (names.empty()) return {};
-    return "weather.table: " + joined(names, ", ") + (names.size() == 1 ? " is" : " are") + " checked, but no layer of this run is made from " + (names.size() == 1 ? "it" : "them");
 }
 
 }  // namespace
@@ -123,7 +112,6 @@ void resolve_weather(const Plan& plan, const ResolveOptions& options, Run& run, 
             throw Error(Cause::input, "no row of the table counts", format.file, "look at weather.years");
         if (weather.stamp->place.is_default && !found.record.days)
             run.assumptions.emplace_back("weather.stamp: a row's time is the start of its interval");
-        if (auto unused = unused_columns(plan, found.record); !unused.empty()) run.assumptions.push_back(std::move(unused));
         run.inputs.push_back({"weather.table", file.filename().string(), input_digest(file), notes_of(found), 1});
         run.weather = std::make_shared<const RunWeather>(std::move(found));
     });

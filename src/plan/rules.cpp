@@ -111,10 +111,12 @@ void CrossCheck::grid_source() const {
 
 void CrossCheck::weather(const PlanWeather& weather) const {
     const bool has_numbers = written("weather.air_temperature") || written("weather.air_temperature_max") || written("weather.relative_humidity") ||
-                             written("weather.dew_point") || written("weather.vapour_pressure") || written("weather.wind");
+                             written("weather.dew_point") || written("weather.vapour_pressure") || written("weather.wind") || written("weather.pressure");
     if (!weather.table && !written("weather.table") && !has_numbers)
         mistakes_.add(weather.place, "the weather has no table and no numbers",
                       "add table: FILE, or air_temperature and a humidity, or remove weather");
+    if (weather.pressure_at && !written("weather.table") && !written("weather.pressure"))
+        mistakes_.add(weather.pressure_at->place, "there is no pressure", "give pressure, or a table with a column of it");
     if (weather.station && std::abs((**weather.station)[0]) > 90)
         mistakes_.add(weather.station->place, "no place has the latitude " + shortest((**weather.station)[0]),
                       "write [latitude, longitude], such as [52.5, 13.4]");

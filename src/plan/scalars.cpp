@@ -15,6 +15,7 @@ std::span<const Unit> units_of(ValueKind kind) {
     static constexpr std::array differences{Unit{"K", 1}};
     static constexpr std::array pressures{Unit{"hPa", 1}, Unit{"kPa", 10}, Unit{"Pa", 0.01}};
     static constexpr std::array lapses{Unit{"K/km", 1}};
+    static constexpr std::array speeds{Unit{"m/s", 1}, Unit{"km/h", 1 / 3.6}, Unit{"kn", 1852.0 / 3600}};
     switch (kind) {
         case ValueKind::length: return lengths;
         case ValueKind::duration: return durations;
@@ -22,6 +23,7 @@ std::span<const Unit> units_of(ValueKind kind) {
         case ValueKind::difference: return differences;
         case ValueKind::pressure: return pressures;
         case ValueKind::lapse: return lapses;
+        case ValueKind::speed: return speeds;
         default: return {};
     }
 }
@@ -205,6 +207,7 @@ Found mismatch(const Node& scalar, const Form& form) {
         case ValueKind::difference:
         case ValueKind::pressure:
         case ValueKind::lapse:
+        case ValueKind::speed:
             return quantity_mismatch(scalar, form);
         case ValueKind::text:
         case ValueKind::raster:

@@ -16,7 +16,7 @@ struct Unit {
     double factor;
     double offset = 0;
 };
-/// The units a quantity of that kind may have, in m, s, K, hPa or K/km; empty for other kinds.
+/// The units a quantity of that kind may have, in m, s, K, hPa, K/km or m/s; empty for other kinds.
 [[nodiscard]] std::span<const Unit> units_of(ValueKind kind);
 
 // One reader per kind of value. Nothing where the value has another form.
@@ -27,7 +27,7 @@ struct Unit {
 [[nodiscard]] std::optional<bool> read_boolean(const Node& node);
 /// A text that is in quotes, or looks like neither number nor boolean.
 [[nodiscard]] std::optional<std::string> read_text(const Node& node);
-/// In m, s, K, hPa or K/km.
+/// In m, s, K, hPa, K/km or m/s.
 [[nodiscard]] std::optional<double> read_quantity(const Node& node, ValueKind kind);
 [[nodiscard]] std::optional<HourWindow> read_hours(const Node& node);
 /// The band is what follows the last colon, unless a slash follows it.

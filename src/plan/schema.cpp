@@ -103,6 +103,7 @@ Json of_form(const Form& form) {
         case ValueKind::difference:
         case ValueKind::pressure:
         case ValueKind::lapse:
+        case ValueKind::speed:
             return of_quantity(form);
         case ValueKind::path:
             return of_pattern(form.beside_names

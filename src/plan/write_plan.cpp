@@ -198,6 +198,10 @@ class Writer {
     [[nodiscard]] Node node_of(const PlanPressures& field) const { return field_of(field.value, " hPa"); }
     [[nodiscard]] Node node_of(const PlanShares& field) const { return node_of(field.value); }
     [[nodiscard]] Node node_of(const PlanLapse& lapse) const { return months_of(lapse.k_km, " K/km"); }
+    [[nodiscard]] Node node_of(const PlanWind& wind) const {
+        const auto* months = std::get_if<Monthly>(&wind.value);
+        return months != nullptr ? months_of(*months, " m/s") : node_of(std::get<WindCase>(wind.value));
+    }
     [[nodiscard]] Node node_of(const PlanEmissivity& emissivity) const {
         const auto* from = std::get_if<EmissivityFrom>(&emissivity.value);
         return from != nullptr ? map_of({{"from", node_of(*from)}}) : node_of(emissivity.value);

@@ -51,6 +51,15 @@ TEST_CASE("solar_reflectance_index: the balance of ASTM E1980, one by one and in
     }
 }
 
+TEST_CASE("wind_case: below 2 m/s, below 6, and above", "[physics][edge]") {
+    CHECK(wind_case(0) == Wind::low);
+    CHECK(wind_case(1.999) == Wind::low);
+    CHECK(wind_case(2) == Wind::medium);
+    CHECK(wind_case(5.999) == Wind::medium);
+    CHECK(wind_case(6) == Wind::high);
+    CHECK(wind_case(25) == Wind::high);
+}
+
 TEST_CASE("solar_reflectance_index: the standard's own surfaces are 0 and 100 in every wind",
           "[physics][vector]") {
     const auto wind = GENERATE(Wind::low, Wind::medium, Wind::high);

@@ -1,5 +1,6 @@
 #pragma once
 
+#include <array>
 #include <cstdint>
 #include <map>
 #include <memory>
@@ -162,6 +163,7 @@ struct Run {
     std::optional<SkyRaster> sky_raster;
     double light_uncertainty = 0.07;  ///< relative standard uncertainty, the same at all times
     std::shared_ptr<const RunWeather> weather;  ///< nothing without a table
+    std::array<bool, weather_quantities> columns_used{};  ///< of that table
     RunLight light;
     Heat heat;
     std::optional<TimePlan> times;
@@ -179,6 +181,7 @@ struct Run {
     std::vector<std::string> assumptions;  ///< what the plan left open, in words
     std::vector<std::string> warnings;
 
+    void use(Weather quantity) { columns_used[static_cast<std::size_t>(quantity)] = true; }
     [[nodiscard]] bool has_surface() const { return !std::holds_alternative<std::monostate>(surface); }
 };
 

@@ -7,6 +7,7 @@
 #include <string_view>
 
 #include "sunbudget/base/time.hpp"
+#include "sunbudget/model/air_pressure.hpp"
 #include "sunbudget/model/light_shares.hpp"
 #include "sunbudget/physics/clear_sky.hpp"
 #include "sunbudget/physics/transposition.hpp"
@@ -42,6 +43,7 @@ struct Sky {
     std::array<MonthlyNumbers, sky_parameter_count> parameters;
     DiffuseModel diffuse = DiffuseModel::hay_davies1980;
     std::shared_ptr<const LightShares> measured;           ///< of the clear sky's light; nothing: all of it
+    std::shared_ptr<const AirPressure> pressure;           ///< nothing: the standard's
     std::optional<std::array<LightShare, 12>> mean_cloud;  ///< by month, a mixture of clear and overcast skies
 
     /// The model with the defaults of its row.
@@ -50,6 +52,8 @@ struct Sky {
     [[nodiscard]] MonthlyNumbers& operator[](SkyParameter parameter) {
         return parameters[static_cast<std::size_t>(parameter)];
     }
+    /// What the standard's pressure is to be multiplied with.
+    [[nodiscard]] double pressure_factor(UtcSeconds utc, int month) const { return pressure ? pressure->factor(utc, month) : 1; }
     [[nodiscard]] double of(SkyParameter parameter, int month) const {
         return parameters[static_cast<std::size_t>(parameter)][static_cast<std::size_t>(month - 1)];
     }
@@ -77,7 +81,7 @@ struct SkyInstant {
     double extraterrestrial_normal_w_m2 = 0;  ///< at the sun's distance, solar constant 1361 W m-2
     double elevation_rad = 0;                 ///< true, of the sun's centre, above 0
     double height_m = 0;
-    double pressure_ratio = 1;  ///< to sea level
+    double pressure_ratio = 1;  ///< of the standard atmosphere, to sea level
     double duration_s = 0;      ///< of the time around utc that it stands for
 };
 

@@ -54,6 +54,10 @@ void balanced_temperature(std::span<const float> absorbed_w_m2, std::span<const 
 
 /// The three cases of wind of ASTM E1980: below 2, 2 to 6, 6 to 10 m/s.
 enum class Wind { low, medium, high };
+/// The case of a wind; above 10 m/s, beyond the standard, it is high.
+///
+/// in      wind_m_s  >= 0
+[[nodiscard]] Wind wind_case(double wind_m_s) noexcept;
 /// 5, 12, 30 W m-2 K-1.
 [[nodiscard]] double heat_exchange_w_m2_k(Wind wind) noexcept;
 

@@ -246,6 +246,11 @@ struct PlanZone {
 };
 
 enum class WindCase { low, medium, high };
+struct PlanWind {
+    std::variant<WindCase, Monthly> value;  ///< m/s
+    friend bool operator==(const PlanWind&, const PlanWind&) = default;
+};
+enum class PressureAt { station, sea_level };
 
 struct PlanWeather {
     Place place;
@@ -276,7 +281,9 @@ struct PlanWeather {
     Maybe<PlanTemperatures> dew_point;
     Maybe<PlanPressures> vapour_pressure;
     Maybe<PlanLapse> lapse;
-    Maybe<WindCase> wind;
+    Maybe<PlanWind> wind;
+    Maybe<PlanPressures> pressure;  ///< numbers alone
+    Maybe<PressureAt> pressure_at;
     friend bool operator==(const PlanWeather& a, const PlanWeather& b) {
         return a.table == b.table && a.columns == b.columns && a.units == b.units && a.flags == b.flags &&
                a.good_flags == b.good_flags && a.missing == b.missing && a.separator == b.separator &&
@@ -286,7 +293,8 @@ struct PlanWeather {
                a.station_elevation == b.station_elevation && a.air_temperature == b.air_temperature &&
                a.air_temperature_max == b.air_temperature_max && a.air_temperature_min == b.air_temperature_min &&
                a.relative_humidity == b.relative_humidity && a.dew_point == b.dew_point &&
-               a.vapour_pressure == b.vapour_pressure && a.lapse == b.lapse && a.wind == b.wind;
+               a.vapour_pressure == b.vapour_pressure && a.lapse == b.lapse && a.wind == b.wind &&
+               a.pressure == b.pressure && a.pressure_at == b.pressure_at;
     }
 };
 
