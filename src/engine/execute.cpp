@@ -99,10 +99,12 @@ std::uint64_t band_planes(const Run& run) {
 /// band.
 constexpr int band_units = 4;
 
-/// Overview tiles of one layer that may wait in memory for their children: a quarter of the budget for
-/// all layers.
+/// What overview tiles of all layers may take while they wait for their children. Those beyond are made from the
+/// spool, which is cheap beside a layer's making; without a limit they grow with the grid's width and its bands.
+std::uint64_t most_waiting_bytes(std::uint64_t memory_bytes) { return memory_bytes / 32; }
+
 std::size_t overview_bytes(const Run& run, std::uint64_t memory_bytes) {
-    return static_cast<std::size_t>(memory_bytes / 4 / std::max<std::size_t>(1, run.layers.size()));
+    return static_cast<std::size_t>(most_waiting_bytes(memory_bytes) / std::max<std::size_t>(1, run.layers.size()));
 }
 
 /// What reading the inputs takes: all of them decoded, and planes for one pixel of a window.
@@ -154,7 +156,7 @@ std::uint64_t all_overview_bytes(const Run& run) {
 std::uint64_t waiting_bytes(const Run& run, std::uint64_t memory_bytes) {
     const auto tile = static_cast<std::uint64_t>(run.tile);
     const auto across = static_cast<std::uint64_t>(run.grid.width) / band_units + 3 * tile;
-    return std::min(memory_bytes / 4, band_planes(run) * across * tile * sizeof(float));
+    return std::min(most_waiting_bytes(memory_bytes), band_planes(run) * across * tile * sizeof(float));
 }
 
 /// Bytes a thread holds for each pixel of its window: surface, heights, a tile raw and encoded; what heat radiation
@@ -197,7 +199,7 @@ void check_space(const Run& run, const std::filesystem::path& folder) {
 }  // namespace
 
 std::uint64_t raster_cache_bytes(std::uint64_t memory_bytes) {
-    return std::clamp<std::uint64_t>(memory_bytes / 8, 32u << 20, 512u << 20);
+    return std::clamp<std::uint64_t>(memory_bytes / 12, 32u << 20, 512u << 20);
 }
 
 std::uint64_t decoded_bytes(const Source& source) {

@@ -52,7 +52,7 @@ struct HeatFlow::State {
     std::optional<PointLongwave> point;
     std::optional<ChangeReader> change;  ///< one that has been carried out
 
-    std::optional<Reader> cover, emissivity_raster, red, nir, surface, temperature, humidity;
+    std::optional<Reader> cover, emissivity_raster, red, nir, surface, surface_quality, temperature, humidity;
     Window window;
     Plane<float> emissivity, dry, built, class_emissivity;
     Plane<float> red_plane, nir_plane, surface_k, air_k, humid;
@@ -73,6 +73,7 @@ struct HeatFlow::State {
             }
         }
         surface = reader_of(heat.surface_k);
+        if (heat.surface_quality) surface_quality.emplace(heat.surface_quality->codes);
         if (run.carried_out) change.emplace(*run.carried_out);
         if (!heat.longwave) return;
         point.emplace(*run.times, *heat.longwave);
@@ -82,6 +83,7 @@ struct HeatFlow::State {
 
     void read_emissivity(const Plane<std::uint16_t>& flags);
     void read_dry();
+    void read_surface();
     void air_from_field(std::size_t band);
     void air_by_pixel(std::size_t band);
     void surface_by_pixel(const AirMoment& numbers);
@@ -131,6 +133,23 @@ void HeatFlow::State::read_dry() {
         cover->read_values(window, cover_of(run)->dry, dry);
     else
         dry.fill(nan_value);
+}
+
+/// A raster of the ground's temperature, without what clouds hide.
+void HeatFlow::State::read_surface() {
+    if (!surface) return;
+    surface->read(window, surface_k);
+    for (int r = 0; r < window.height; ++r) keep_possible(surface_k.row(r));
+    if (!surface_quality) return;
+    Plane<std::int32_t> codes;
+    surface_quality->read_codes(window, codes);
+    std::vector<RejectReason> reasons(static_cast<std::size_t>(window.width));
+    std::vector<std::uint16_t> flags(reasons.size());  // those of the albedo's image are the layer quality's
+    for (int r = 0; r < window.height; ++r) {
+        std::ranges::fill(reasons, not_rejected);
+        apply_quality(codes.row(r), heat.surface_quality->tests, heat.surface_quality->missing, flags, reasons);
+        drop_rejected(reasons, surface_k.row(r));
+    }
 }
 
 /// What the sky sends down, and the air, from a few nodes.
@@ -260,10 +279,7 @@ void HeatFlow::read(const Window& window, const std::vector<Window>& blocks, con
         if (!s.emissivity.empty()) s.change->emissivity(window, s.emissivity);
         s.change->dry(window, s.dry);
     }
-    if (s.surface) {
-        s.surface->read(window, s.surface_k);
-        for (int r = 0; r < window.height; ++r) keep_possible(s.surface_k.row(r));
-    }
+    s.read_surface();
     if (s.temperature) s.temperature->read(window, s.air_k);
     if (s.humidity) s.humidity->read(window, s.humid);
     s.prepared.clear();

@@ -177,6 +177,7 @@ class Typed {
     void get(const Node& node, PlanSurfaceRaster& value) const {
         get(*node.find("raster"), value.raster);
         if (node.has("product")) get(*node.find("product"), value.product.emplace());
+        if (node.has("quality")) get(*node.find("quality"), value.quality.emplace());
         value.unit = text_or_none(node, "unit");
         if (node.has("scale")) value.scale = number_or(node, "scale", 1);
         if (node.has("offset")) value.offset = number_or(node, "offset", 0);

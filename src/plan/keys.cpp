@@ -393,6 +393,7 @@ std::vector<Form> surface_temperature_forms() {
     return {temperature(), choice(surface_table_names), list(temperature(), 12, 12),
             map({{"raster", {of(ValueKind::raster)}, "temperature of each pixel"},
                  {"product", {choice(surface_product_names)}, "Landsat Collection 2 Level-2: K = stored value * 0.00341802 + 149; default: told by the file's name"},
+                 {"quality", {of(ValueKind::raster)}, "the scene's QA_PIXEL: what lies under clouds and their shadows has no temperature; default: that file beside a Landsat raster"},
                  {"unit", {choice({"K", "degC"})}, "of the raster; default: as the product or the file says"},
                  {"scale", {number_above(0)}, "temperature = stored value * scale + offset, in that unit"},
                  {"offset", {number()}, "see scale"},
@@ -402,7 +403,7 @@ std::vector<Form> surface_temperature_forms() {
                  {"from",
                   {choice(heat_source_names)},
                   "steady balance of light, heat radiation and air, of dry built and bare kinds at an instant"}},
-                {exactly_one({"raster", "air_plus", "from"}), needs("product", {"raster"}), needs("unit", {"raster"}),
+                {exactly_one({"raster", "air_plus", "from"}), needs("product", {"raster"}), needs("quality", {"raster"}), needs("unit", {"raster"}),
                  needs("scale", {"raster"}), needs("offset", {"raster"}), needs("time", {"raster"}), needs("covers", {"raster"}),
                  at_most_one({"product", "scale"}), at_most_one({"product", "offset"}), at_most_one({"product", "unit"})})};
 }

@@ -204,8 +204,10 @@ std::vector<std::pair<PlanRaster, Place>> heat_rasters(const Plan& plan) {
         add(plan.weather->vapour_pressure);
     }
     if (plan.surface_temperature)
-        if (const auto* raster = std::get_if<PlanSurfaceRaster>(&(**plan.surface_temperature).value))
+        if (const auto* raster = std::get_if<PlanSurfaceRaster>(&(**plan.surface_temperature).value)) {
             rasters.emplace_back(raster->raster, plan.surface_temperature->place);
+            if (raster->quality) rasters.emplace_back(*raster->quality, plan.surface_temperature->place);
+        }
     return rasters;
 }
 

@@ -11,6 +11,7 @@
 #include "sunbudget/model/air_record.hpp"
 #include "sunbudget/physics/humidity.hpp"
 #include "sunbudget/raster/product.hpp"
+#include "sunbudget/tables/sensors.hpp"
 
 namespace sunbudget {
 
@@ -88,6 +89,7 @@ class HeatResolver {
     void emissivity_from_image(const Place& place);
     void surface();
     void surface_raster(const PlanSurfaceRaster& raster, const Place& place);
+    void surface_quality(const PlanSurfaceRaster& raster, const Product& product);
     void judge_time(const std::optional<UtcSeconds>& taken, const PlanSurfaceRaster& raster);
     void longwave();
     void daily();
@@ -162,6 +164,37 @@ void HeatResolver::judge_time(const std::optional<UtcSeconds>& taken, const Plan
         run_.warnings.push_back(fmt::format("surface_temperature was taken at {}, {:.1f} h away from the plan's instant", format_utc(*taken), apart_s / 3600));
 }
 
+/// Under a cloud a thermal image has the cloud's temperature, not the ground's.
+void HeatResolver::surface_quality(const PlanSurfaceRaster& raster, const Product& product) {
+    const std::string told_by = "QA_PIXEL";
+    SourceSpec spec;
+    spec.kind = DataKind::code;
+    spec.limits = limits_of(options_);
+    if (raster.quality)
+        spec.name = raster_of(*raster.quality);
+    else if (const auto beside = product.file.parent_path() / (product.id + "_" + told_by + ".TIF"); !product.id.empty() && std::filesystem::exists(beside))
+        spec.name.path = beside;
+    else
+        return run_.warnings.push_back("surface_temperature: no quality raster: clouds and their shadows count as ground");
+    const auto found = recognise(spec.name.path, {}, inspect(spec.name, spec.limits).metadata);
+    if (!found.band.empty() && found.band != told_by)
+        throw Error(Cause::input, "this is " + found.band + ", not " + told_by, spec.name.path.string(), "name the right file");
+    if (!found.id.empty() && !product.id.empty() && found.id != product.id)
+        throw Error(Cause::input, fmt::format("quality of the scene {}, but the temperatures are of {}", found.id, product.id), spec.name.path.string(),
+                    "take both files from one scene");
+    QualityRaster quality{Source::open(spec, run_.grid), {}, RejectReason{0}};
+    add_input(run_, "surface_temperature.quality", quality.codes);
+    std::vector<std::string> names;
+    // The bits are those of every Landsat of the collection.
+    for (const auto& test : sensor("landsat-oli-c2").tests) {
+        if (test.raster != told_by || !test.rejects) continue;
+        quality.tests.push_back({test.first_bit, test.bits, static_cast<std::int32_t>(test.value), 0, RejectReason{0}});
+        if (test.name != "fill") names.push_back(test.name);
+    }
+    run_.heat.surface_quality = std::move(quality);
+    run_.assumptions.push_back(fmt::format("surface_temperature: none where {} tells {}", spec.name.path.filename().string(), joined(names, ", ")));
+}
+
 void HeatResolver::surface_raster(const PlanSurfaceRaster& raster, const Place& place) {
     // USGS Landsat 8-9 Collection 2 Level-2 science product guide: kelvin = 0.00341802 * number + 149, 0 is no data.
     constexpr Scaling landsat{0.00341802, 149.0};
@@ -182,6 +215,7 @@ void HeatResolver::surface_raster(const PlanSurfaceRaster& raster, const Place& 
         run_.heat.surface_k = opened("surface_temperature", raster.raster, is_landsat ? landsat : after(stored, unit_scaling(unit)),
                                      is_landsat ? std::optional(0.0) : std::nullopt);
         if (is_landsat) run_.inputs.back().notes.emplace_back("Landsat Collection 2: kelvin = 0.00341802 * number + 149");
+        if (is_landsat || raster.quality) surface_quality(raster, product);
         std::optional<UtcSeconds> taken = product.acquired_utc;
         if (!raster.time.empty()) taken = sunbudget::resolve(parse_instant(raster.time), Zone(), 0);
         judge_time(taken, raster);

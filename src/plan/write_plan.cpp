@@ -290,6 +290,7 @@ Node Writer::node_of(const PlanFieldRaster& field) const {
 Node Writer::node_of(const PlanSurfaceRaster& field) const {
     std::vector<std::pair<const char*, Node>> entries{{"raster", node_of(field.raster)}};
     if (field.product) entries.emplace_back("product", node_of(*field.product));
+    if (field.quality) entries.emplace_back("quality", node_of(*field.quality));
     if (!field.unit.empty()) entries.emplace_back("unit", text_node(field.unit));
     if (field.scale) entries.emplace_back("scale", number_node(*field.scale));
     if (field.offset) entries.emplace_back("offset", number_node(*field.offset));

@@ -190,6 +190,29 @@ TEST_CASE("Landsat's stored temperatures are known by name or product, and 0 is 
     CHECK(std::isnan(found["surface_temperature"].at(3, 4)));
 }
 
+TEST_CASE("Landsat's temperatures under clouds are not the ground's, whether QA_PIXEL lies beside them or is named", "[heat][edge]") {
+    const TemporaryFolder folder;
+    make_ground(folder.path());
+    const auto frame = frame_about("EPSG:32633", 47.0, 15.0, 30, side, side);
+    const std::string scene = "LC08_L2SP_190027_20250621_20250630_02_T1";
+    write_heights(folder.path() / (scene + "_ST_B10.TIF"), frame, Plane<float>(side, side, 44177.0F), {"Float32", "", -1});
+    // USGS Landsat Collection 2 guide: 21824 clear land, 22280 cloud, 23888 cloud shadow, 30048 snow, 1 fill.
+    Plane<float> codes(side, side, 21824.0F);
+    codes.at(1, 0) = 22280;
+    codes.at(2, 0) = 23888;
+    codes.at(3, 0) = 30048;
+    codes.at(4, 0) = 1;
+    const std::string name = GENERATE_COPY(scene + "_QA_PIXEL.TIF", std::string("clouds.tif"));
+    write_heights(folder.path() / name, frame, codes, {"UInt16", "", -1});
+    const std::string named = name == "clouds.tif" ? ", quality: clouds.tif" : "";
+    const auto found = computed(folder.path(), town + "surface_temperature: {raster: " + scene + "_ST_B10.TIF" + named + "}\n" +
+                                                   "time: {at: 2025-06-21T10:00Z}\noutputs: {layers: [surface_temperature]}\n");
+    const auto& celsius = found["surface_temperature"];
+    CHECK(celsius.at(0, 0) == Approx(0.00341802 * 44177 + 149 - 273.15).margin(0.001));
+    CHECK(celsius.at(3, 0) == celsius.at(0, 0));
+    for (const int column : {1, 2, 4}) CHECK(std::isnan(celsius.at(column, 0)));
+}
+
 namespace {
 
 /// A day of hours: sunny till noon, overcast after; 20 degC and 12 hPa throughout.

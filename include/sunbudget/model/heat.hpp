@@ -5,6 +5,7 @@
 #include <vector>
 
 #include "sunbudget/model/longwave.hpp"
+#include "sunbudget/model/quality_raster.hpp"
 #include "sunbudget/physics/surface_balance.hpp"
 #include "sunbudget/raster/source.hpp"
 
@@ -33,6 +34,7 @@ struct Heat {
     std::optional<Emissivity> emissivity;
     SurfaceFrom surface = SurfaceFrom::nowhere;
     std::optional<Source> surface_k;  ///< SurfaceFrom::raster
+    std::optional<QualityRaster> surface_quality;  ///< tells where that raster shows a cloud in the ground's place
     Wind wind = Wind::medium;         ///< for the balance and the solar reflectance index
 };
 

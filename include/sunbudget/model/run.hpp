@@ -14,6 +14,7 @@
 #include "sunbudget/model/heat.hpp"
 #include "sunbudget/model/light.hpp"
 #include "sunbudget/model/measured_sky.hpp"
+#include "sunbudget/model/quality_raster.hpp"
 #include "sunbudget/model/terrain.hpp"
 #include "sunbudget/model/time_plan.hpp"
 #include "sunbudget/model/weather_record.hpp"
@@ -51,13 +52,6 @@ struct ReflectanceBand {
     std::string name;
     double weight = 0;
     Source reflectance;
-};
-
-/// A quality raster of an image and what its codes mean.
-struct QualityRaster {
-    Source codes;
-    std::vector<QualityBits> tests;
-    RejectReason missing = not_rejected;  ///< for pixels without a code
 };
 
 /// What is known of an image besides its pixels.

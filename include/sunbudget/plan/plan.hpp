@@ -319,6 +319,7 @@ struct PlanDifference {
 struct PlanSurfaceRaster {
     PlanRaster raster;
     std::optional<SurfaceProduct> product;  ///< says unit, scale, offset and nodata
+    std::optional<PlanRaster> quality;      ///< Landsat: QA_PIXEL
     std::string unit;                       ///< K or degC; empty: as the product or the file says
     std::optional<double> scale;
     std::optional<double> offset;
