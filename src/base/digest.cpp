@@ -20,7 +20,8 @@ struct Sha256::State {
 };
 
 Sha256::Sha256() : state_(std::make_unique<State>()) {
-    if (state_->context == nullptr || EVP_DigestInit_ex(state_->context, EVP_sha256(), nullptr) != 1)
+    if (state_->context == nullptr ||
+        EVP_DigestInit_ex(state_->context, EVP_sha256(), nullptr) != 1)
         throw Error(Cause::internal, "SHA-256 cannot be set up");
 }
 Sha256::~Sha256() = default;
@@ -30,7 +31,9 @@ Sha256& Sha256::operator=(Sha256&&) noexcept = default;
 void Sha256::add(std::span<const std::byte> bytes) {
     EVP_DigestUpdate(state_->context, bytes.data(), bytes.size());
 }
-void Sha256::add(std::string_view text) { add(std::as_bytes(std::span(text.data(), text.size()))); }
+void Sha256::add(std::string_view text) {
+    add(std::as_bytes(std::span(text.data(), text.size())));
+}
 
 std::string Sha256::hex() {
     std::array<unsigned char, 32> digest{};
@@ -51,7 +54,8 @@ namespace {
 std::ifstream opened(const std::filesystem::path& file) {
     std::ifstream stream(file, std::ios::binary);
     if (!stream)
-        throw Error(Cause::input, std::string("cannot read: ") + std::strerror(errno), file.string());
+        throw Error(Cause::input, std::string("cannot read: ") + std::strerror(errno),
+                    file.string());
     return stream;
 }
 

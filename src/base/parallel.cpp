@@ -16,7 +16,8 @@ namespace sunbudget {
 std::atomic<int> stop_signal{0};
 
 void throw_if_stopped() {
-    if (stop_signal.load() != 0) throw Error(Cause::temporary, "stopped by a signal", {}, "run again");
+    if (stop_signal.load() != 0)
+        throw Error(Cause::temporary, "stopped by a signal", {}, "run again");
 }
 
 namespace {

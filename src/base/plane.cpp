@@ -42,7 +42,8 @@ void* take_plane_memory(std::size_t bytes) {
     {
         auto& pool = kept();
         const std::lock_guard hold(pool.mutex);
-        if (auto found = pool.by_size.find(bytes); found != pool.by_size.end() && !found->second.empty()) {
+        if (auto found = pool.by_size.find(bytes);
+            found != pool.by_size.end() && !found->second.empty()) {
             void* memory = found->second.back();
             found->second.pop_back();
             pool.bytes -= bytes;

@@ -46,7 +46,9 @@ std::optional<std::uint64_t> parse_bytes(std::string_view text) noexcept {
     return static_cast<std::uint64_t>(bytes);
 }
 
-std::string shortest(double value) { return fmt::format("{}", value); }
+std::string shortest(double value) {
+    return fmt::format("{}", value);
+}
 
 std::string human_bytes(double bytes) {
     constexpr std::array names{"bytes", "kB", "MB", "GB", "TB"};

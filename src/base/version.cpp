@@ -2,6 +2,8 @@
 
 namespace sunbudget {
 
-std::string_view program_version() noexcept { return SUNBUDGET_VERSION; }
+std::string_view program_version() noexcept {
+    return SUNBUDGET_VERSION;
+}
 
 }  // namespace sunbudget

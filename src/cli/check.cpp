@@ -18,22 +18,31 @@ void add_check(CLI::App& app) {
         Common common;
     };
     auto flags = std::make_shared<Flags>();
-    auto* command = app.add_subcommand("check", "Validate a plan and its inputs, show the resolved run and what it will take");
+    auto* command = app.add_subcommand(
+        "check", "Validate a plan and its inputs, show the resolved run and what it will take");
     command->add_option("PLAN", flags->plan, "The plan file")->required();
     command->add_option("--set", flags->set, "Change a key of the plan; may be repeated")
-        ->type_name("key.path=value")->expected(1)->take_all()->allow_extra_args(false);
-    command->add_flag("--full", flags->full, "Count the classes of every pixel, not of a sample of blocks");
+        ->type_name("key.path=value")
+        ->expected(1)
+        ->take_all()
+        ->allow_extra_args(false);
+    command->add_flag("--full", flags->full,
+                      "Count the classes of every pixel, not of a sample of blocks");
     add_common_flags(*command, flags->common);
-    command->footer("Nothing is written. Time, memory and disk come from a few windows computed for the purpose.\n"
-                    "Example: sunbudget check town.yaml --full");
+    command->footer(
+        "Nothing is written. Time, memory and disk come from a few windows computed for the "
+        "purpose.\n"
+        "Example: sunbudget check town.yaml --full");
     command->callback([flags] {
         Terminal terminal(flags->common.quiet);
         prepare(flags->common);
         const EngineOptions options{flags->common.threads(), flags->common.memory_bytes(), {}};
         const auto start = std::chrono::steady_clock::now();
-        const Run run = resolve(read_plan(flags->plan, flags->set), {options.threads, options.memory_bytes, flags->full, {}});
+        const Run run = resolve(read_plan(flags->plan, flags->set),
+                                {options.threads, options.memory_bytes, flags->full, {}});
         for (const auto& warning : run.warnings) terminal.warning(warning);
-        const double resolving_s = std::chrono::duration<double>(std::chrono::steady_clock::now() - start).count();
+        const double resolving_s =
+            std::chrono::duration<double>(std::chrono::steady_clock::now() - start).count();
         auto estimated = estimate(run, options);
         estimated.seconds += resolving_s;  // a run does that too
         const auto text = check_text(run, estimated, flags->full);

@@ -41,9 +41,9 @@ void add_zones(CLI::App& app);
 
 /// What the run of a plan does once it is read, shared by `run` and the one-line jobs.
 struct RunFlags {
-    std::string out;         ///< folder; empty: the plan's
-    std::string single_file; ///< one-line jobs: the one file to write, no sidecars
-    std::string save_plan;   ///< one-line jobs: a file for the plan, once it has proved good
+    std::string out;          ///< folder; empty: the plan's
+    std::string single_file;  ///< one-line jobs: the one file to write, no sidecars
+    std::string save_plan;    ///< one-line jobs: a file for the plan, once it has proved good
     bool fresh = false;
 };
 /// The folder of a file that may be named without one.

@@ -29,14 +29,18 @@ int shown(const CLI::App& app, const CLI::Success& asked, sunbudget::Terminal& t
 int main(int argc, char** argv) {
     using namespace sunbudget;
     prepare_process();
-    CLI::App app{"How much of the sun's energy the ground keeps: albedo, insolation and net shortwave rasters.\n"
-                 "Screening figures for planning, not design values.",
-                 "sunbudget"};
+    CLI::App app{
+        "How much of the sun's energy the ground keeps: albedo, insolation and net shortwave "
+        "rasters.\n"
+        "Screening figures for planning, not design values.",
+        "sunbudget"};
     app.set_version_flag("--version", "sunbudget " + std::string(program_version()));
     app.require_subcommand(1);
-    app.footer("Example: sunbudget check town.yaml && sunbudget run town.yaml\n"
-               "Exit codes: 0 done; 2 command line or plan wrong; 3 input missing or unfit; 4 output cannot be written;\n"
-               "5 partial; 75 try again; 130, 143 stopped by a signal; 1 anything else.");
+    app.footer(
+        "Example: sunbudget check town.yaml && sunbudget run town.yaml\n"
+        "Exit codes: 0 done; 2 command line or plan wrong; 3 input missing or unfit; 4 output "
+        "cannot be written;\n"
+        "5 partial; 75 try again; 130, 143 stopped by a signal; 1 anything else.");
     add_run(app);
     add_check(app);
     add_explain(app);
@@ -55,7 +59,8 @@ int main(int argc, char** argv) {
         return static_cast<int>(Cause::usage);
     } catch (const Error& error) {
         if (stop_signal.load() != 0) {
-            terminal.error(Error(Cause::temporary, "stopped by a signal, nothing was published", {}, "run again"));
+            terminal.error(Error(Cause::temporary, "stopped by a signal, nothing was published", {},
+                                 "run again"));
             return 128 + stop_signal.load();
         }
         terminal.error(error);

@@ -29,7 +29,8 @@ void handle_signals() {
 void occupy_closed_streams() {
     for (const int stream : {STDIN_FILENO, STDOUT_FILENO, STDERR_FILENO})
         // Open the wrong way round, so that using it is an error still.
-        if (fcntl(stream, F_GETFD) < 0) (void)open("/dev/null", stream == STDIN_FILENO ? O_WRONLY : O_RDONLY);
+        if (fcntl(stream, F_GETFD) < 0)
+            (void)open("/dev/null", stream == STDIN_FILENO ? O_WRONLY : O_RDONLY);
 }
 
 }  // namespace

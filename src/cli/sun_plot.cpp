@@ -28,13 +28,17 @@ char mark(const SunMoment& moment, double low, double high, bool slope) {
 }
 
 /// Every third hour of the zone's clock under the column in which it begins.
-std::string hour_line(const std::vector<SunMoment>& moments, const Zone& zone, double longitude_rad) {
+std::string hour_line(const std::vector<SunMoment>& moments, const Zone& zone,
+                      double longitude_rad) {
     std::string line(columns + 2, ' ');
     int last = -1;
     for (int c = 0; c < columns; ++c) {
-        const double hour = zone.local(moments[static_cast<std::size_t>(c)].utc, longitude_rad).seconds_of_day / 3600;
+        const double hour =
+            zone.local(moments[static_cast<std::size_t>(c)].utc, longitude_rad).seconds_of_day /
+            3600;
         const int third = static_cast<int>(hour / 3) * 3;
-        if (third != last) line.replace(static_cast<std::size_t>(c), 2, fmt::format("{:<2}", third));
+        if (third != last)
+            line.replace(static_cast<std::size_t>(c), 2, fmt::format("{:<2}", third));
         last = third;
     }
     line.erase(line.find_last_not_of(' ') + 1);
@@ -60,12 +64,16 @@ std::string day_plot(const SunPlace& place, const Zone& zone, CivilDate date) {
         std::string line;
         for (const auto& moment : moments) line += mark(moment, low, high, slope);
         line.erase(line.find_last_not_of(' ') + 1);
-        const auto label = r == rows - 1 ? fmt::format("{:g}", top) : r == rows / 2 - 1 ? fmt::format("{:g}", top / 2) : "";
+        const auto label = r == rows - 1       ? fmt::format("{:g}", top)
+                           : r == rows / 2 - 1 ? fmt::format("{:g}", top / 2)
+                                               : "";
         text += fmt::format("{:>6} |{}\n", label, line);
     }
     text += fmt::format("{:>6} +{}\n", 0, std::string(columns, '-'));
-    text += std::string(8, ' ') + hour_line(moments, zone, place.longitude_rad) + " h, " + zone.name() + "\n";
-    return text + "        . sky light   # direct light on top of it, level ground" + (slope ? "   o all light on the slope\n" : "\n");
+    text += std::string(8, ' ') + hour_line(moments, zone, place.longitude_rad) + " h, " +
+            zone.name() + "\n";
+    return text + "        . sky light   # direct light on top of it, level ground" +
+           (slope ? "   o all light on the slope\n" : "\n");
 }
 
 }  // namespace sunbudget

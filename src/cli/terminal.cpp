@@ -48,13 +48,17 @@ void print_result(const std::string& text) {
             continue;
         }
         if (errno == EPIPE) return;
-        if (errno != EINTR) throw Error(Cause::output, std::string("cannot write the result: ") + std::strerror(errno), "standard output");
+        if (errno != EINTR)
+            throw Error(Cause::output,
+                        std::string("cannot write the result: ") + std::strerror(errno),
+                        "standard output");
     }
 }
 
 Terminal::Terminal(bool quiet) : quiet_(quiet) {
     const char* term = std::getenv("TERM");
-    const bool terminal = isatty(STDERR_FILENO) != 0 && std::string_view(term == nullptr ? "" : term) != "dumb";
+    const bool terminal =
+        isatty(STDERR_FILENO) != 0 && std::string_view(term == nullptr ? "" : term) != "dumb";
     bar_allowed_ = terminal && !quiet;
     colour_ = terminal && !environment_is("NO_COLOR");
 }
@@ -67,20 +71,26 @@ void Terminal::clear_bar() {
 void Terminal::line(const std::string& label, const std::string& colour, const std::string& text) {
     const std::lock_guard hold(mutex_);
     clear_bar();
-    const auto marked = colour_ && !colour.empty() ? "\x1b[" + colour + "m" + label + "\x1b[0m" : label;
+    const auto marked =
+        colour_ && !colour.empty() ? "\x1b[" + colour + "m" + label + "\x1b[0m" : label;
     write_all("sunbudget: " + marked + printable(text) + "\n");
 }
 
 void Terminal::error(const Error& error) {
     for (const auto& problem : error.problems()) line("error: ", "1;31", text_of(problem));
 }
-void Terminal::error(const std::string& text) { line("error: ", "1;31", text); }
-void Terminal::warning(const std::string& text) { line("warning: ", "1;33", text); }
+void Terminal::error(const std::string& text) {
+    line("error: ", "1;31", text);
+}
+void Terminal::warning(const std::string& text) {
+    line("warning: ", "1;33", text);
+}
 void Terminal::note(const std::string& text) {
     if (!quiet_) line("", "", text);
 }
 
-void Terminal::progress(const std::string& step, double done, double total, const std::string& unit) {
+void Terminal::progress(const std::string& step, double done, double total,
+                        const std::string& unit) {
     if (!bar_allowed_ || total <= 0) return;
     const std::lock_guard hold(mutex_);
     const auto now = std::chrono::steady_clock::now();
@@ -94,15 +104,19 @@ void Terminal::progress(const std::string& step, double done, double total, cons
     const double share = std::clamp(done / total, 0.0, 1.0);
     const double seconds = std::chrono::duration<double>(now - step_start_).count();
     winsize size{};
-    const int columns = ioctl(STDERR_FILENO, TIOCGWINSZ, &size) == 0 && size.ws_col > 0 ? size.ws_col : 80;
+    const int columns =
+        ioctl(STDERR_FILENO, TIOCGWINSZ, &size) == 0 && size.ws_col > 0 ? size.ws_col : 80;
     std::string tail = fmt::format(" {:3.0f} %", share * 100);
     if (seconds > 0.5 && share > 0)
-        tail += fmt::format("  {:.3g} {}/s  {}", done / seconds, unit, time_left(seconds / share * (1 - share)));
+        tail += fmt::format("  {:.3g} {}/s  {}", done / seconds, unit,
+                            time_left(seconds / share * (1 - share)));
     const int room = std::clamp(columns - static_cast<int>(step.size() + tail.size()) - 4, 0, 30);
     const int full = static_cast<int>(share * room);
-    const auto bar = std::string(static_cast<std::size_t>(full), '#') + std::string(static_cast<std::size_t>(room - full), '.');
+    const auto bar = std::string(static_cast<std::size_t>(full), '#') +
+                     std::string(static_cast<std::size_t>(room - full), '.');
     auto text = step + " " + bar + tail;
-    if (static_cast<int>(text.size()) > columns - 1) text.resize(static_cast<std::size_t>(columns - 1));
+    if (static_cast<int>(text.size()) > columns - 1)
+        text.resize(static_cast<std::size_t>(columns - 1));
     write_all("\r" + text + "\x1b[K");
     bar_shown_ = true;
 }

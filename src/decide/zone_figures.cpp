@@ -48,7 +48,8 @@ void ZoneTally::settle() {
         piece.squares_ += weight * difference * difference;
     }
     // Stable: equal values keep the order of the pixels, so their sum has the same bits.
-    std::stable_sort(fresh_.begin(), fresh_.end(), [](const Weighted& a, const Weighted& b) { return a.first < b.first; });
+    std::stable_sort(fresh_.begin(), fresh_.end(),
+                     [](const Weighted& a, const Weighted& b) { return a.first < b.first; });
     join_equal(fresh_);
     piece.weights_.swap(fresh_);
     merge(piece);
@@ -65,7 +66,8 @@ void ZoneTally::merge(const ZoneTally& later) {
     weight_ = all;
     std::vector<Weighted> merged;
     merged.reserve(weights_.size() + later.weights_.size());
-    std::merge(weights_.begin(), weights_.end(), later.weights_.begin(), later.weights_.end(), std::back_inserter(merged),
+    std::merge(weights_.begin(), weights_.end(), later.weights_.begin(), later.weights_.end(),
+               std::back_inserter(merged),
                [](const Weighted& a, const Weighted& b) { return a.first < b.first; });
     join_equal(merged);
     weights_.swap(merged);
@@ -77,7 +79,8 @@ void ZoneTally::thin_out() {
     while (weights_.size() > most_values) {
         ++dropped_bits_;
         const std::uint32_t mask = ~((1u << dropped_bits_) - 1);
-        for (auto& [value, weight] : weights_) value = std::bit_cast<float>(std::bit_cast<std::uint32_t>(value) & mask);
+        for (auto& [value, weight] : weights_)
+            value = std::bit_cast<float>(std::bit_cast<std::uint32_t>(value) & mask);
         join_equal(weights_);
     }
 }

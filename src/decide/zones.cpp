@@ -33,8 +33,10 @@ std::vector<Band> bands_of(const ZoneQuestion& question) {
     std::vector<Band> bands;
     for (std::size_t n = 0; n < question.layers.size(); ++n) {
         const auto& layer = question.layers[n];
-        for (std::size_t b = 0; b < layer.bands.size(); ++b) bands.push_back({n, b, false, &layer.bands[b]});
-        for (std::size_t b = 0; b < layer.uncertainty.size(); ++b) bands.push_back({n, b, true, &layer.uncertainty[b]});
+        for (std::size_t b = 0; b < layer.bands.size(); ++b)
+            bands.push_back({n, b, false, &layer.bands[b]});
+        for (std::size_t b = 0; b < layer.uncertainty.size(); ++b)
+            bands.push_back({n, b, true, &layer.uncertainty[b]});
     }
     return bands;
 }
@@ -59,8 +61,13 @@ struct Piece {
 /// One thread's readers and planes.
 class BlockLooker {
   public:
-    BlockLooker(const ZoneQuestion& question, std::span<const Band> bands, bool ground, const Locator& locator)
-        : question_(question), bands_(bands), ground_(ground), locator_(locator.clone()), planes_(bands.size()) {
+    BlockLooker(const ZoneQuestion& question, std::span<const Band> bands, bool ground,
+                const Locator& locator)
+        : question_(question),
+          bands_(bands),
+          ground_(ground),
+          locator_(locator.clone()),
+          planes_(bands.size()) {
         for (const auto& band : bands) readers_.emplace_back(*band.source);
         if (question.slope_deg) slope_.emplace(*question.slope_deg);
         if (ground && question.classes) classes_.emplace(*question.classes);
@@ -104,12 +111,15 @@ void BlockLooker::map_areas(const Window& block) {
     };
     const double last = std::max(1, block.width - 1);
     for (int r = 0; r < block.height; ++r) {
-        const double row = static_cast<double>(block.row + r), left = static_cast<double>(block.column);
-        const double a = area_at(left, row), b = area_at(left + last / 2, row), c = area_at(left + last, row);
+        const double row = static_cast<double>(block.row + r),
+                     left = static_cast<double>(block.column);
+        const double a = area_at(left, row), b = area_at(left + last / 2, row),
+                     c = area_at(left + last, row);
         const auto out = map_m2_.row(r);
         for (std::size_t i = 0; i < out.size(); ++i) {
             const double u = static_cast<double>(i) / last;
-            const double area = a * (1 - u) * (1 - 2 * u) + b * 4 * u * (1 - u) + c * u * (2 * u - 1);
+            const double area =
+                a * (1 - u) * (1 - 2 * u) + b * 4 * u * (1 - u) + c * u * (2 * u - 1);
             out[i] = std::isnan(area) ? 0 : area;  // off the globe
         }
     }
@@ -124,17 +134,24 @@ void BlockLooker::surface_areas(const Window& block) {
         if (!slope_) continue;
         const auto slope = slope_deg_.row(r);
         for (std::size_t i = 0; i < slope.size(); ++i)
-            if (!std::isnan(slope[i])) surface[i] /= std::cos(static_cast<double>(slope[i]) * std::numbers::pi / 180);
+            if (!std::isnan(slope[i]))
+                surface[i] /= std::cos(static_cast<double>(slope[i]) * std::numbers::pi / 180);
     }
 }
 
 /// The part of a block that a zone's outline lies in; no pixels where they do not meet.
 Window overlap(const Polygon& zone, const Window& block) {
-    const auto low = [](double edge, long from) { return std::max(from, static_cast<long>(std::floor(std::max(edge, -1.0)))); };
-    const auto high = [](double edge, long to) { return std::min(to, static_cast<long>(std::ceil(std::min(edge, 2e9)))); };
+    const auto low = [](double edge, long from) {
+        return std::max(from, static_cast<long>(std::floor(std::max(edge, -1.0))));
+    };
+    const auto high = [](double edge, long to) {
+        return std::min(to, static_cast<long>(std::ceil(std::min(edge, 2e9))));
+    };
     const long left = low(zone.left, block.column), top = low(zone.top, block.row);
-    const long right = high(zone.right, block.column + block.width), bottom = high(zone.bottom, block.row + block.height);
-    return {left, top, static_cast<int>(std::max(0L, right - left)), static_cast<int>(std::max(0L, bottom - top))};
+    const long right = high(zone.right, block.column + block.width),
+               bottom = high(zone.bottom, block.row + block.height);
+    return {left, top, static_cast<int>(std::max(0L, right - left)),
+            static_cast<int>(std::max(0L, bottom - top))};
 }
 
 Piece BlockLooker::look(const Polygon& zone) {
@@ -156,7 +173,8 @@ void BlockLooker::add_ground(const Window& window, Piece& piece) const {
     const auto left = static_cast<std::size_t>(window.column - block_.column);
     for (int r = 0; r < window.height; ++r) {
         const auto share = shares_.row(r);
-        const auto map = map_m2_.row(top + r).subspan(left), surface = surface_m2_.row(top + r).subspan(left);
+        const auto map = map_m2_.row(top + r).subspan(left),
+                   surface = surface_m2_.row(top + r).subspan(left);
         for (std::size_t i = 0; i < share.size(); ++i) {
             if (share[i] == 0) continue;
             piece.covered_px += share[i];
@@ -172,7 +190,8 @@ void BlockLooker::add_ground(const Window& window, Piece& piece) const {
 void BlockLooker::add_band(std::size_t band, const Window& window, Piece& piece) const {
     const int top = static_cast<int>(window.row - block_.row);
     const auto left = static_cast<std::size_t>(window.column - block_.column);
-    const auto& areas = question_.layers[bands_[band].layer].per_surface_area ? surface_m2_ : map_m2_;
+    const auto& areas =
+        question_.layers[bands_[band].layer].per_surface_area ? surface_m2_ : map_m2_;
     auto& tally = piece.tallies[band];
     for (int r = 0; r < window.height; ++r) {
         const auto share = shares_.row(r);
@@ -191,7 +210,9 @@ class Sweep {
   public:
     explicit Sweep(const std::vector<Polygon>& zones) : zones_(zones), order_(zones.size()) {
         std::iota(order_.begin(), order_.end(), std::size_t{0});
-        std::stable_sort(order_.begin(), order_.end(), [&](std::size_t a, std::size_t b) { return zones_[a].top < zones_[b].top; });
+        std::stable_sort(order_.begin(), order_.end(), [&](std::size_t a, std::size_t b) {
+            return zones_[a].top < zones_[b].top;
+        });
     }
     /// Numbers of the zones that reach into the rows [top, bottom), ascending.
     const std::vector<std::size_t>& reaching(double top, double bottom) {
@@ -211,10 +232,17 @@ class Sweep {
 /// The answers to some bands at a time.
 class Answering {
   public:
-    Answering(const ZoneQuestion& question, const std::vector<Polygon>& zones, std::span<const Band> bands, bool ground,
-              const ZoneOptions& options, std::vector<ZoneAnswer>& answers)
-        : question_(question), zones_(zones), bands_(bands), ground_(ground), options_(options), answers_(answers),
-          locator_(question.grid), lookers_(static_cast<std::size_t>(options.threads)) {}
+    Answering(const ZoneQuestion& question, const std::vector<Polygon>& zones,
+              std::span<const Band> bands, bool ground, const ZoneOptions& options,
+              std::vector<ZoneAnswer>& answers)
+        : question_(question),
+          zones_(zones),
+          bands_(bands),
+          ground_(ground),
+          options_(options),
+          answers_(answers),
+          locator_(question.grid),
+          lookers_(static_cast<std::size_t>(options.threads)) {}
 
     void run(double done_before, double total) {
         Sweep sweep(zones_);
@@ -224,7 +252,9 @@ class Answering {
             look_along(top, rows, sweep.reaching(top, top + rows));
             throw_if_stopped();
             close_above(top + rows);
-            if (options_.progress) options_.progress(done_before + static_cast<double>(top + rows) * grid.width / 1e6, total);
+            if (options_.progress)
+                options_.progress(done_before + static_cast<double>(top + rows) * grid.width / 1e6,
+                                  total);
         }
         close_above(std::numeric_limits<double>::infinity());
     }
@@ -247,13 +277,16 @@ class Answering {
 
 /// One row of blocks: looked at in parallel, then added up from left to right.
 void Answering::look_along(int top, int rows, const std::vector<std::size_t>& reaching) {
-    const auto columns = static_cast<std::size_t>((question_.grid.width + block_side_px - 1) / block_side_px);
+    const auto columns =
+        static_cast<std::size_t>((question_.grid.width + block_side_px - 1) / block_side_px);
     std::vector<std::vector<std::size_t>> zones_of(columns);
     for (const auto z : reaching) {
         const double last = static_cast<double>(columns) - 1;
         if (zones_[z].right <= 0 || zones_[z].left >= question_.grid.width) continue;
-        const auto from = static_cast<std::size_t>(std::clamp(std::floor(zones_[z].left / block_side_px), 0.0, last));
-        const auto to = static_cast<std::size_t>(std::clamp(std::floor(zones_[z].right / block_side_px), 0.0, last));
+        const auto from = static_cast<std::size_t>(
+            std::clamp(std::floor(zones_[z].left / block_side_px), 0.0, last));
+        const auto to = static_cast<std::size_t>(
+            std::clamp(std::floor(zones_[z].right / block_side_px), 0.0, last));
         for (std::size_t c = from; c <= to; ++c) zones_of[c].push_back(z);
     }
     std::vector<std::vector<Piece>> pieces(columns);
@@ -267,7 +300,8 @@ void Answering::look_along(int top, int rows, const std::vector<std::size_t>& re
     });
     if (stop_signal != 0) return;
     for (std::size_t c = 0; c < columns; ++c)
-        for (std::size_t i = 0; i < zones_of[c].size(); ++i) open_[zones_of[c][i]].merge(pieces[c][i]);
+        for (std::size_t i = 0; i < zones_of[c].size(); ++i)
+            open_[zones_of[c][i]].merge(pieces[c][i]);
 }
 
 /// Answers the zones that end above a row.
@@ -292,7 +326,8 @@ void Answering::finish(std::size_t zone, const Piece& piece) {
         answer.nodata_share = none < 1e-9 ? 0 : std::min(none, 1.0);
         double classified = 0;
         for (const auto& [code, area_m2] : piece.classes_m2) classified += area_m2;
-        for (const auto& [code, area_m2] : piece.classes_m2) answer.class_shares[code] = area_m2 / classified;
+        for (const auto& [code, area_m2] : piece.classes_m2)
+            answer.class_shares[code] = area_m2 / classified;
     }
     for (std::size_t i = 0; i < piece.tallies.size(); ++i) {
         const auto& band = bands_[i];
@@ -324,14 +359,18 @@ ZoneAnswer::ClassShare ZoneAnswer::commonest_class() const {
     return most;
 }
 
-std::vector<ZoneAnswer> zone_answers(const ZoneQuestion& question, const std::vector<Polygon>& zones, const ZoneOptions& options) {
+std::vector<ZoneAnswer> zone_answers(const ZoneQuestion& question,
+                                     const std::vector<Polygon>& zones,
+                                     const ZoneOptions& options) {
     std::vector<ZoneAnswer> answers(zones.size(), unanswered(question));
     const auto bands = bands_of(question);
     const double pixels = static_cast<double>(question.grid.width) * question.grid.height / 1e6;
-    const double passes = std::ceil(static_cast<double>(bands.size()) / static_cast<double>(bands_at_once));
+    const double passes =
+        std::ceil(static_cast<double>(bands.size()) / static_cast<double>(bands_at_once));
     double done = 0;
     for (std::size_t first = 0; first < bands.size(); first += bands_at_once, done += pixels) {
-        const auto some = std::span(bands).subspan(first, std::min(bands_at_once, bands.size() - first));
+        const auto some =
+            std::span(bands).subspan(first, std::min(bands_at_once, bands.size() - first));
         Answering(question, zones, some, first == 0, options, answers).run(done, passes * pixels);
     }
     return answers;

@@ -21,17 +21,20 @@ namespace {
 
 using Clock = std::chrono::steady_clock;
 
-double seconds_since(Clock::time_point start) { return std::chrono::duration<double>(Clock::now() - start).count(); }
+double seconds_since(Clock::time_point start) {
+    return std::chrono::duration<double>(Clock::now() - start).count();
+}
 
 /// Half as many columns and rows: the mean of the valid pixels, or the upper left one of flags.
 Plane<float> folded(const Plane<float>& plane, float quantum) {
     Plane<float> half(std::max(1, plane.width() / 2), std::max(1, plane.height() / 2));
     for (int r = 0; r < half.height(); ++r) {
-        const auto upper = plane.row(2 * r), lower = plane.row(std::min(2 * r + 1, plane.height() - 1));
+        const auto upper = plane.row(2 * r),
+                   lower = plane.row(std::min(2 * r + 1, plane.height() - 1));
         for (std::size_t i = 0; i < half.row(r).size(); ++i) {
             float sum = 0, valid = 0;
-            for (const float value : {upper[2 * i], upper[std::min(2 * i + 1, upper.size() - 1)], lower[2 * i],
-                                      lower[std::min(2 * i + 1, lower.size() - 1)]})
+            for (const float value : {upper[2 * i], upper[std::min(2 * i + 1, upper.size() - 1)],
+                                      lower[2 * i], lower[std::min(2 * i + 1, lower.size() - 1)]})
                 if (!std::isnan(value)) {
                     sum += value;
                     ++valid;
@@ -46,7 +49,8 @@ Plane<float> folded(const Plane<float>& plane, float quantum) {
 Plane<std::uint16_t> folded(const Plane<std::uint16_t>& plane, float) {
     Plane<std::uint16_t> half(std::max(1, plane.width() / 2), std::max(1, plane.height() / 2));
     for (int r = 0; r < half.height(); ++r)
-        for (std::size_t i = 0; i < half.row(r).size(); ++i) half.row(r)[i] = plane.row(2 * r)[2 * i];
+        for (std::size_t i = 0; i < half.row(r).size(); ++i)
+            half.row(r)[i] = plane.row(2 * r)[2 * i];
     return half;
 }
 
@@ -62,7 +66,8 @@ class CountingSink : public Sink {
         }
         count(layer, plane, std::numeric_limits<float>::quiet_NaN());
     }
-    void put(std::size_t layer, std::size_t, const Window&, const Plane<std::uint16_t>& plane) override {
+    void put(std::size_t layer, std::size_t, const Window&,
+             const Plane<std::uint16_t>& plane) override {
         count(layer, plane, std::uint16_t{0});
     }
 
@@ -75,10 +80,12 @@ class CountingSink : public Sink {
         const auto& file = run_.layers[layer].file;
         Plane<T> half;
         const auto levels = layout_of(file).levels.size();
-        for (std::size_t level = 1; level < levels && (level == 1 || half.width() * half.height() > 1); ++level) {
+        for (std::size_t level = 1;
+             level < levels && (level == 1 || half.width() * half.height() > 1); ++level) {
             half = folded(level == 1 ? plane : half, file.quantum);
             // The smallest square of sixteenths that holds it: what lies around it costs nothing.
-            encode(half, nothing, std::min(run_.tile, (std::max(half.width(), half.height()) + 15) / 16 * 16));
+            encode(half, nothing,
+                   std::min(run_.tile, (std::max(half.width(), half.height()) + 15) / 16 * 16));
         }
     }
 
@@ -88,7 +95,8 @@ class CountingSink : public Sink {
             for (int column = 0; column < plane.width(); column += side) {
                 Plane<T> square(side, side, nothing);
                 for (int r = 0; r < std::min(side, plane.height() - row); ++r)
-                    std::copy_n(plane.row(row + r).data() + column, std::min(side, plane.width() - column), square.row(r).data());
+                    std::copy_n(plane.row(row + r).data() + column,
+                                std::min(side, plane.width() - column), square.row(r).data());
                 bytes += encode_tile(square).size();
             }
     }
@@ -96,7 +104,9 @@ class CountingSink : public Sink {
 };
 
 /// The side of the windows a run works through.
-int unit_px(const Run& run) { return std::max(run.tile, block_px); }
+int unit_px(const Run& run) {
+    return std::max(run.tile, block_px);
+}
 
 long windows_of(const Run& run) {
     const long unit = unit_px(run);
@@ -113,9 +123,12 @@ std::vector<Window> spread(const Run& run, int count) {
     for (long i = 0; i < wanted; ++i) {
         // The golden ratio keeps the sample from lining up in one column.
         const long n = (all * (2 * i + 1) / (2 * wanted) / columns) * columns +
-                       static_cast<long>(static_cast<double>(columns) * std::fmod(0.6180339887 * static_cast<double>(i + 1), 1.0));
-        const int column = static_cast<int>(n % columns) * unit, row = static_cast<int>(n / columns) * unit;
-        windows.push_back({column, row, std::min(unit, run.grid.width - column), std::min(unit, run.grid.height - row)});
+                       static_cast<long>(static_cast<double>(columns) *
+                                         std::fmod(0.6180339887 * static_cast<double>(i + 1), 1.0));
+        const int column = static_cast<int>(n % columns) * unit,
+                  row = static_cast<int>(n / columns) * unit;
+        windows.push_back({column, row, std::min(unit, run.grid.width - column),
+                           std::min(unit, run.grid.height - row)});
     }
     return windows;
 }
@@ -144,11 +157,16 @@ std::vector<double> timed(const std::vector<Window>& windows, int threads, const
     return seconds;
 }
 
-double pixels_of(const Window& window) { return static_cast<double>(window.width) * window.height; }
+double pixels_of(const Window& window) {
+    return static_cast<double>(window.width) * window.height;
+}
 
-double sum_of(const std::vector<double>& values) { return std::accumulate(values.begin(), values.end(), 0.0); }
+double sum_of(const std::vector<double>& values) {
+    return std::accumulate(values.begin(), values.end(), 0.0);
+}
 
-Sampled sample_of(const Run& run, const EngineOptions& options, const std::vector<Window>& windows) {
+Sampled sample_of(const Run& run, const EngineOptions& options,
+                  const std::vector<Window>& windows) {
     Sampled sampled;
     const auto threads = static_cast<std::size_t>(options.threads);
     std::vector<std::optional<SurfaceReader>> readers(threads);
@@ -156,9 +174,11 @@ Sampled sample_of(const Run& run, const EngineOptions& options, const std::vecto
     std::vector<Plane<std::uint16_t>> flags(threads);
     // One pixel each: files are opened once a thread, however many windows there are.
     for (std::size_t t = 0; t < threads; ++t)
-        readers[t].emplace(run).read({windows.front().column, windows.front().row, 1, 1}, albedo[t], flags[t]);
+        readers[t].emplace(run).read({windows.front().column, windows.front().row, 1, 1}, albedo[t],
+                                     flags[t]);
     const auto read = timed(windows, options.threads, [&](std::size_t i, int thread) {
-        readers[static_cast<std::size_t>(thread)]->read(windows[i], albedo[static_cast<std::size_t>(thread)],
+        readers[static_cast<std::size_t>(thread)]->read(windows[i],
+                                                        albedo[static_cast<std::size_t>(thread)],
                                                         flags[static_cast<std::size_t>(thread)]);
     });
     sampled.read_s = sum_of(read);
@@ -176,14 +196,17 @@ Sampled sample_of(const Run& run, const EngineOptions& options, const std::vecto
         return sink.bytes;
     };
     // The first pass makes what windows share, the second shows what a pixel costs once that is there.
-    const auto first = timed(windows, options.threads, [&](std::size_t i, int thread) { bytes[i] = compute(windows[i], thread); });
+    const auto first = timed(windows, options.threads, [&](std::size_t i, int thread) {
+        bytes[i] = compute(windows[i], thread);
+    });
     sampled.first_s = sum_of(first);
     sampled.bytes = std::accumulate(bytes.begin(), bytes.end(), std::uint64_t{0});
     for (const auto& window : windows) sampled.pixels += pixels_of(window);
     constexpr std::size_t repeated = 4;
     const auto late = windows.size() - std::min(repeated, windows.size());
-    sampled.again_s = sum_of(timed(std::vector(windows.begin() + static_cast<long>(late), windows.end()), options.threads,
-                                   [&](std::size_t i, int thread) { (void)compute(windows[late + i], thread); }));
+    sampled.again_s = sum_of(timed(
+        std::vector(windows.begin() + static_cast<long>(late), windows.end()), options.threads,
+        [&](std::size_t i, int thread) { (void)compute(windows[late + i], thread); }));
     for (auto i = late; i < windows.size(); ++i) {
         sampled.late_s += first[i];
         sampled.late_pixels += pixels_of(windows[i]);
@@ -223,13 +246,17 @@ Estimate estimate(const Run& run, const EngineOptions& options) {
     // A pixel costs what it does when repeated; what windows share is made once in the sample, and by the
     // others as often as by the sample's last ones.
     const double late_pixels = std::max(1.0, sampled.late_pixels);
-    const double pixel_s = sampled.again_s / late_pixels, late_share_s = std::max(0.0, sampled.late_s / late_pixels - pixel_s);
-    const double shared_s = std::max(0.0, sampled.first_s - pixel_s * sampled.pixels) + late_share_s * (all_pixels - sampled.pixels);
-    const double core_s = pixel_s * all_pixels + sampled.read_s * scale * decoding_passes(run, options) + shared_s;
+    const double pixel_s = sampled.again_s / late_pixels,
+                 late_share_s = std::max(0.0, sampled.late_s / late_pixels - pixel_s);
+    const double shared_s = std::max(0.0, sampled.first_s - pixel_s * sampled.pixels) +
+                            late_share_s * (all_pixels - sampled.pixels);
+    const double core_s =
+        pixel_s * all_pixels + sampled.read_s * scale * decoding_passes(run, options) + shared_s;
     const double busy = static_cast<double>(std::min<long>(options.threads, windows_of(run)));
     // Finishing copies the encoded tiles, makes the file safe on the disk and reads it back.
     constexpr double finishing_bytes_per_s = 150e6;
-    result.seconds = sampled.shared_s + core_s / busy + static_cast<double>(result.output_bytes) / finishing_bytes_per_s;
+    result.seconds = sampled.shared_s + core_s / busy +
+                     static_cast<double>(result.output_bytes) / finishing_bytes_per_s;
     result.scratch_bytes = result.output_bytes;
     for (const auto& layer : run.layers) result.output_bytes += header_bytes(layer);
     result.memory_bytes = memory_needed(run, options);

@@ -28,7 +28,8 @@ struct LayerWork {
     Pyramid pyramid;
     std::vector<std::vector<BlockStatistics>> blocks;  ///< by band, block row by block row
 
-    LayerWork(const OutputLayer& l, const std::filesystem::path& spool_file, std::size_t block_count, std::size_t overview_bytes)
+    LayerWork(const OutputLayer& l, const std::filesystem::path& spool_file,
+              std::size_t block_count, std::size_t overview_bytes)
         : layer(&l),
           spool(Spool::create(spool_file, layout_of(l.file))),
           pyramid(l.file, spool, overview_bytes),
@@ -41,7 +42,8 @@ class TileSink : public Sink {
     TileSink(std::vector<std::unique_ptr<LayerWork>>& layers, int tile, int block_columns)
         : layers_(layers), tile_(tile), block_columns_(block_columns) {}
 
-    void put(std::size_t layer, std::size_t band, const Window& window, const Plane<float>& plane) override {
+    void put(std::size_t layer, std::size_t band, const Window& window,
+             const Plane<float>& plane) override {
         auto& work = *layers_[layer];
         add_statistics(work.blocks[band], window, plane);
         put_tiles(work, band, window, plane);
@@ -53,14 +55,17 @@ class TileSink : public Sink {
     }
 
   private:
-    void add_statistics(std::vector<BlockStatistics>& blocks, const Window& window, const Plane<float>& plane) const {
+    void add_statistics(std::vector<BlockStatistics>& blocks, const Window& window,
+                        const Plane<float>& plane) const {
         for (int r = 0; r < window.height; ++r) {
             const auto row = plane.row(r);
             const long block_row = (window.row + r) / block_px;
             for (int column = 0; column < window.width; column += block_px) {
-                const auto width = static_cast<std::size_t>(std::min(block_px, window.width - column));
+                const auto width =
+                    static_cast<std::size_t>(std::min(block_px, window.width - column));
                 const long block = block_row * block_columns_ + (window.column + column) / block_px;
-                add_row(blocks[static_cast<std::size_t>(block)], row.subspan(static_cast<std::size_t>(column), width));
+                add_row(blocks[static_cast<std::size_t>(block)],
+                        row.subspan(static_cast<std::size_t>(column), width));
             }
         }
     }
@@ -69,14 +74,17 @@ class TileSink : public Sink {
     void put_tiles(LayerWork& work, std::size_t band, const Window& window, const Plane<T>& plane) {
         const int b = static_cast<int>(band);
         if (window.width <= tile_ && window.height <= tile_) {
-            work.pyramid.put(b, static_cast<int>(window.column / tile_), static_cast<int>(window.row / tile_), plane);
+            work.pyramid.put(b, static_cast<int>(window.column / tile_),
+                             static_cast<int>(window.row / tile_), plane);
             return;
         }
         for (int row = 0; row < window.height; row += tile_)
             for (int column = 0; column < window.width; column += tile_) {
-                Plane<T> part(std::min(tile_, window.width - column), std::min(tile_, window.height - row));
+                Plane<T> part(std::min(tile_, window.width - column),
+                              std::min(tile_, window.height - row));
                 for (int r = 0; r < part.height(); ++r)
-                    std::copy_n(plane.row(row + r).data() + column, part.width(), part.row(r).data());
+                    std::copy_n(plane.row(row + r).data() + column, part.width(),
+                                part.row(r).data());
                 work.pyramid.put(b, static_cast<int>((window.column + column) / tile_),
                                  static_cast<int>((window.row + row) / tile_), part);
             }
@@ -87,7 +95,9 @@ class TileSink : public Sink {
     int block_columns_;
 };
 
-int unit_px(const Run& run) { return std::max(run.tile, block_px); }
+int unit_px(const Run& run) {
+    return std::max(run.tile, block_px);
+}
 
 std::uint64_t band_planes(const Run& run) {
     std::uint64_t planes = 0;
@@ -101,10 +111,13 @@ constexpr int band_units = 4;
 
 /// What overview tiles of all layers may take while they wait for their children. Those beyond are made from the
 /// spool, which is cheap beside a layer's making; without a limit they grow with the grid's width and its bands.
-std::uint64_t most_waiting_bytes(std::uint64_t memory_bytes) { return memory_bytes / 32; }
+std::uint64_t most_waiting_bytes(std::uint64_t memory_bytes) {
+    return memory_bytes / 32;
+}
 
 std::size_t overview_bytes(const Run& run, std::uint64_t memory_bytes) {
-    return static_cast<std::size_t>(most_waiting_bytes(memory_bytes) / std::max<std::size_t>(1, run.layers.size()));
+    return static_cast<std::size_t>(most_waiting_bytes(memory_bytes) /
+                                    std::max<std::size_t>(1, run.layers.size()));
 }
 
 /// What reading the inputs takes: all of them decoded, and planes for one pixel of a window.
@@ -156,7 +169,8 @@ std::uint64_t all_overview_bytes(const Run& run) {
 std::uint64_t waiting_bytes(const Run& run, std::uint64_t memory_bytes) {
     const auto tile = static_cast<std::uint64_t>(run.tile);
     const auto across = static_cast<std::uint64_t>(run.grid.width) / band_units + 3 * tile;
-    return std::min(most_waiting_bytes(memory_bytes), band_planes(run) * across * tile * sizeof(float));
+    return std::min(most_waiting_bytes(memory_bytes),
+                    band_planes(run) * across * tile * sizeof(float));
 }
 
 /// Bytes a thread holds for each pixel of its window: surface, heights, a tile raw and encoded; what heat radiation
@@ -175,11 +189,16 @@ std::uint64_t change_bytes_per_pixel(const Run& run) {
     constexpr std::uint64_t a_plane = sizeof(float), bands_held = 12, heat_planes = 6;
     const auto held = std::min<std::uint64_t>(run.times ? run.times->bands() : 0, bands_held);
     std::uint64_t bytes = 0, kept = 0;
-    for (const auto& layer : run.layers) kept += layer.changed && layer.changed->saved && run.changes[layer.changed->change].height ? held : 0;
-    for (const auto& change : run.changes) bytes += change.height ? bytes_per_pixel(run) : (2 + (run.terrain ? held : 0)) * a_plane;
+    for (const auto& layer : run.layers)
+        kept += layer.changed && layer.changed->saved && run.changes[layer.changed->change].height
+                    ? held
+                    : 0;
+    for (const auto& change : run.changes)
+        bytes += change.height ? bytes_per_pixel(run) : (2 + (run.terrain ? held : 0)) * a_plane;
     std::set<std::size_t> heating;
     for (const auto& layer : run.layers)
-        if (layer.changed && layer.layer->is_heat() && !run.changes[layer.changed->change].height) heating.insert(layer.changed->change);
+        if (layer.changed && layer.layer->is_heat() && !run.changes[layer.changed->change].height)
+            heating.insert(layer.changed->change);
     bytes += heating.size() * heat_planes * a_plane;
     return bytes + kept * a_plane;
 }
@@ -192,7 +211,8 @@ void check_space(const Run& run, const std::filesystem::path& folder) {
     const auto space = std::filesystem::space(folder, failure);
     if (!failure && static_cast<double>(space.available) < least)
         throw Error(Cause::output,
-                    fmt::format("only {} bytes are free, at least {:.0f} are needed", space.available, least),
+                    fmt::format("only {} bytes are free, at least {:.0f} are needed",
+                                space.available, least),
                     folder.string(), "free some space, or name another folder with --out");
 }
 
@@ -204,37 +224,51 @@ std::uint64_t raster_cache_bytes(std::uint64_t memory_bytes) {
 
 std::uint64_t decoded_bytes(const Source& source) {
     const auto& grid = source.info().grid;
-    const double bytes_per_pixel = static_cast<double>(source.info().decoded_bytes) / grid.width / grid.height;
-    const double pixels = static_cast<double>(source.target().width) * source.target().height * source.coverage() *
-                          source.columns_per_pixel() * source.rows_per_pixel();
-    return std::min(source.info().decoded_bytes, static_cast<std::uint64_t>(pixels * bytes_per_pixel));
+    const double bytes_per_pixel =
+        static_cast<double>(source.info().decoded_bytes) / grid.width / grid.height;
+    const double pixels = static_cast<double>(source.target().width) * source.target().height *
+                          source.coverage() * source.columns_per_pixel() * source.rows_per_pixel();
+    return std::min(source.info().decoded_bytes,
+                    static_cast<std::uint64_t>(pixels * bytes_per_pixel));
 }
 
 std::uint64_t memory_needed(const Run& run, const EngineOptions& options) {
     // Program and libraries with their tables, before the first pixel (measured).
     constexpr std::uint64_t process_bytes = 54u << 20;
-    const auto side = [&](int pixels) { return static_cast<std::uint64_t>(std::min(unit_px(run), pixels)); };
+    const auto side = [&](int pixels) {
+        return static_cast<std::uint64_t>(std::min(unit_px(run), pixels));
+    };
     const auto window = side(run.grid.width) * side(run.grid.height);
-    const auto windows = (static_cast<std::uint64_t>(run.grid.width) * static_cast<std::uint64_t>(run.grid.height) - 1) / window + 1;
+    const auto windows =
+        (static_cast<std::uint64_t>(run.grid.width) * static_cast<std::uint64_t>(run.grid.height) -
+         1) /
+            window +
+        1;
     const auto busy = std::min(static_cast<std::uint64_t>(options.threads), windows);
     // With terrain: sun tables, and coarse heights around the windows out to the reach (measured).
     constexpr std::uint64_t terrain_bytes = 40u << 20;
     const auto input = input_sizes(run);
-    const auto terrains = static_cast<std::uint64_t>(std::ranges::count_if(run.changes, [](const Change& c) { return c.height.has_value(); })) +
+    const auto terrains = static_cast<std::uint64_t>(std::ranges::count_if(
+                              run.changes, [](const Change& c) { return c.height.has_value(); })) +
                           (run.terrain ? 1 : 0);
-    return process_bytes + terrains * terrain_bytes + std::min(raster_cache_bytes(options.memory_bytes), input.decoded_bytes) +
+    return process_bytes + terrains * terrain_bytes +
+           std::min(raster_cache_bytes(options.memory_bytes), input.decoded_bytes) +
            std::min(waiting_bytes(run, options.memory_bytes), all_overview_bytes(run)) +
-           busy * window * (bytes_per_pixel(run) + change_bytes_per_pixel(run) + input.bytes_per_pixel);
+           busy * window *
+               (bytes_per_pixel(run) + change_bytes_per_pixel(run) + input.bytes_per_pixel);
 }
 
 Execution execute(const Run& run, const EngineOptions& options, const OutputSet& outputs) {
     check_space(run, outputs.folder());
     const int block_columns = (run.grid.width + block_px - 1) / block_px;
     const int block_rows = (run.grid.height + block_px - 1) / block_px;
-    const auto block_count = static_cast<std::size_t>(block_columns) * static_cast<std::size_t>(block_rows);
+    const auto block_count =
+        static_cast<std::size_t>(block_columns) * static_cast<std::size_t>(block_rows);
     std::vector<std::unique_ptr<LayerWork>> layers;
     for (const auto& layer : run.layers)
-        layers.push_back(std::make_unique<LayerWork>(layer, outputs.staged(layer.file.name + ".spool"), block_count, overview_bytes(run, options.memory_bytes)));
+        layers.push_back(
+            std::make_unique<LayerWork>(layer, outputs.staged(layer.file.name + ".spool"),
+                                        block_count, overview_bytes(run, options.memory_bytes)));
 
     const SharedLight light(run, options.threads, outputs.staged("").parent_path());
     std::vector<std::optional<Flow>> flows(static_cast<std::size_t>(options.threads));
@@ -242,7 +276,8 @@ Execution execute(const Run& run, const EngineOptions& options, const OutputSet&
     const auto units = units_in_order(run.grid.width, run.grid.height, unit_px(run), band_units);
     std::atomic<std::uint64_t> pixels_done{0};
     const double pixels = static_cast<double>(run.grid.width) * run.grid.height;
-    const auto report = [&](const std::string& step, double done, double total, const std::string& unit) {
+    const auto report = [&](const std::string& step, double done, double total,
+                            const std::string& unit) {
         if (options.progress) options.progress({step, done, total, unit});
     };
     parallel_for(units.size(), options.threads, [&](std::size_t i, int thread) {
@@ -253,9 +288,11 @@ Execution execute(const Run& run, const EngineOptions& options, const OutputSet&
             flows[t]->compute(window, sinks[t]);
         } catch (const Error& error) {
             throw error.at(fmt::format("columns {} to {}, rows {} to {}", window.column,
-                                       window.column + window.width - 1, window.row, window.row + window.height - 1));
+                                       window.column + window.width - 1, window.row,
+                                       window.row + window.height - 1));
         }
-        const auto done = pixels_done += static_cast<std::uint64_t>(window.width) * static_cast<std::uint64_t>(window.height);
+        const auto done = pixels_done +=
+            static_cast<std::uint64_t>(window.width) * static_cast<std::uint64_t>(window.height);
         report("computing", static_cast<double>(done) / 1e6, pixels / 1e6, "Mpixel");
     });
     throw_if_stopped();
@@ -272,8 +309,9 @@ Execution execute(const Run& run, const EngineOptions& options, const OutputSet&
         LayerResult finished{work.layer->file.name + ".tif", {}, 0};
         if (work.layer->file.sample == Sample::float32)
             for (const auto& blocks : work.blocks)
-                finished.bands.push_back(combined(blocks, static_cast<std::uint64_t>(run.grid.width) *
-                                                              static_cast<std::uint64_t>(run.grid.height)));
+                finished.bands.push_back(
+                    combined(blocks, static_cast<std::uint64_t>(run.grid.width) *
+                                         static_cast<std::uint64_t>(run.grid.height)));
         const auto file = outputs.staged(finished.file_name);
         finish_layer(work.layer->file, work.spool, finished.bands, file);
         work.spool.remove();

@@ -28,7 +28,8 @@ std::vector<Window> units_in_order(int width, int height, int unit, int band) {
                 const int column = left + every_other_bit(n), row = top + every_other_bit(n >> 1);
                 if (column >= columns || row >= rows) continue;
                 windows.push_back({static_cast<long>(column) * unit, static_cast<long>(row) * unit,
-                                   std::min(unit, width - column * unit), std::min(unit, height - row * unit)});
+                                   std::min(unit, width - column * unit),
+                                   std::min(unit, height - row * unit)});
             }
     return windows;
 }

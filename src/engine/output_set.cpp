@@ -27,12 +27,14 @@ constexpr const char* checksum_file = "SHA256SUMS";
 constexpr const char* lock_file = ".sunbudget.lock";
 constexpr const char* staging_prefix = ".sunbudget-";
 
-[[noreturn]] void cannot(const std::string& what, const fs::path& where, const std::string& todo = {}) {
+[[noreturn]] void cannot(const std::string& what, const fs::path& where,
+                         const std::string& todo = {}) {
     throw Error(Cause::output, what + ": " + std::strerror(errno), where.string(), todo);
 }
 
 std::string elsewhere(OutputSet::Mark mark) {
-    return mark == OutputSet::Mark::checksums ? "name another folder with --out" : "name another file with --output";
+    return mark == OutputSet::Mark::checksums ? "name another folder with --out"
+                                              : "name another file with --output";
 }
 
 std::string read_small(int descriptor) {
@@ -56,7 +58,8 @@ OutputSet::OutputSet(fs::path folder, Mark mark) : folder_(std::move(folder)), m
     lock();
     remove_leftovers();
     std::string pattern = (folder_ / (std::string(staging_prefix) + "XXXXXX")).string();
-    if (mkdtemp(pattern.data()) == nullptr) cannot("cannot write to the output folder", folder_, elsewhere(mark_));
+    if (mkdtemp(pattern.data()) == nullptr)
+        cannot("cannot write to the output folder", folder_, elsewhere(mark_));
     staging_ = pattern;
 }
 
@@ -76,8 +79,8 @@ OutputSet::~OutputSet() {
 void OutputSet::lock() {
     const auto where = folder_ / lock_file;
     for (;;) {
-        const int descriptor = openat(folder_descriptor_, lock_file,
-                                      O_RDWR | O_CREAT | O_NOFOLLOW | O_CLOEXEC, 0644);
+        const int descriptor =
+            openat(folder_descriptor_, lock_file, O_RDWR | O_CREAT | O_NOFOLLOW | O_CLOEXEC, 0644);
         if (descriptor < 0) cannot("cannot write to the output folder", folder_, elsewhere(mark_));
         if (flock(descriptor, LOCK_EX | LOCK_NB) != 0) {
             const auto holder = read_small(descriptor);
@@ -85,10 +88,12 @@ void OutputSet::lock() {
             throw Error(Cause::output, "another run is writing here: " + holder, folder_.string(),
                         "wait for it, or " + elsewhere(mark_));
         }
-        struct stat opened {}, named {};
-        const bool same = fstat(descriptor, &opened) == 0 &&
-                          fstatat(folder_descriptor_, lock_file, &named, AT_SYMLINK_NOFOLLOW) == 0 &&
-                          opened.st_ino == named.st_ino;
+        struct stat opened {
+        }, named{};
+        const bool same =
+            fstat(descriptor, &opened) == 0 &&
+            fstatat(folder_descriptor_, lock_file, &named, AT_SYMLINK_NOFOLLOW) == 0 &&
+            opened.st_ino == named.st_ino;
         if (!same) {
             close(descriptor);
             continue;
@@ -113,7 +118,9 @@ void OutputSet::remove_leftovers() const {
     }
 }
 
-fs::path OutputSet::staged(const std::string& name) const { return staging_ / name; }
+fs::path OutputSet::staged(const std::string& name) const {
+    return staging_ / name;
+}
 
 void OutputSet::write_checksums(const std::vector<std::string>& names) const {
     std::string lines;
@@ -122,7 +129,8 @@ void OutputSet::write_checksums(const std::vector<std::string>& names) const {
 }
 
 void OutputSet::publish(const std::vector<std::string>& names) {
-    const auto former = mark_ == Mark::checksums ? complete_set(folder_) : std::vector<std::string>();
+    const auto former =
+        mark_ == Mark::checksums ? complete_set(folder_) : std::vector<std::string>();
     for (const auto& name : names) OutputFile::open(staged(name), true).sync();
     if (mark_ == Mark::checksums) {
         write_checksums(names);

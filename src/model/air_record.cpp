@@ -39,7 +39,8 @@ class ClearGlobal {
     [[nodiscard]] double mean(const TimeSpan& span) const {
         const double count = std::max(1.0, std::ceil((span.end - span.begin) / look_s));
         double sum = 0;
-        for (double i = 0; i < count; ++i) sum += at(span.begin + (i + 0.5) * (span.end - span.begin) / count);
+        for (double i = 0; i < count; ++i)
+            sum += at(span.begin + (i + 0.5) * (span.end - span.begin) / count);
         return sum / count;
     }
 
@@ -49,8 +50,10 @@ class ClearGlobal {
         const double sine = with_parallax(dot(sun_direction(sun), up_), sun.distance_au);
         if (sine <= 0) return 0;
         const int month = Zone().local(utc).date.month;
-        const auto light = sky_moment(sky_, {utc, month, extraterrestrial_normal(sun.distance_au), std::asin(sine), station_.height_m, pressure_});
-        return light.beam_normal_w_m2 * sine + light.diffuse_w_m2 + albedo_where_unknown * light.thrown_back_w_m2;
+        const auto light = sky_moment(sky_, {utc, month, extraterrestrial_normal(sun.distance_au),
+                                             std::asin(sine), station_.height_m, pressure_});
+        return light.beam_normal_w_m2 * sine + light.diffuse_w_m2 +
+               albedo_where_unknown * light.thrown_back_w_m2;
     }
 
     Station station_;
@@ -62,7 +65,8 @@ class ClearGlobal {
 
 class Builder {
   public:
-    Builder(const WeatherRecord& record, const Station& station, const Sky& clear, const AirWants& wants)
+    Builder(const WeatherRecord& record, const Station& station, const Sky& clear,
+            const AirWants& wants)
         : record_(record), station_(station), clear_(clear), wants_(wants) {}
 
     AirRecord built() {
@@ -85,7 +89,8 @@ class Builder {
     }
     [[nodiscard]] bool measured() const { return wants_.measured && has(Weather::longwave_down); }
     [[nodiscard]] bool has_humidity() const {
-        return has(Weather::vapour_pressure) || has(Weather::dew_point) || has(Weather::relative_humidity);
+        return has(Weather::vapour_pressure) || has(Weather::dew_point) ||
+               has(Weather::relative_humidity);
     }
 
     void refuse_what_is_missing() const;
@@ -105,22 +110,29 @@ class Builder {
 
 void Builder::refuse_what_is_missing() const {
     const auto refuse = [](const std::string& what) {
-        throw Error(Cause::input, "the weather table has no " + what + ", without which the sky's longwave is not known", {},
-                    "name its column in weather.columns");
+        throw Error(
+            Cause::input,
+            "the weather table has no " + what + ", without which the sky's longwave is not known",
+            {}, "name its column in weather.columns");
     };
     if (!measured() && !has(Weather::air_temperature)) refuse("air_temperature");
-    if (!measured() && !has_humidity()) refuse("humidity (relative_humidity, dew_point or vapour_pressure)");
+    if (!measured() && !has_humidity())
+        refuse("humidity (relative_humidity, dew_point or vapour_pressure)");
     if (wants_.surface && !has(Weather::surface_temperature)) refuse("surface_temperature");
 }
 
 double Builder::vapour_hpa(std::size_t row) const {
-    if (const double pressure = value(Weather::vapour_pressure, row); !std::isnan(pressure)) return pressure;
-    if (const double dew = value(Weather::dew_point, row); !std::isnan(dew)) return saturation_vapour_pressure_hpa(dew);
-    return value(Weather::relative_humidity, row) * saturation_vapour_pressure_hpa(value(Weather::air_temperature, row));
+    if (const double pressure = value(Weather::vapour_pressure, row); !std::isnan(pressure))
+        return pressure;
+    if (const double dew = value(Weather::dew_point, row); !std::isnan(dew))
+        return saturation_vapour_pressure_hpa(dew);
+    return value(Weather::relative_humidity, row) *
+           saturation_vapour_pressure_hpa(value(Weather::air_temperature, row));
 }
 
 AirMoment Builder::moment(std::size_t row, const CloudTerms& terms) const {
-    AirMoment air{value(Weather::air_temperature, row), vapour_hpa(row), terms, nan_value, nan_value};
+    AirMoment air{value(Weather::air_temperature, row), vapour_hpa(row), terms, nan_value,
+                  nan_value};
     if (measured()) air.longwave_down_w_m2 = value(Weather::longwave_down, row);
     if (wants_.surface) air.surface_k = value(Weather::surface_temperature, row);
     return air;
@@ -128,18 +140,22 @@ AirMoment Builder::moment(std::size_t row, const CloudTerms& terms) const {
 
 bool Builder::complete(const AirMoment& air) const {
     if (wants_.surface && std::isnan(air.surface_k)) return false;
-    if (!std::isnan(air.longwave_down_w_m2)) return !has(Weather::air_temperature) || !std::isnan(air.temperature_k);
-    return !std::isnan(air.temperature_k) && !std::isnan(air.vapour_pressure_hpa) && !std::isnan(air.cloud.factor);
+    if (!std::isnan(air.longwave_down_w_m2))
+        return !has(Weather::air_temperature) || !std::isnan(air.temperature_k);
+    return !std::isnan(air.temperature_k) && !std::isnan(air.vapour_pressure_hpa) &&
+           !std::isnan(air.cloud.factor);
 }
 
 std::vector<CloudTerms> Builder::cloud_terms_of_rows() {
     std::vector<CloudTerms> terms(record_.intervals.size());
-    if (measured()) found_.cloud_from = weather_names[static_cast<std::size_t>(Weather::longwave_down)];
+    if (measured())
+        found_.cloud_from = weather_names[static_cast<std::size_t>(Weather::longwave_down)];
     if (!wants_.cloud) return terms;
     if (has(Weather::cloud)) {
         if (!measured()) found_.cloud_from = "cloud";
         const auto cloud = record_.values(Weather::cloud);
-        std::transform(cloud.begin(), cloud.end(), terms.begin(), [&](double c) { return cloud_terms(wants_.law, c); });
+        std::transform(cloud.begin(), cloud.end(), terms.begin(),
+                       [&](double c) { return cloud_terms(wants_.law, c); });
     } else if (has(Weather::global)) {
         if (!measured()) found_.cloud_from = "global";
         auto numbers = numbers_by_sun();
@@ -157,14 +173,17 @@ std::vector<double> Builder::numbers_by_sun() const {
     const auto global = record_.values(Weather::global);
     std::vector<double> numbers(spans.size(), nan_value), clear(spans.size());
     const ClearGlobal sky(station_, clear_, spans.front().begin, spans.back().end);
-    std::transform(spans.begin(), spans.end(), clear.begin(), [&](const TimeSpan& span) { return sky.mean(span); });
+    std::transform(spans.begin(), spans.end(), clear.begin(),
+                   [&](const TimeSpan& span) { return sky.mean(span); });
     const double lowest_sine = std::sin(rad_from_deg(lowest_sun_deg));
     std::size_t first = 0;
     for (std::size_t i = 0; i < spans.size(); ++i) {
         const double middle = (spans[i].begin + spans[i].end) / 2;
         const double half_s = std::max(hour_s, spans[i].end - spans[i].begin) / 2;
         while (spans[first].end <= middle - half_s) ++first;
-        const bool high = spans[i].end - spans[i].begin > 3 * hour_s ? clear[i] > 0 : sky.sine_at(middle) > lowest_sine;
+        const bool high = spans[i].end - spans[i].begin > 3 * hour_s
+                              ? clear[i] > 0
+                              : sky.sine_at(middle) > lowest_sine;
         if (!high) continue;
         double sum = 0, clear_sum = 0;
         for (auto k = first; k < spans.size() && spans[k].begin < middle + half_s; ++k) {
@@ -197,13 +216,15 @@ void Builder::interpolate(std::vector<double>& numbers) {
             continue;
         }
         const auto from = *(after - 1), to = *after;
-        numbers[i] = numbers[from] + (time(i) - time(from)) / (time(to) - time(from)) * (numbers[to] - numbers[from]);
+        numbers[i] = numbers[from] + (time(i) - time(from)) / (time(to) - time(from)) *
+                                         (numbers[to] - numbers[from]);
     }
 }
 
 }  // namespace
 
-AirRecord air_record(const WeatherRecord& record, const Station& station, const Sky& clear, const AirWants& wants) {
+AirRecord air_record(const WeatherRecord& record, const Station& station, const Sky& clear,
+                     const AirWants& wants) {
     return Builder(record, station, clear, wants).built();
 }
 

@@ -18,7 +18,8 @@ float along_line(const Plane<float>& heights_m, int column, int row, int across,
     for (std::size_t side = 0; side < 2; ++side) {
         const int sign = side == 0 ? -1 : 1;
         for (int step = 1; step <= bridged_px && away[side] == 0; ++step) {
-            const float height = heights_m.at(column + sign * step * across, row + sign * step * down);
+            const float height =
+                heights_m.at(column + sign * step * across, row + sign * step * down);
             if (std::isnan(height)) continue;
             away[side] = step;
             ground[side] = height;
@@ -48,7 +49,8 @@ float bridged(const Plane<float>& heights_m, int column, int row) {
 long bridge_holes(const Plane<float>& heights_m, Plane<float>& out) {
     long filled = 0;
     for (int r = 0; r < out.height(); ++r) {
-        const auto from = heights_m.row(r + bridged_px).subspan(bridged_px, static_cast<std::size_t>(out.width()));
+        const auto from = heights_m.row(r + bridged_px)
+                              .subspan(bridged_px, static_cast<std::size_t>(out.width()));
         const auto to = out.row(r);
         std::copy(from.begin(), from.end(), to.begin());
         for (int c = 0; c < out.width(); ++c) {
@@ -121,7 +123,8 @@ Window extent_on_grid(std::span<const Source> sources, const Grid& grid) {
     const auto whole = [](double value) { return std::clamp(value, -1e6, 1e6); };
     const long first_column = static_cast<long>(std::floor(whole(left)));
     const long first_row = static_cast<long>(std::floor(whole(top)));
-    return {first_column, first_row, static_cast<int>(std::ceil(whole(right))) - static_cast<int>(first_column),
+    return {first_column, first_row,
+            static_cast<int>(std::ceil(whole(right))) - static_cast<int>(first_column),
             static_cast<int>(std::ceil(whole(bottom))) - static_cast<int>(first_row)};
 }
 

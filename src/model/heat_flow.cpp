@@ -16,7 +16,8 @@ namespace {
 constexpr float nan_value = std::numeric_limits<float>::quiet_NaN();
 
 void fit(Plane<float>& plane, const Window& window) {
-    if (plane.width() != window.width || plane.height() != window.height) plane = Plane<float>(window.width, window.height);
+    if (plane.width() != window.width || plane.height() != window.height)
+        plane = Plane<float>(window.width, window.height);
 }
 
 const CoverSurface* cover_of(const Run& run) {
@@ -52,7 +53,8 @@ struct HeatFlow::State {
     std::optional<PointLongwave> point;
     std::optional<ChangeReader> change;  ///< one that has been carried out
 
-    std::optional<Reader> cover, emissivity_raster, red, nir, surface, surface_quality, temperature, humidity;
+    std::optional<Reader> cover, emissivity_raster, red, nir, surface, surface_quality, temperature,
+        humidity;
     Window window;
     Plane<float> emissivity, dry, built, class_emissivity;
     Plane<float> red_plane, nir_plane, surface_k, air_k, humid;
@@ -66,7 +68,8 @@ struct HeatFlow::State {
     State(const Run& r, LongwaveField* f, int t) : run(r), heat(r.heat), field(f), thread(t) {
         if (const auto* classes = cover_of(run)) cover.emplace(classes->codes);
         if (heat.emissivity) {
-            if (const auto* raster = std::get_if<Source>(&*heat.emissivity)) emissivity_raster.emplace(*raster);
+            if (const auto* raster = std::get_if<Source>(&*heat.emissivity))
+                emissivity_raster.emplace(*raster);
             if (const auto* ndvi = std::get_if<NdviEmissivity>(&*heat.emissivity)) {
                 red.emplace(ndvi->red);
                 nir.emplace(ndvi->nir);
@@ -88,7 +91,8 @@ struct HeatFlow::State {
     void air_by_pixel(std::size_t band);
     void surface_by_pixel(const AirMoment& numbers);
     void come_down(const Plane<float>& sky_view);
-    void go_up(const Plane<float>& own_emissivity, const Plane<float>& own_dry, const Plane<float>& net_shortwave, HeatPlanes& to);
+    void go_up(const Plane<float>& own_emissivity, const Plane<float>& own_dry,
+               const Plane<float>& net_shortwave, HeatPlanes& to);
     void take_net(HeatPlanes& to);
 };
 
@@ -99,13 +103,16 @@ void keep_dry(std::span<const float> dry, std::span<float> values) noexcept {
 void HeatFlow::State::read_emissivity(const Plane<std::uint16_t>& flags) {
     if (!heat.emissivity) return;
     fit(emissivity, window);
-    if (const auto* number = std::get_if<double>(&*heat.emissivity)) emissivity.fill(static_cast<float>(*number));
+    if (const auto* number = std::get_if<double>(&*heat.emissivity))
+        emissivity.fill(static_cast<float>(*number));
     if (emissivity_raster) {
         emissivity_raster->read(window, emissivity);
         for (int r = 0; r < window.height; ++r)
-            for (auto& value : emissivity.row(r)) value = value >= 0 && value <= 1 ? value : nan_value;
+            for (auto& value : emissivity.row(r))
+                value = value >= 0 && value <= 1 ? value : nan_value;
     }
-    if (std::holds_alternative<ClassEmissivity>(*heat.emissivity)) cover->read_values(window, cover_of(run)->emissivity, emissivity);
+    if (std::holds_alternative<ClassEmissivity>(*heat.emissivity))
+        cover->read_values(window, cover_of(run)->emissivity, emissivity);
     if (!red) return;
     red->read(window, red_plane);
     nir->read(window, nir_plane);
@@ -144,10 +151,12 @@ void HeatFlow::State::read_surface() {
     Plane<std::int32_t> codes;
     surface_quality->read_codes(window, codes);
     std::vector<RejectReason> reasons(static_cast<std::size_t>(window.width));
-    std::vector<std::uint16_t> flags(reasons.size());  // those of the albedo's image are the layer quality's
+    std::vector<std::uint16_t> flags(
+        reasons.size());  // those of the albedo's image are the layer quality's
     for (int r = 0; r < window.height; ++r) {
         std::ranges::fill(reasons, not_rejected);
-        apply_quality(codes.row(r), heat.surface_quality->tests, heat.surface_quality->missing, flags, reasons);
+        apply_quality(codes.row(r), heat.surface_quality->tests, heat.surface_quality->missing,
+                      flags, reasons);
         drop_rejected(reasons, surface_k.row(r));
     }
 }
@@ -157,7 +166,8 @@ void HeatFlow::State::air_from_field(std::size_t band) {
     using Part = LongwaveField::Part;
     const auto fill = [&](Part part, Plane<float>& plane) {
         fit(plane, window);
-        for (const auto& block : prepared) LongwaveField::fill(block, band, part, *heights_m, plane);
+        for (const auto& block : prepared)
+            LongwaveField::fill(block, band, part, *heights_m, plane);
         if (!heat.thin.empty() && heat.thin[band]) plane.fill(nan_value);
     };
     fill(Part::sky, sky);
@@ -187,7 +197,8 @@ void HeatFlow::State::air_by_pixel(std::size_t band) {
         else
             std::fill(t.begin(), t.end(), static_cast<float>(numbers.temperature_k));
         if (!temperature && lapse_k_m != 0 && run.terrain)
-            for (std::size_t i = 0; i < t.size(); ++i) t[i] -= lapse_k_m * (heights_m->row(r)[i] - station_m);
+            for (std::size_t i = 0; i < t.size(); ++i)
+                t[i] -= lapse_k_m * (heights_m->row(r)[i] - station_m);
         const auto h = humid.row(r);
         if (longwave.humidity_as == HumidityAs::dew_point)
             saturation_vapour_pressure(h, vapour_hpa);
@@ -196,7 +207,8 @@ void HeatFlow::State::air_by_pixel(std::size_t band) {
         else
             saturation_vapour_pressure(t, vapour_hpa);
         if (longwave.humidity_as == HumidityAs::relative)
-            std::transform(vapour_hpa.begin(), vapour_hpa.end(), h.begin(), vapour_hpa.begin(), std::multiplies<>());
+            std::transform(vapour_hpa.begin(), vapour_hpa.end(), h.begin(), vapour_hpa.begin(),
+                           std::multiplies<>());
         clear_longwave(longwave.formula, t, vapour_hpa, sky.row(r));
         cloudy_longwave(t, numbers.cloud, sky.row(r));
         black_body(t, air_black.row(r));
@@ -212,7 +224,8 @@ void HeatFlow::State::surface_by_pixel(const AirMoment& numbers) {
         const auto t = band_air_k.row(r);
         const auto to = out.surface_k.row(r);
         std::transform(t.begin(), t.end(), to.begin(), [&](float air) {
-            return std::isnan(above_k) ? static_cast<float>(numbers.surface_k) : air + static_cast<float>(above_k);
+            return std::isnan(above_k) ? static_cast<float>(numbers.surface_k)
+                                       : air + static_cast<float>(above_k);
         });
         black_body(to, surface_black.row(r));
     }
@@ -221,7 +234,8 @@ void HeatFlow::State::surface_by_pixel(const AirMoment& numbers) {
 /// A daily method's field is of the net already.
 void HeatFlow::State::take_net(HeatPlanes& to) {
     fit(to.net, window);
-    for (int r = 0; r < window.height; ++r) std::copy(sky.row(r).begin(), sky.row(r).end(), to.net.row(r).begin());
+    for (int r = 0; r < window.height; ++r)
+        std::copy(sky.row(r).begin(), sky.row(r).end(), to.net.row(r).begin());
 }
 
 /// From the sky and the ground in view.
@@ -230,7 +244,8 @@ void HeatFlow::State::come_down(const Plane<float>& sky_view) {
     for (int r = 0; r < window.height; ++r) {
         const auto down = out.down.row(r);
         if (heat.surface == SurfaceFrom::raster) {
-            std::copy(surface_k.row(r).begin(), surface_k.row(r).end(), out.surface_k.row(r).begin());
+            std::copy(surface_k.row(r).begin(), surface_k.row(r).end(),
+                      out.surface_k.row(r).begin());
             black_body(surface_k.row(r), surface_black.row(r));
         }
         if (sky_view.empty()) {
@@ -240,7 +255,8 @@ void HeatFlow::State::come_down(const Plane<float>& sky_view) {
             auto around = air_black.row(r);
             if (heat.surface == SurfaceFrom::air || heat.surface == SurfaceFrom::raster) {
                 const auto own = surface_black.row(r);
-                for (std::size_t i = 0; i < around.size(); ++i) around[i] = std::isnan(own[i]) ? around[i] : own[i];
+                for (std::size_t i = 0; i < around.size(); ++i)
+                    around[i] = std::isnan(own[i]) ? around[i] : own[i];
             }
             longwave_on_surface(sky_view.row(r), sky.row(r), around, down);
         }
@@ -248,14 +264,16 @@ void HeatFlow::State::come_down(const Plane<float>& sky_view) {
 }
 
 /// From there to what goes up and is left, where the ground's temperature and emissivity are known.
-void HeatFlow::State::go_up(const Plane<float>& own_emissivity, const Plane<float>& own_dry, const Plane<float>& net_shortwave, HeatPlanes& to) {
+void HeatFlow::State::go_up(const Plane<float>& own_emissivity, const Plane<float>& own_dry,
+                            const Plane<float>& net_shortwave, HeatPlanes& to) {
     for (auto* plane : {&to.up, &to.net, &to.surface_k}) fit(*plane, window);
     if (heat.surface == SurfaceFrom::nowhere || !heat.emissivity) return;
     const auto exchange = static_cast<float>(heat_exchange_w_m2_k(heat.wind));
     for (int r = 0; r < window.height; ++r) {
         const std::span<const float> down = out.down.row(r), emits = own_emissivity.row(r);
         if (heat.surface == SurfaceFrom::balance) {
-            balanced_temperature(net_shortwave.row(r), emits, down, band_air_k.row(r), exchange, to.surface_k.row(r));
+            balanced_temperature(net_shortwave.row(r), emits, down, band_air_k.row(r), exchange,
+                                 to.surface_k.row(r));
             keep_dry(own_dry.row(r), to.surface_k.row(r));
             black_body(to.surface_k.row(r), surface_black.row(r));
         }
@@ -264,12 +282,13 @@ void HeatFlow::State::go_up(const Plane<float>& own_emissivity, const Plane<floa
     }
 }
 
-HeatFlow::HeatFlow(const Run& run, LongwaveField* field, int thread) : state_(std::make_unique<State>(run, field, thread)) {}
+HeatFlow::HeatFlow(const Run& run, LongwaveField* field, int thread)
+    : state_(std::make_unique<State>(run, field, thread)) {}
 HeatFlow::~HeatFlow() = default;
 HeatFlow::HeatFlow(HeatFlow&&) noexcept = default;
 
-void HeatFlow::read(const Window& window, const std::vector<Window>& blocks, const Plane<float>& heights_m,
-                    const Plane<std::uint16_t>& flags) {
+void HeatFlow::read(const Window& window, const std::vector<Window>& blocks,
+                    const Plane<float>& heights_m, const Plane<std::uint16_t>& flags) {
     auto& s = *state_;
     s.window = window;
     s.heights_m = &heights_m;
@@ -284,22 +303,33 @@ void HeatFlow::read(const Window& window, const std::vector<Window>& blocks, con
     if (s.humidity) s.humidity->read(window, s.humid);
     s.prepared.clear();
     if (s.field != nullptr)
-        for (const auto& block : blocks) s.prepared.push_back(s.field->prepare(block, window, heights_m, s.thread));
+        for (const auto& block : blocks)
+            s.prepared.push_back(s.field->prepare(block, window, heights_m, s.thread));
 }
 
-const Plane<float>& HeatFlow::emissivity() const { return state_->emissivity; }
-const Plane<float>& HeatFlow::dry() const { return state_->dry; }
+const Plane<float>& HeatFlow::emissivity() const {
+    return state_->emissivity;
+}
+const Plane<float>& HeatFlow::dry() const {
+    return state_->dry;
+}
 
-const Plane<float>& HeatFlow::air_k() const { return state_->band_air_k; }
-const Plane<float>& HeatFlow::sky() const { return state_->sky; }
+const Plane<float>& HeatFlow::air_k() const {
+    return state_->band_air_k;
+}
+const Plane<float>& HeatFlow::sky() const {
+    return state_->sky;
+}
 
-const HeatPlanes& HeatFlow::band(std::size_t band, const Plane<float>& sky_view, const Plane<float>& net_shortwave) {
+const HeatPlanes& HeatFlow::band(std::size_t band, const Plane<float>& sky_view,
+                                 const Plane<float>& net_shortwave) {
     auto& s = *state_;
     if (!s.heat.longwave) {
         // Only a raster of temperatures needs no air.
         fit(s.out.surface_k, s.window);
         for (int r = 0; r < s.window.height && s.surface; ++r)
-            std::copy(s.surface_k.row(r).begin(), s.surface_k.row(r).end(), s.out.surface_k.row(r).begin());
+            std::copy(s.surface_k.row(r).begin(), s.surface_k.row(r).end(),
+                      s.out.surface_k.row(r).begin());
         return s.out;
     }
     if (s.field != nullptr)
@@ -315,7 +345,8 @@ const HeatPlanes& HeatFlow::band(std::size_t band, const Plane<float>& sky_view,
     return s.out;
 }
 
-void HeatFlow::beside(const Plane<float>& emissivity, const Plane<float>& dry, const Plane<float>& net_shortwave, HeatPlanes& changed) {
+void HeatFlow::beside(const Plane<float>& emissivity, const Plane<float>& dry,
+                      const Plane<float>& net_shortwave, HeatPlanes& changed) {
     if (state_->heat.longwave->daily)
         state_->take_net(changed);
     else
@@ -324,7 +355,8 @@ void HeatFlow::beside(const Plane<float>& emissivity, const Plane<float>& dry, c
 
 std::uint64_t HeatFlow::infinities() const {
     std::uint64_t count = 0;
-    for (const auto* reader : {&state_->emissivity_raster, &state_->surface, &state_->temperature, &state_->humidity})
+    for (const auto* reader :
+         {&state_->emissivity_raster, &state_->surface, &state_->temperature, &state_->humidity})
         if (*reader) count += (*reader)->infinities();
     return count;
 }

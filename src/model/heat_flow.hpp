@@ -25,8 +25,8 @@ class HeatFlow {
 
     /// Reads what holds for all bands of a window that lies on the lattice of blocks. `heights_m` is looked at
     /// where the run has terrain; `flags` are the layer quality's.
-    void read(const Window& window, const std::vector<Window>& blocks, const Plane<float>& heights_m,
-              const Plane<std::uint16_t>& flags);
+    void read(const Window& window, const std::vector<Window>& blocks,
+              const Plane<float>& heights_m, const Plane<std::uint16_t>& flags);
 
     /// NaN where nobody knows it.
     [[nodiscard]] const Plane<float>& emissivity() const;
@@ -34,11 +34,13 @@ class HeatFlow {
     [[nodiscard]] const Plane<float>& dry() const;
 
     /// One band. `sky_view` is empty on open ground; `net_shortwave` is looked at for the balance alone.
-    [[nodiscard]] const HeatPlanes& band(std::size_t band, const Plane<float>& sky_view, const Plane<float>& net_shortwave);
+    [[nodiscard]] const HeatPlanes& band(std::size_t band, const Plane<float>& sky_view,
+                                         const Plane<float>& net_shortwave);
 
     /// The last band once more, over ground changed in itself: `up`, `net` and a balanced `surface_k`. Only where the
     /// run has longwave.
-    void beside(const Plane<float>& emissivity, const Plane<float>& dry, const Plane<float>& net_shortwave, HeatPlanes& changed);
+    void beside(const Plane<float>& emissivity, const Plane<float>& dry,
+                const Plane<float>& net_shortwave, HeatPlanes& changed);
 
     /// Of the last band, on the way to it: the air, and what the whole sky sends to level open ground.
     [[nodiscard]] const Plane<float>& air_k() const;

@@ -24,8 +24,8 @@ struct LocalFrame {
 
     LocalFrame(double latitude_rad, double longitude_rad)
         : east{-std::sin(longitude_rad), std::cos(longitude_rad), 0},
-          north{-std::sin(latitude_rad) * std::cos(longitude_rad), -std::sin(latitude_rad) * std::sin(longitude_rad),
-                std::cos(latitude_rad)},
+          north{-std::sin(latitude_rad) * std::cos(longitude_rad),
+                -std::sin(latitude_rad) * std::sin(longitude_rad), std::cos(latitude_rad)},
           up(up_direction(latitude_rad, longitude_rad)) {}
 
     /// Unit vector to the sun, its height lowered by parallax.
@@ -43,7 +43,7 @@ struct LocalFrame {
 struct LitMoment {
     std::array<double, 3> to_sun;
     UtcSeconds begin, end;  ///< equal for an instant
-    double weight;                ///< share of the period: W m-2 times weight add up to its mean
+    double weight;          ///< share of the period: W m-2 times weight add up to its mean
     SkyMoment sky;
 
     [[nodiscard]] double sunlit_h_a_day() const { return 24 * weight; }
@@ -74,8 +74,8 @@ struct PointLight::Work {
 
     /// Calls visit(LitMoment) for every lit step of a band, in order.
     template <typename Visit>
-    void visit(std::size_t band, int only_month, const Sky& under, double latitude_rad, double longitude_rad, double height_m,
-               Visit&& visit) const {
+    void visit(std::size_t band, int only_month, const Sky& under, double latitude_rad,
+               double longitude_rad, double height_m, Visit&& visit) const {
         const LocalFrame frame(latitude_rad, longitude_rad);
         const double pressure = pressure_ratio(height_m);
         if (times.instant) {
@@ -83,9 +83,10 @@ struct PointLight::Work {
             const auto to_sun = frame.to(sun);
             if (to_sun[2] <= 0) return;
             const int month = times.zone.local(*times.instant, longitude_rad).date.month;
-            visit(LitMoment{to_sun, *times.instant, *times.instant, 1,
-                            sky_moment(under, {*times.instant, month, extraterrestrial_normal(sun.distance_au),
-                                             std::asin(to_sun[2]), height_m, pressure})});
+            visit(LitMoment{
+                to_sun, *times.instant, *times.instant, 1,
+                sky_moment(under, {*times.instant, month, extraterrestrial_normal(sun.distance_au),
+                                   std::asin(to_sun[2]), height_m, pressure})});
             return;
         }
         const auto& period = times.periods[band];
@@ -93,23 +94,30 @@ struct PointLight::Work {
             if (only_month != 0 && day.date.month != only_month) continue;
             const auto span = span_of(day, times.zone, longitude_rad);
             for_each_sunlit_step(
-                track, span.begin, span.end, times.step_s, latitude_rad, longitude_rad, [&](const SunSample& sample) {
+                track, span.begin, span.end, times.step_s, latitude_rad, longitude_rad,
+                [&](const SunSample& sample) {
                     const auto to_sun = frame.to(sample.sun);
-                    visit(LitMoment{to_sun, sample.utc - sample.duration_s / 2, sample.utc + sample.duration_s / 2,
-                                    sample.duration_s * day.weight / period.duration_s,
-                                    sky_moment(under, {sample.utc, day.date.month,
-                                                     extraterrestrial_normal(sample.sun.distance_au),
-                                                     std::asin(to_sun[2]), height_m, pressure, sample.duration_s})});
+                    visit(LitMoment{
+                        to_sun, sample.utc - sample.duration_s / 2,
+                        sample.utc + sample.duration_s / 2,
+                        sample.duration_s * day.weight / period.duration_s,
+                        sky_moment(under,
+                                   {sample.utc, day.date.month,
+                                    extraterrestrial_normal(sample.sun.distance_au),
+                                    std::asin(to_sun[2]), height_m, pressure, sample.duration_s})});
                 });
         }
     }
 };
 
-PointLight::PointLight(const TimePlan& times, const Sky& sky) : work_(std::make_unique<Work>(times, sky)) {}
+PointLight::PointLight(const TimePlan& times, const Sky& sky)
+    : work_(std::make_unique<Work>(times, sky)) {}
 PointLight::~PointLight() = default;
 PointLight::PointLight(PointLight&&) noexcept = default;
 
-std::size_t PointLight::bands() const { return work_->times.bands(); }
+std::size_t PointLight::bands() const {
+    return work_->times.bands();
+}
 
 std::size_t PointLight::most_suns(std::size_t first_band, std::size_t bands) const {
     if (work_->times.instant) return 1;
@@ -121,12 +129,13 @@ std::size_t PointLight::most_suns(std::size_t first_band, std::size_t bands) con
     return static_cast<std::size_t>(suns);
 }
 
-OpenLight PointLight::at(std::size_t band, double latitude_rad, double longitude_rad, double height_m) const {
+OpenLight PointLight::at(std::size_t band, double latitude_rad, double longitude_rad,
+                         double height_m) const {
     return at(band, 0, work_->sky, latitude_rad, longitude_rad, height_m);
 }
 
-OpenLight PointLight::at(std::size_t band, int month, const Sky& sky, double latitude_rad, double longitude_rad,
-                         double height_m) const {
+OpenLight PointLight::at(std::size_t band, int month, const Sky& sky, double latitude_rad,
+                         double longitude_rad, double height_m) const {
     OpenLight sum;
     work_->visit(band, month, sky, latitude_rad, longitude_rad, height_m, [&](const LitMoment& m) {
         add(sum.beam_w_m2, m.to_sun, m.sky.beam_normal_w_m2 * m.weight);
@@ -140,7 +149,9 @@ OpenLight PointLight::at(std::size_t band, int month, const Sky& sky, double lat
     return sum;
 }
 
-const Sky& PointLight::sky() const { return work_->sky; }
+const Sky& PointLight::sky() const {
+    return work_->sky;
+}
 
 std::vector<int> PointLight::months_of(std::size_t band) const {
     if (work_->times.instant) return {0};
@@ -149,30 +160,36 @@ std::vector<int> PointLight::months_of(std::size_t band) const {
     return {months.begin(), months.end()};
 }
 
-std::vector<SunStep> PointLight::path(std::size_t band, double latitude_rad, double longitude_rad, double height_m) const {
+std::vector<SunStep> PointLight::path(std::size_t band, double latitude_rad, double longitude_rad,
+                                      double height_m) const {
     std::vector<SunStep> path;
     const LocalFrame frame(latitude_rad, longitude_rad);
     const double pressure = pressure_ratio(height_m);
     const auto pressure_at = [&](UtcSeconds utc) {
         if (!work_->sky.pressure) return pressure;
-        return pressure * work_->sky.pressure_factor(utc, work_->times.zone.local(utc, longitude_rad).date.month);
+        return pressure * work_->sky.pressure_factor(
+                              utc, work_->times.zone.local(utc, longitude_rad).date.month);
     };
-    const auto apparent_at = [&](UtcSeconds utc) { return apparent_sine(frame.to(work_->track.at(utc))[2], pressure_at(utc)); };
+    const auto apparent_at = [&](UtcSeconds utc) {
+        return apparent_sine(frame.to(work_->track.at(utc))[2], pressure_at(utc));
+    };
     UtcSeconds last_end = 0;
     double last_sine = 0;
-    work_->visit(band, 0, work_->sky, latitude_rad, longitude_rad, height_m, [&](const LitMoment& m) {
-        // A step mostly begins where the last one ended, but for the rounding of its middle.
-        constexpr double same_s = 1e-3;
-        const double begin = std::abs(m.begin - last_end) < same_s ? last_sine : apparent_at(m.begin);
-        const double end = m.end > m.begin ? apparent_at(m.end) : begin;
-        last_end = m.end;
-        last_sine = end;
-        double azimuth_rad = std::atan2(m.to_sun[0], m.to_sun[1]);
-        if (azimuth_rad < 0) azimuth_rad += 2 * std::numbers::pi;
-        path.push_back({azimuth_rad, std::min(begin, end), std::max(begin, end),
-                        scaled(m.to_sun, m.sky.beam_normal_w_m2 * m.weight), m.sunlit_h_a_day(),
-                        scaled(m.to_sun, m.sky.parts.circumsolar_normal_w_m2 * m.weight)});
-    });
+    work_->visit(
+        band, 0, work_->sky, latitude_rad, longitude_rad, height_m, [&](const LitMoment& m) {
+            // A step mostly begins where the last one ended, but for the rounding of its middle.
+            constexpr double same_s = 1e-3;
+            const double begin =
+                std::abs(m.begin - last_end) < same_s ? last_sine : apparent_at(m.begin);
+            const double end = m.end > m.begin ? apparent_at(m.end) : begin;
+            last_end = m.end;
+            last_sine = end;
+            double azimuth_rad = std::atan2(m.to_sun[0], m.to_sun[1]);
+            if (azimuth_rad < 0) azimuth_rad += 2 * std::numbers::pi;
+            path.push_back({azimuth_rad, std::min(begin, end), std::max(begin, end),
+                            scaled(m.to_sun, m.sky.beam_normal_w_m2 * m.weight), m.sunlit_h_a_day(),
+                            scaled(m.to_sun, m.sky.parts.circumsolar_normal_w_m2 * m.weight)});
+        });
     return path;
 }
 

@@ -9,7 +9,8 @@ namespace sunbudget {
 namespace {
 
 LightShare plus(const LightShare& a, const LightShare& b, double factor) {
-    return {a.beam + b.beam * factor, a.diffuse + b.diffuse * factor, a.scattered + b.scattered * factor};
+    return {a.beam + b.beam * factor, a.diffuse + b.diffuse * factor,
+            a.scattered + b.scattered * factor};
 }
 
 }  // namespace
@@ -26,7 +27,8 @@ LightShares::LightShares(std::vector<Piece> pieces) : pieces_(std::move(pieces))
 }
 
 std::size_t LightShares::index_of(UtcSeconds utc) const {
-    return static_cast<std::size_t>(std::upper_bound(borders_.begin(), borders_.end(), utc) - borders_.begin());
+    return static_cast<std::size_t>(std::upper_bound(borders_.begin(), borders_.end(), utc) -
+                                    borders_.begin());
 }
 
 LightShare LightShares::integral_to(UtcSeconds utc) const {

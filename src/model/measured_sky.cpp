@@ -20,17 +20,20 @@ namespace sunbudget {
 namespace {
 
 constexpr double no_value = std::numeric_limits<double>::quiet_NaN();
-constexpr double piece_s = 300;            // the clear sky is smooth: finer changes no share by 0.1 %
+constexpr double piece_s = 300;  // the clear sky is smooth: finer changes no share by 0.1 %
 constexpr double hour_s = 3600;
 constexpr double daily_from_s = 12 * hour_s;
 constexpr double hourly_cloud_to_s = 3 * hour_s;
-constexpr double clean_turbidity = 2;      // the lower end of what is usual: the cleanest beam of a split
-constexpr double air_alone = 1;            // turbidity of air without water and dust: no measured beam is above
-constexpr double most_diffuse = 10;        // of the clear sky's: a bright cover comes to 5 or 6
+constexpr double clean_turbidity =
+    2;  // the lower end of what is usual: the cleanest beam of a split
+constexpr double air_alone =
+    1;  // turbidity of air without water and dust: no measured beam is above
+constexpr double most_diffuse = 10;  // of the clear sky's: a bright cover comes to 5 or 6
 
 /// The clear sky's light on the station over the sunlit part of an interval, J m-2.
 struct ClearSums {
-    double lit_s = 0, extraterrestrial = 0, direct = 0, diffuse = 0, clean_direct = 0, most_direct = 0;
+    double lit_s = 0, extraterrestrial = 0, direct = 0, diffuse = 0, clean_direct = 0,
+           most_direct = 0;
     double beam = 0;       // facing the sun
     double low_sun_s = 0;  // below 5 degrees
 };
@@ -44,9 +47,16 @@ struct Lit {
 
 class Builder {
   public:
-    Builder(const WeatherRecord& record, const Station& station, const Sky& clear, const TimePlan& times)
-        : record_(record), station_(station), clear_(clear), clean_(ClearModel::esra2000), air_(ClearModel::esra2000), times_(times),
-          track_(times.earliest() - 2 * seconds_per_day, times.latest() + 2 * seconds_per_day), pressure_(pressure_ratio(station.height_m)) {
+    Builder(const WeatherRecord& record, const Station& station, const Sky& clear,
+            const TimePlan& times)
+        : record_(record),
+          station_(station),
+          clear_(clear),
+          clean_(ClearModel::esra2000),
+          air_(ClearModel::esra2000),
+          times_(times),
+          track_(times.earliest() - 2 * seconds_per_day, times.latest() + 2 * seconds_per_day),
+          pressure_(pressure_ratio(station.height_m)) {
         clean_[SkyParameter::turbidity].fill(clean_turbidity);
         air_[SkyParameter::turbidity].fill(air_alone);
         clean_.pressure = air_.pressure = clear.pressure;
@@ -75,9 +85,9 @@ class Builder {
     struct Day {
         CivilDate date;
         TimeSpan span;
-        double clear = 0, covered = 0;            // global of the clear sky, J m-2
-        double direct = 0, diffuse = 0;           // of the clear sky where covered
-        double real_direct = 0, real_diffuse = 0; // of the record there
+        double clear = 0, covered = 0;             // global of the clear sky, J m-2
+        double direct = 0, diffuse = 0;            // of the clear sky where covered
+        double real_direct = 0, real_diffuse = 0;  // of the record there
         std::vector<TimeSpan> gaps;
         [[nodiscard]] bool counts() const { return covered >= day_needs * clear; }
     };
@@ -86,9 +96,11 @@ class Builder {
     std::vector<LightShares::Piece> pieces_;
     MeasuredReport report_;
 
-    [[nodiscard]] SkyMoment light(const Sky& sky, UtcSeconds utc, const SunState& sun, double sine) const {
+    [[nodiscard]] SkyMoment light(const Sky& sky, UtcSeconds utc, const SunState& sun,
+                                  double sine) const {
         const int month = times_.zone.local(utc, station_.longitude_rad).date.month;
-        return sky_moment(sky, {utc, month, extraterrestrial_normal(sun.distance_au), std::asin(sine), station_.height_m, pressure_});
+        return sky_moment(sky, {utc, month, extraterrestrial_normal(sun.distance_au),
+                                std::asin(sine), station_.height_m, pressure_});
     }
     template <typename Visit>
     void each_piece(const TimeSpan& span, Visit&& visit) const;
@@ -118,7 +130,9 @@ class Builder {
 template <typename Visit>
 void Builder::each_piece(const TimeSpan& span, Visit&& visit) const {
     const auto up = up_direction(station_.latitude_rad, station_.longitude_rad);
-    const auto sine_at = [&](UtcSeconds utc) { return sin_elevation(track_.at(utc), station_.latitude_rad, station_.longitude_rad); };
+    const auto sine_at = [&](UtcSeconds utc) {
+        return sin_elevation(track_.at(utc), station_.latitude_rad, station_.longitude_rad);
+    };
     const auto add = [&](const TimeSpan& lit) {
         const double count = std::max(1.0, std::ceil((lit.end - lit.begin) / piece_s));
         const double step_s = (lit.end - lit.begin) / count;
@@ -135,7 +149,9 @@ void Builder::each_piece(const TimeSpan& span, Visit&& visit) const {
     constexpr double far_from_horizon = 0.2;  // the sine changes by 0.26 an hour at most
     if (is_short && first > far_from_horizon && last > far_from_horizon) return add(span);
     if (is_short && first < -far_from_horizon && last < -far_from_horizon) return;
-    for (const auto& lit : sunlit_spans(track_, span.begin, span.end, station_.latitude_rad, station_.longitude_rad)) add(lit);
+    for (const auto& lit :
+         sunlit_spans(track_, span.begin, span.end, station_.latitude_rad, station_.longitude_rad))
+        add(lit);
 }
 
 void Builder::find_days() {
@@ -179,7 +195,8 @@ void Builder::light_rows() {
             if (clear.lit_s > 0) lit_.push_back({row, clear});
         }
     }
-    by_cloud_ = !record_.has(Weather::global) && !(record_.has(Weather::beam) && record_.has(Weather::diffuse));
+    by_cloud_ = !record_.has(Weather::global) &&
+                !(record_.has(Weather::beam) && record_.has(Weather::diffuse));
 }
 
 void Builder::take_cloud() {
@@ -200,9 +217,11 @@ void Builder::take_light() {
     };
     for (const auto quantity : {Weather::global, Weather::beam, Weather::diffuse})
         if (record_.has(quantity))
-            report_.from += (report_.from.empty() ? "" : ", ") + std::string(weather_names[static_cast<std::size_t>(quantity)]);
+            report_.from += (report_.from.empty() ? "" : ", ") +
+                            std::string(weather_names[static_cast<std::size_t>(quantity)]);
     for (auto& lit : lit_)
-        take_parts(lit, column(Weather::global, lit.row), column(Weather::beam, lit.row), column(Weather::diffuse, lit.row));
+        take_parts(lit, column(Weather::global, lit.row), column(Weather::beam, lit.row),
+                   column(Weather::diffuse, lit.row));
     split_alone();
     for (const auto& lit : lit_)
         if (!std::isnan(lit.direct) && !std::isnan(lit.diffuse)) add_share(lit);
@@ -213,12 +232,16 @@ void Builder::take_parts(Lit& lit, double global, double beam, double diffuse) {
     const auto& span = record_.intervals[lit.row];
     const double length_s = span.end - span.begin;
     const auto& clear = lit.clear;
-    const auto energy = [&](double w_m2) { return std::isnan(w_m2) ? no_value : std::max(0.0, w_m2) * length_s; };
+    const auto energy = [&](double w_m2) {
+        return std::isnan(w_m2) ? no_value : std::max(0.0, w_m2) * length_s;
+    };
     lit.global = energy(global);
     lit.diffuse = energy(diffuse);
     // Onto the horizontal as the clear sky's beam goes there over the sunlit part.
-    if (!std::isnan(beam)) lit.direct = clear.beam > 0 ? energy(beam) * clear.direct / clear.beam : 0;
-    if (!std::isnan(global) && !std::isnan(beam) && !std::isnan(diffuse)) add_closure(lit, lit.global);
+    if (!std::isnan(beam))
+        lit.direct = clear.beam > 0 ? energy(beam) * clear.direct / clear.beam : 0;
+    if (!std::isnan(global) && !std::isnan(beam) && !std::isnan(diffuse))
+        add_closure(lit, lit.global);
     if (std::isnan(lit.direct) && !std::isnan(lit.global) && !std::isnan(lit.diffuse))
         lit.direct = std::clamp(lit.global - lit.diffuse, 0.0, clear.most_direct);
     if (std::isnan(lit.diffuse) && !std::isnan(lit.global) && !std::isnan(lit.direct))
@@ -239,15 +262,20 @@ void Builder::split_daily(Lit& lit) {
     const auto& span = record_.intervals[lit.row];
     const auto sun = track_.at((span.begin + span.end) / 2);
     const double s = lit.clear.lit_s;
-    const SplitInput known{lit.global / s, lit.clear.extraterrestrial / s, lit.clear.direct / s, lit.clear.diffuse / s, lit.clear.clean_direct / s};
-    lit.diffuse = daily_diffuse_w_m2(known, sunset_hour_angle_rad(station_.latitude_rad, sun.declination_rad)) * s;
+    const SplitInput known{lit.global / s, lit.clear.extraterrestrial / s, lit.clear.direct / s,
+                           lit.clear.diffuse / s, lit.clear.clean_direct / s};
+    lit.diffuse = daily_diffuse_w_m2(
+                      known, sunset_hour_angle_rad(station_.latitude_rad, sun.declination_rad)) *
+                  s;
     lit.direct = lit.global - lit.diffuse;
     ++report_.split_intervals;
 }
 
 /// Rows that know their global only: by the hour, or by the row where that is longer.
 void Builder::split_alone() {
-    const auto alone = [&](const Lit& lit) { return !std::isnan(lit.global) && std::isnan(lit.direct) && std::isnan(lit.diffuse); };
+    const auto alone = [&](const Lit& lit) {
+        return !std::isnan(lit.global) && std::isnan(lit.direct) && std::isnan(lit.diffuse);
+    };
     const auto hour_of = [&](const Lit& lit) {
         const auto& span = record_.intervals[lit.row];
         return std::floor((span.begin + span.end) / 2 / hour_s);
@@ -265,7 +293,8 @@ void Builder::split_alone() {
         std::size_t last = first;
         ClearSums sum;
         double global = 0;
-        for (; last < lit_.size() && (last == first || hour_of(lit_[last]) == hour_of(lit_[first])); ++last) {
+        for (; last < lit_.size() && (last == first || hour_of(lit_[last]) == hour_of(lit_[first]));
+             ++last) {
             const auto& lit = lit_[last];
             if (!alone(lit)) continue;
             global += lit.global;
@@ -276,7 +305,10 @@ void Builder::split_alone() {
             sum.clean_direct += lit.clear.clean_direct;
         }
         const double s = sum.lit_s;
-        const double diffuse = hourly_diffuse_w_m2({global / s, sum.extraterrestrial / s, sum.direct / s, sum.diffuse / s, sum.clean_direct / s}) * s;
+        const double diffuse =
+            hourly_diffuse_w_m2({global / s, sum.extraterrestrial / s, sum.direct / s,
+                                 sum.diffuse / s, sum.clean_direct / s}) *
+            s;
         const double share = global > 0 ? diffuse / global : 1;
         for (; first < last; ++first) {
             auto& lit = lit_[first];
@@ -305,12 +337,15 @@ void Builder::cover_days() {
 /// Adds up a day's clear light, as a whole and where the record has it, and notes the sunlit gaps.
 void Builder::cover(Day& day) {
     const auto piece_after = [&](UtcSeconds utc) {
-        return std::upper_bound(pieces_.begin(), pieces_.end(), utc, [](UtcSeconds t, const LightShares::Piece& p) { return t < p.span.end; });
+        return std::upper_bound(
+            pieces_.begin(), pieces_.end(), utc,
+            [](UtcSeconds t, const LightShares::Piece& p) { return t < p.span.end; });
     };
     const auto add = [&](const TimeSpan& span, const LightShare* share) {
         each_piece(span, [&](UtcSeconds utc, double s, const SunState& sun, double sine) {
             const auto clear = light(clear_, utc, sun, sine);
-            const double direct = clear.beam_normal_w_m2 * sine * s, diffuse = clear.diffuse_w_m2 * s;
+            const double direct = clear.beam_normal_w_m2 * sine * s,
+                         diffuse = clear.diffuse_w_m2 * s;
             day.clear += direct + diffuse;
             if (share == nullptr) return;
             day.covered += direct + diffuse;
@@ -320,7 +355,8 @@ void Builder::cover(Day& day) {
             day.real_diffuse += share->diffuse * diffuse + share->scattered * direct;
         });
     };
-    for (const auto& lit : sunlit_spans(track_, day.span.begin, day.span.end, station_.latitude_rad, station_.longitude_rad)) {
+    for (const auto& lit : sunlit_spans(track_, day.span.begin, day.span.end, station_.latitude_rad,
+                                        station_.longitude_rad)) {
         UtcSeconds at = lit.begin;
         for (auto piece = piece_after(at); at < lit.end; ++piece) {
             const bool more = piece != pieces_.end() && piece->span.begin < lit.end;
@@ -339,15 +375,19 @@ void Builder::cover(Day& day) {
 void Builder::refuse_gaps() const {
     for (const auto& day : days_)
         if (!day.gaps.empty())
-            throw Error(Cause::input,
-                        fmt::format("no light was measured from {} to {}", format_utc(day.gaps.front().begin), format_utc(day.gaps.front().end)), {},
-                        "complete the table, choose other days, or write weather.gaps: report");
+            throw Error(
+                Cause::input,
+                fmt::format("no light was measured from {} to {}",
+                            format_utc(day.gaps.front().begin), format_utc(day.gaps.front().end)),
+                {}, "complete the table, choose other days, or write weather.gaps: report");
 }
 
 /// Gaps take the mean of their day where it counts, else of the month's days that do.
 void Builder::fill_gaps() {
-    const auto share_of = [](double direct, double diffuse, double clear_direct, double clear_diffuse) {
-        return LightShare{clear_direct > 0 ? direct / clear_direct : 0, clear_diffuse > 0 ? diffuse / clear_diffuse : 0, 0};
+    const auto share_of = [](double direct, double diffuse, double clear_direct,
+                             double clear_diffuse) {
+        return LightShare{clear_direct > 0 ? direct / clear_direct : 0,
+                          clear_diffuse > 0 ? diffuse / clear_diffuse : 0, 0};
     };
     std::map<std::pair<int, int>, std::array<double, 4>> months;
     for (const auto& day : days_) {
@@ -363,8 +403,9 @@ void Builder::fill_gaps() {
         if (day.gaps.empty()) continue;
         ++(day.counts() ? report_.days_with_gaps : report_.days_missing);
         const auto& month = months[{day.date.year, day.date.month}];
-        const auto share = day.counts() ? share_of(day.real_direct, day.real_diffuse, day.direct, day.diffuse)
-                                        : share_of(month[0], month[1], month[2], month[3]);
+        const auto share =
+            day.counts() ? share_of(day.real_direct, day.real_diffuse, day.direct, day.diffuse)
+                         : share_of(month[0], month[1], month[2], month[3]);
         for (const auto& gap : day.gaps) {
             constexpr std::size_t told = 10;
             if (report_.first_gaps.size() < told) report_.first_gaps.push_back(gap);
@@ -372,24 +413,32 @@ void Builder::fill_gaps() {
             pieces_.push_back({gap, share});
         }
     }
-    std::sort(pieces_.begin(), pieces_.end(), [](const auto& a, const auto& b) { return a.span.begin < b.span.begin; });
+    std::sort(pieces_.begin(), pieces_.end(),
+              [](const auto& a, const auto& b) { return a.span.begin < b.span.begin; });
 }
 
 std::vector<bool> Builder::thin_bands() const {
     if (times_.instant) {
         const auto& gaps = days_.front().gaps;
-        return {std::any_of(gaps.begin(), gaps.end(), [&](const TimeSpan& gap) { return gap.begin <= *times_.instant && *times_.instant < gap.end; })};
+        return {std::any_of(gaps.begin(), gaps.end(), [&](const TimeSpan& gap) {
+            return gap.begin <= *times_.instant && *times_.instant < gap.end;
+        })};
     }
     std::vector<bool> thin;
     for (const auto& period : times_.periods) {
-        std::map<std::pair<int, int>, std::pair<double, double>> months;  // days, and those that count
+        std::map<std::pair<int, int>, std::pair<double, double>>
+            months;  // days, and those that count
         for (const auto& part : period.days) {
-            const auto day = std::lower_bound(days_.begin(), days_.end(), part.date, [](const Day& d, const CivilDate& date) { return d.date < date; });
+            const auto day =
+                std::lower_bound(days_.begin(), days_.end(), part.date,
+                                 [](const Day& d, const CivilDate& date) { return d.date < date; });
             auto& [all, counted] = months[{part.date.year, part.date.month}];
             all += 1;
             counted += day->counts() ? 1 : 0;
         }
-        thin.push_back(std::any_of(months.begin(), months.end(), [](const auto& m) { return m.second.second < month_needs * m.second.first; }));
+        thin.push_back(std::any_of(months.begin(), months.end(), [](const auto& m) {
+            return m.second.second < month_needs * m.second.first;
+        }));
     }
     return thin;
 }
@@ -407,9 +456,13 @@ MeasuredSky Builder::finish() {
     // A polar night has nothing to share.
     if (pieces_.empty()) pieces_.push_back({{times_.earliest(), times_.latest()}, {}});
     if (std::all_of(sky.thin.begin(), sky.thin.end(), [](bool thin) { return thin; }))
-        throw Error(Cause::input,
-                    fmt::format("the table has light for too few of the run's days: {} of {} are missing", report_.days_missing, report_.days), {},
-                    "a day needs 90 % of its light, a month 80 % of its days; choose a period that the table covers");
+        throw Error(
+            Cause::input,
+            fmt::format("the table has light for too few of the run's days: {} of {} are missing",
+                        report_.days_missing, report_.days),
+            {},
+            "a day needs 90 % of its light, a month 80 % of its days; choose a period that the "
+            "table covers");
     sky.shares = std::make_shared<const LightShares>(std::move(pieces_));
     return sky;
 }
@@ -417,10 +470,13 @@ MeasuredSky Builder::finish() {
 }  // namespace
 
 bool has_light(const WeatherRecord& record) {
-    return record.has(Weather::global) || (record.has(Weather::beam) && record.has(Weather::diffuse)) || record.has(Weather::cloud);
+    return record.has(Weather::global) ||
+           (record.has(Weather::beam) && record.has(Weather::diffuse)) ||
+           record.has(Weather::cloud);
 }
 
-MeasuredSky measured_sky(const WeatherRecord& record, const Station& station, const Sky& clear, const TimePlan& times, bool stop_at_gaps) {
+MeasuredSky measured_sky(const WeatherRecord& record, const Station& station, const Sky& clear,
+                         const TimePlan& times, bool stop_at_gaps) {
     return Builder(record, station, clear, times).build(stop_at_gaps);
 }
 

@@ -16,10 +16,11 @@ namespace sunbudget {
 
 namespace {
 
-constexpr std::array<std::string_view, 5> model_names{"esra2000", "bird-hulstrom1981", "ineichen-perez2002", "asce2005",
-                                                      "fao56"};
+constexpr std::array<std::string_view, 5> model_names{"esra2000", "bird-hulstrom1981",
+                                                      "ineichen-perez2002", "asce2005", "fao56"};
 constexpr std::array<std::string_view, sky_parameter_count> parameter_names{
-    "turbidity", "ozone", "water", "aerosol380", "aerosol500", "ground_albedo", "vapour_pressure", "turbidity_coefficient"};
+    "turbidity",  "ozone",         "water",           "aerosol380",
+    "aerosol500", "ground_albedo", "vapour_pressure", "turbidity_coefficient"};
 
 constexpr double sea_level_hpa = 1013.25;
 constexpr double sea_level_kpa = 101.3;  // FAO-56 and ASCE 2005
@@ -35,15 +36,17 @@ struct OverBlackGround {
 
 OverBlackGround bird_light(const Sky& sky, const SkyInstant& at) {
     const auto number = [&](SkyParameter parameter) { return sky.of(parameter, at.month); };
-    const auto found = bird_hulstrom1981(at.extraterrestrial_normal_w_m2, at.elevation_rad,
-                                         {number(SkyParameter::ozone), number(SkyParameter::water),
-                                          number(SkyParameter::aerosol380), number(SkyParameter::aerosol500)},
-                                         at.pressure_ratio);
+    const auto found =
+        bird_hulstrom1981(at.extraterrestrial_normal_w_m2, at.elevation_rad,
+                          {number(SkyParameter::ozone), number(SkyParameter::water),
+                           number(SkyParameter::aerosol380), number(SkyParameter::aerosol500)},
+                          at.pressure_ratio);
     return {{found.beam_normal_w_m2, found.diffuse_horizontal_w_m2}, found.sky_albedo};
 }
 
 ClearSky ineichen_light(const Sky& sky, const SkyInstant& at) {
-    const double apparent_rad = at.elevation_rad + refraction(at.elevation_rad, sea_level_hpa * at.pressure_ratio);
+    const double apparent_rad =
+        at.elevation_rad + refraction(at.elevation_rad, sea_level_hpa * at.pressure_ratio);
     return ineichen_perez2002(at.extraterrestrial_normal_w_m2, at.elevation_rad,
                               relative_air_mass(apparent_rad) * at.pressure_ratio,
                               sky.of(SkyParameter::turbidity, at.month), at.height_m);
@@ -52,7 +55,8 @@ ClearSky ineichen_light(const Sky& sky, const SkyInstant& at) {
 /// FAO-56 gives the global alone: beam and sky light share it as in ESRA's air of turbidity 3.
 ClearSky fao56_light(const SkyInstant& at) {
     const double sine = std::sin(at.elevation_rad);
-    const auto shares = esra2000(at.extraterrestrial_normal_w_m2, at.elevation_rad, fao56_turbidity, at.pressure_ratio);
+    const auto shares = esra2000(at.extraterrestrial_normal_w_m2, at.elevation_rad, fao56_turbidity,
+                                 at.pressure_ratio);
     const double all = shares.beam_normal_w_m2 * sine + shares.diffuse_horizontal_w_m2;
     const double global = fao56_clear_share(at.height_m) * at.extraterrestrial_normal_w_m2 * sine;
     return {global * shares.beam_normal_w_m2 / all, global * shares.diffuse_horizontal_w_m2 / all};
@@ -60,17 +64,22 @@ ClearSky fao56_light(const SkyInstant& at) {
 
 OverBlackGround clear_light(const Sky& sky, const SkyInstant& at) {
     switch (sky.model) {
-        case ClearModel::esra2000: break;
-        case ClearModel::bird_hulstrom1981: return bird_light(sky, at);
-        case ClearModel::ineichen_perez2002: return {ineichen_light(sky, at)};
+        case ClearModel::esra2000:
+            break;
+        case ClearModel::bird_hulstrom1981:
+            return bird_light(sky, at);
+        case ClearModel::ineichen_perez2002:
+            return {ineichen_light(sky, at)};
         case ClearModel::asce2005:
-            return {asce2005(at.extraterrestrial_normal_w_m2, at.elevation_rad, sea_level_kpa * at.pressure_ratio,
+            return {asce2005(at.extraterrestrial_normal_w_m2, at.elevation_rad,
+                             sea_level_kpa * at.pressure_ratio,
                              sky.of(SkyParameter::vapour_pressure, at.month) / 10,
                              sky.of(SkyParameter::turbidity_coefficient, at.month))};
-        case ClearModel::fao56: return {fao56_light(at)};
+        case ClearModel::fao56:
+            return {fao56_light(at)};
     }
-    return {esra2000(at.extraterrestrial_normal_w_m2, at.elevation_rad, sky.of(SkyParameter::turbidity, at.month),
-                     at.pressure_ratio)};
+    return {esra2000(at.extraterrestrial_normal_w_m2, at.elevation_rad,
+                     sky.of(SkyParameter::turbidity, at.month), at.pressure_ratio)};
 }
 
 /// FAO-56 and ASCE 2005 stand on a solar constant of their own.
@@ -82,15 +91,19 @@ double outside_the_air(ClearModel model, double extraterrestrial_normal_w_m2) {
 
 SkyParts parts_of(DiffuseModel model, const SkyLight& open, double elevation_rad) {
     switch (model) {
-        case DiffuseModel::liu_jordan1963: return sky_liu_jordan1963(open);
-        case DiffuseModel::hay_davies1980: return sky_hay_davies1980(open);
-        case DiffuseModel::perez1990: break;
+        case DiffuseModel::liu_jordan1963:
+            return sky_liu_jordan1963(open);
+        case DiffuseModel::hay_davies1980:
+            return sky_hay_davies1980(open);
+        case DiffuseModel::perez1990:
+            break;
     }
     return sky_perez1990(open, relative_air_mass_kasten1966(elevation_rad));
 }
 
 /// Light to and fro between ground and sky: even over the sky, whatever spreads the rest of it.
-void add_thrown_back(double ground_albedo, double elevation_rad, double sky_albedo, SkyMoment& moment) {
+void add_thrown_back(double ground_albedo, double elevation_rad, double sky_albedo,
+                     SkyMoment& moment) {
     const double global = moment.beam_normal_w_m2 * std::sin(elevation_rad) + moment.diffuse_w_m2;
     if (std::isnan(ground_albedo)) {
         moment.thrown_back_w_m2 = global * sky_albedo;
@@ -103,7 +116,8 @@ void add_thrown_back(double ground_albedo, double elevation_rad, double sky_albe
 }
 
 SkyLight open_light(double beam_normal_w_m2, double diffuse_w_m2, const SkyInstant& at) {
-    return {beam_normal_w_m2, diffuse_w_m2, at.extraterrestrial_normal_w_m2, std::numbers::pi / 2 - at.elevation_rad};
+    return {beam_normal_w_m2, diffuse_w_m2, at.extraterrestrial_normal_w_m2,
+            std::numbers::pi / 2 - at.elevation_rad};
 }
 
 SkyMoment clear_moment(const Sky& sky, const SkyInstant& at) {
@@ -111,9 +125,12 @@ SkyMoment clear_moment(const Sky& sky, const SkyInstant& at) {
     SkyMoment moment;
     moment.beam_normal_w_m2 = light.beam_normal_w_m2;
     moment.diffuse_w_m2 = light.diffuse_horizontal_w_m2;
-    moment.parts = parts_of(sky.diffuse, open_light(moment.beam_normal_w_m2, moment.diffuse_w_m2, at), at.elevation_rad);
+    moment.parts =
+        parts_of(sky.diffuse, open_light(moment.beam_normal_w_m2, moment.diffuse_w_m2, at),
+                 at.elevation_rad);
     if (sky.model == ClearModel::bird_hulstrom1981)
-        add_thrown_back(sky.of(SkyParameter::ground_albedo, at.month), at.elevation_rad, sky_albedo, moment);
+        add_thrown_back(sky.of(SkyParameter::ground_albedo, at.month), at.elevation_rad, sky_albedo,
+                        moment);
     return moment;
 }
 
@@ -136,8 +153,12 @@ SkyMoment mixed(const SkyMoment& clear, const LightShare& share, double clear_di
 
 }  // namespace
 
-std::string_view name_of(ClearModel model) { return model_names[static_cast<std::size_t>(model)]; }
-std::string_view name_of(SkyParameter parameter) { return parameter_names[static_cast<std::size_t>(parameter)]; }
+std::string_view name_of(ClearModel model) {
+    return model_names[static_cast<std::size_t>(model)];
+}
+std::string_view name_of(SkyParameter parameter) {
+    return parameter_names[static_cast<std::size_t>(parameter)];
+}
 
 bool has(ClearModel model, SkyParameter parameter) {
     return method("clear_sky", name_of(model)).parameter(name_of(parameter)) != nullptr;
@@ -148,7 +169,8 @@ bool may_be_raster(SkyParameter parameter) {
 }
 
 ClearModel clear_model_named(std::string_view name) {
-    const auto found = std::find(model_names.begin(), model_names.end(), method("clear_sky", name).name);
+    const auto found =
+        std::find(model_names.begin(), model_names.end(), method("clear_sky", name).name);
     return static_cast<ClearModel>(found - model_names.begin());
 }
 
@@ -163,12 +185,14 @@ Sky::Sky(ClearModel chosen) : model(chosen) {
     for (std::size_t i = 0; i < sky_parameter_count; ++i) {
         const auto* parameter = row.parameter(parameter_names[i]);
         const bool known = parameter != nullptr && parameter->default_value;
-        parameters[i].fill(known ? *parameter->default_value : std::numeric_limits<double>::quiet_NaN());
+        parameters[i].fill(known ? *parameter->default_value
+                                 : std::numeric_limits<double>::quiet_NaN());
     }
 }
 
 bool waits_for_ground(const Sky& sky) {
-    return sky.model == ClearModel::bird_hulstrom1981 && std::isnan(sky.of(SkyParameter::ground_albedo, 1));
+    return sky.model == ClearModel::bird_hulstrom1981 &&
+           std::isnan(sky.of(SkyParameter::ground_albedo, 1));
 }
 
 SkyMoment sky_moment(const Sky& sky, const SkyInstant& when) {
@@ -178,13 +202,16 @@ SkyMoment sky_moment(const Sky& sky, const SkyInstant& when) {
     const auto clear = clear_moment(sky, at);
     if (!sky.measured && !sky.mean_cloud) return clear;
     const double direct_w_m2 = clear.beam_normal_w_m2 * std::max(0.0, std::sin(at.elevation_rad));
-    if (!sky.measured) return mixed(clear, (*sky.mean_cloud)[static_cast<std::size_t>(at.month - 1)], direct_w_m2);
+    if (!sky.measured)
+        return mixed(clear, (*sky.mean_cloud)[static_cast<std::size_t>(at.month - 1)], direct_w_m2);
     // What was measured holds the light to and fro between ground and sky.
     const auto share = sky.measured->over(at.utc - at.duration_s / 2, at.utc + at.duration_s / 2);
     SkyMoment moment;
     moment.beam_normal_w_m2 = share.beam * clear.beam_normal_w_m2;
     moment.diffuse_w_m2 = share.diffuse * clear.diffuse_w_m2 + share.scattered * direct_w_m2;
-    moment.parts = parts_of(sky.diffuse, open_light(moment.beam_normal_w_m2, moment.diffuse_w_m2, at), at.elevation_rad);
+    moment.parts =
+        parts_of(sky.diffuse, open_light(moment.beam_normal_w_m2, moment.diffuse_w_m2, at),
+                 at.elevation_rad);
     return moment;
 }
 

@@ -47,7 +47,8 @@ class Nodes {
             if (const auto found = values_.find(key); found != values_.end()) return found->second;
         }
         Values values(shape_.values);
-        const double height_m = shape_.constant_height_m.value_or(key.height2 * (height_cell_m / 2));
+        const double height_m =
+            shape_.constant_height_m.value_or(key.height2 * (height_cell_m / 2));
         function_(static_cast<double>(key.column4) / 4, static_cast<double>(key.row4) / 4, height_m,
                   thread, values);
         const std::lock_guard hold(mutex_);
@@ -120,13 +121,15 @@ void fill_row_at_one_height(float* __restrict out, int count, float first_u, flo
 
 /// The height cells that a window's pixels lie in. Neighbours mostly share one: the set is asked
 /// only where the height leaves it.
-std::set<int> height_cells_of(const Window& window, const Window& frame, const Plane<float>& heights_m) {
+std::set<int> height_cells_of(const Window& window, const Window& frame,
+                              const Plane<float>& heights_m) {
     std::set<int> cells;
     const auto left = static_cast<std::size_t>(window.column - frame.column);
     const int top = static_cast<int>(window.row - frame.row);
     float floor_m = 0, ceiling_m = 0;
     for (int r = 0; r < window.height; ++r)
-        for (const float height_m : heights_m.row(top + r).subspan(left, static_cast<std::size_t>(window.width))) {
+        for (const float height_m :
+             heights_m.row(top + r).subspan(left, static_cast<std::size_t>(window.width))) {
             if ((height_m >= floor_m && height_m < ceiling_m) || !std::isfinite(height_m)) continue;
             const double cell = std::floor(static_cast<double>(height_m) / height_cell_m);
             cells.insert(static_cast<int>(cell));
@@ -157,12 +160,14 @@ struct SmoothField::Work {
                     &nodes.at(node_of(cell, 2 * c, 2 * r, height2), thread);
         for (const int quarter_row : {1, 3})
             for (const int quarter_column : {1, 3}) {
-                const auto& truth = nodes.at(node_of(cell, quarter_column, quarter_row, height2), thread);
+                const auto& truth =
+                    nodes.at(node_of(cell, quarter_column, quarter_row, height2), thread);
                 const auto across = quadratic(quarter_column / 4.0);
                 const auto down = quadratic(quarter_row / 4.0);
                 for (std::size_t v = 0; v < shape.values; ++v) {
                     double guess = 0;
-                    for (std::size_t n = 0; n < 9; ++n) guess += down[n / 3] * across[n % 3] * (*known[n])[v];
+                    for (std::size_t n = 0; n < 9; ++n)
+                        guess += down[n / 3] * across[n % 3] * (*known[n])[v];
                     // Written so that a NaN on either side is not good enough.
                     if (!(std::abs(guess - truth[v]) <= shape.tolerance)) return false;
                 }
@@ -192,9 +197,9 @@ struct SmoothField::Block::Cells {
         for (int k = 0; k < heights; ++k)
             for (int r = 0; r < 3; ++r)
                 for (int c = 0; c < 3; ++c)
-                    piece.nodes[static_cast<std::size_t>(9 * k + 3 * r + c)] =
-                        &nodes.at(node_of(cell, 2 * c, 2 * r, varies_in_height ? 2 * height_cell + k : 0),
-                                  thread);
+                    piece.nodes[static_cast<std::size_t>(9 * k + 3 * r + c)] = &nodes.at(
+                        node_of(cell, 2 * c, 2 * r, varies_in_height ? 2 * height_cell + k : 0),
+                        thread);
         pieces.push_back(piece);
     }
 
@@ -207,7 +212,8 @@ struct SmoothField::Block::Cells {
         Nodes& nodes = cell.size > shared_above_px ? work.shared : *own;
         if (cell.size <= 2 || work.good_enough(cell, height_cell, nodes, thread)) {
             add(nodes, cell, height_cell,
-                {left, top, static_cast<int>(right - left), static_cast<int>(bottom - top)}, thread);
+                {left, top, static_cast<int>(right - left), static_cast<int>(bottom - top)},
+                thread);
             return;
         }
         const int half = cell.size / 2;
@@ -251,10 +257,12 @@ void SmoothField::Block::Cells::fill_piece(const Piece& piece, std::size_t value
             continue;
         }
         std::array<std::array<double, 3>, 3> in_u{};
-        for (std::size_t k = 0; k < 3; ++k) in_u[k] = polynomial(along[k][0], along[k][1], along[k][2]);
+        for (std::size_t k = 0; k < 3; ++k)
+            in_u[k] = polynomial(along[k][0], along[k][1], along[k][2]);
         for (std::size_t i = 0; i < 3; ++i) {
             const auto in_s = polynomial(in_u[0][i], in_u[1][i], in_u[2][i]);
-            for (std::size_t m = 0; m < 3; ++m) coefficients[3 * m + i] = static_cast<float>(in_s[m]);
+            for (std::size_t m = 0; m < 3; ++m)
+                coefficients[3 * m + i] = static_cast<float>(in_s[m]);
         }
         fill_row(heights_m.row(out_row).data() + first, target, piece.part.width,
                  static_cast<float>(first_u), static_cast<float>(step_u),
@@ -264,7 +272,8 @@ void SmoothField::Block::Cells::fill_piece(const Piece& piece, std::size_t value
 
 /// Cells of two pixels: every pixel is a node, and a node without a value spoils itself alone.
 void SmoothField::Block::Cells::fill_pixels(const Piece& piece, std::size_t value,
-                                            const Plane<float>& heights_m, Plane<float>& out) const {
+                                            const Plane<float>& heights_m,
+                                            Plane<float>& out) const {
     const auto& cell = piece.cell;
     for (int r = 0; r < piece.part.height; ++r)
         for (int i = 0; i < piece.part.width; ++i) {
@@ -273,17 +282,21 @@ void SmoothField::Block::Cells::fill_pixels(const Piece& piece, std::size_t valu
             const auto node = [](long offset, int span) {
                 return static_cast<std::size_t>(offset == 0 || span == 0 ? 0 : 2 * offset / span);
             };
-            const std::size_t n = 3 * node(row - cell.row, cell.span_rows) + node(column - cell.column, cell.span_columns);
-            const int x = static_cast<int>(column - frame.column), y = static_cast<int>(row - frame.row);
+            const std::size_t n = 3 * node(row - cell.row, cell.span_rows) +
+                                  node(column - cell.column, cell.span_columns);
+            const int x = static_cast<int>(column - frame.column),
+                      y = static_cast<int>(row - frame.row);
             if (!varies_in_height) {
                 out.at(x, y) = static_cast<float>((*piece.nodes[n])[value]);
                 continue;
             }
-            const double s = static_cast<double>(heights_m.at(x, y)) / height_cell_m - piece.height_cell;
+            const double s =
+                static_cast<double>(heights_m.at(x, y)) / height_cell_m - piece.height_cell;
             if (!(s >= 0 && s < 1)) continue;
             const auto weights = quadratic(s);
             double sum = 0;
-            for (std::size_t k = 0; k < 3; ++k) sum += weights[k] * (*piece.nodes[9 * k + n])[value];
+            for (std::size_t k = 0; k < 3; ++k)
+                sum += weights[k] * (*piece.nodes[9 * k + n])[value];
             out.at(x, y) = static_cast<float>(sum);
         }
 }
@@ -293,7 +306,8 @@ SmoothField::Block::~Block() = default;
 SmoothField::Block::Block(Block&&) noexcept = default;
 SmoothField::Block& SmoothField::Block::operator=(Block&&) noexcept = default;
 
-void SmoothField::Block::fill(std::size_t value, const Plane<float>& heights_m, Plane<float>& out) const {
+void SmoothField::Block::fill(std::size_t value, const Plane<float>& heights_m,
+                              Plane<float>& out) const {
     const auto& window = cells_->window;
     const auto left = static_cast<std::size_t>(window.column - cells_->frame.column);
     const int top = static_cast<int>(window.row - cells_->frame.row);
@@ -321,11 +335,13 @@ SmoothField::Block SmoothField::prepare(const Window& window, const Window& fram
     cells.frame = frame;
     cells.varies_in_height = work_->varies_in_height();
     cells.own = std::make_unique<Nodes>(work_->shape, work_->function);
-    const auto height_cells = cells.varies_in_height ? height_cells_of(window, frame, heights_m) : std::set<int>{0};
+    const auto height_cells =
+        cells.varies_in_height ? height_cells_of(window, frame, heights_m) : std::set<int>{0};
     const int column = static_cast<int>(window.column) / largest_cell_px * largest_cell_px;
     const int row = static_cast<int>(window.row) / largest_cell_px * largest_cell_px;
     for (const int height_cell : height_cells)
-        cells.collect(*work_, cell_of(column, row, largest_cell_px, work_->shape), height_cell, thread);
+        cells.collect(*work_, cell_of(column, row, largest_cell_px, work_->shape), height_cell,
+                      thread);
     return block;
 }
 

@@ -21,7 +21,8 @@ struct FlatPixels {
     [[nodiscard]] NormalRow normal() const { return {zero, zero, one}; }
     [[nodiscard]] std::vector<BeamSums> sums() {
         std::vector<BeamSums> all;
-        for (std::size_t band = 0; band < beam.size(); ++band) all.push_back({beam[band], hours[band], around[band]});
+        for (std::size_t band = 0; band < beam.size(); ++band)
+            all.push_back({beam[band], hours[band], around[band]});
         return all;
     }
     void take_over(std::vector<WholeSun>& whole) const {
@@ -50,15 +51,16 @@ void SunSectors::Sector::add_to(const HorizonPair& horizon, const NormalRow& nor
         if (!lists[band].empty()) add_suns(lists[band], horizon, normal, sums[band]);
 }
 
-SunSectors::SunSectors(const PointLight& light, const Geodetic& place, double height_m, std::size_t first_band,
-                       std::size_t bands, int directions)
+SunSectors::SunSectors(const PointLight& light, const Geodetic& place, double height_m,
+                       std::size_t first_band, std::size_t bands, int directions)
     : sectors_(static_cast<std::size_t>(directions)), whole_(bands) {
     for (auto& sector : sectors_) {
         sector.tables.resize(bands);
         sector.lists.resize(bands);
     }
     for (std::size_t band = 0; band < bands; ++band)
-        for (const auto& sun : light.path(first_band + band, place.latitude_rad, place.longitude_rad, height_m)) {
+        for (const auto& sun :
+             light.path(first_band + band, place.latitude_rad, place.longitude_rad, height_m)) {
             const double turn = sun.azimuth_rad / (2 * std::numbers::pi) * directions;
             const double before = std::floor(turn);
             auto& sector = sectors_[static_cast<std::size_t>(before) % sectors_.size()];
@@ -71,7 +73,8 @@ SunSectors::SunSectors(const PointLight& light, const Geodetic& place, double he
     for (auto& sector : sectors_) {
         for (std::size_t band = 0; band < bands; ++band) {
             if (sector.lists[band].size() > list_up_to) {
-                for (const auto& placed : sector.lists[band]) sector.tables[band].add(placed.sun, placed.share);
+                for (const auto& placed : sector.lists[band])
+                    sector.tables[band].add(placed.sun, placed.share);
                 std::vector<PlacedSun>().swap(sector.lists[band]);  // = {} would keep the memory
             }
             sector.tables[band].finish();
@@ -84,21 +87,23 @@ SunSectors::SunSectors(const PointLight& light, const Geodetic& place, double he
 std::size_t SunSectors::bytes() const {
     std::size_t bytes = sizeof *this;
     for (const auto& sector : sectors_) {
-        bytes += sizeof sector + sector.tables.size() * sizeof(BeamTable) + sector.lists.size() * sizeof(std::vector<PlacedSun>);
+        bytes += sizeof sector + sector.tables.size() * sizeof(BeamTable) +
+                 sector.lists.size() * sizeof(std::vector<PlacedSun>);
         for (const auto& table : sector.tables) bytes += table.bytes();
         for (const auto& list : sector.lists) bytes += list.capacity() * sizeof(PlacedSun);
     }
     return bytes;
 }
 
-FewSuns few_suns(const PointLight& light, const Geodetic& place, double height_m, std::size_t first_band,
-                 std::size_t bands) {
+FewSuns few_suns(const PointLight& light, const Geodetic& place, double height_m,
+                 std::size_t first_band, std::size_t bands) {
     FewSuns found;
     found.whole.resize(bands);
     FlatPixels flat(bands);
     const auto sums = flat.sums();
     for (std::size_t band = 0; band < bands; ++band)
-        for (const auto& sun : light.path(first_band + band, place.latitude_rad, place.longitude_rad, height_m)) {
+        for (const auto& sun :
+             light.path(first_band + band, place.latitude_rad, place.longitude_rad, height_m)) {
             found.suns.push_back({band, {sun, 0}});
             add_level(found.whole[band], sun);
             add_suns({&found.suns.back().placed, 1}, flat.horizon(), flat.normal(), sums[band]);

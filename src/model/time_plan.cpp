@@ -18,14 +18,20 @@ namespace {
 CivilDate end_of_bin(const CivilDate& date, Totals totals) {
     switch (totals) {
         case Totals::hour:
-        case Totals::day: return next_day(date);
-        case Totals::month: return date.month == 12 ? CivilDate{date.year + 1, 1, 1} : CivilDate{date.year, date.month + 1, 1};
+        case Totals::day:
+            return next_day(date);
+        case Totals::month:
+            return date.month == 12 ? CivilDate{date.year + 1, 1, 1}
+                                    : CivilDate{date.year, date.month + 1, 1};
         case Totals::season: {
             const int first = date.month / 3 * 3 + 3;  // 3, 6, 9, 12 or, for December, 15
-            return first > 12 ? CivilDate{date.year + 1, first - 12, 1} : CivilDate{date.year, first, 1};
+            return first > 12 ? CivilDate{date.year + 1, first - 12, 1}
+                              : CivilDate{date.year, first, 1};
         }
-        case Totals::year: return {date.year + 1, 1, 1};
-        case Totals::whole: break;
+        case Totals::year:
+            return {date.year + 1, 1, 1};
+        case Totals::whole:
+            break;
     }
     return {9999, 12, 31};
 }
@@ -34,14 +40,18 @@ CivilDate end_of_bin(const CivilDate& date, Totals totals) {
 CivilDate start_of_bin(const CivilDate& date, Totals totals) {
     switch (totals) {
         case Totals::hour:
-        case Totals::day: return date;
-        case Totals::month: return {date.year, date.month, 1};
+        case Totals::day:
+            return date;
+        case Totals::month:
+            return {date.year, date.month, 1};
         case Totals::season: {
             const int first = date.month / 3 * 3;  // 0 stands for the December before
             return first == 0 ? CivilDate{date.year - 1, 12, 1} : CivilDate{date.year, first, 1};
         }
-        case Totals::year: return {date.year, 1, 1};
-        case Totals::whole: break;
+        case Totals::year:
+            return {date.year, 1, 1};
+        case Totals::whole:
+            break;
     }
     return date;
 }
@@ -56,11 +66,15 @@ std::string bin_name(const CivilDate& from, const CivilDate& end, Totals totals)
     const bool whole = from == start_of_bin(from, totals) && end == end_of_bin(from, totals);
     if (!whole || totals == Totals::whole) return span_name(from, last);
     switch (totals) {
-        case Totals::month: return fmt::format("{:04}-{:02}", from.year, from.month);
+        case Totals::month:
+            return fmt::format("{:04}-{:02}", from.year, from.month);
         case Totals::season:
-            return fmt::format("{:04}-{:02} to {:04}-{:02}", from.year, from.month, last.year, last.month);
-        case Totals::year: return fmt::format("{:04}", from.year);
-        default: return span_name(from, last);
+            return fmt::format("{:04}-{:02} to {:04}-{:02}", from.year, from.month, last.year,
+                               last.month);
+        case Totals::year:
+            return fmt::format("{:04}", from.year);
+        default:
+            return span_name(from, last);
     }
 }
 
@@ -77,11 +91,14 @@ Period period_of(std::string name, const CivilDate& from, const CivilDate& end, 
 }
 
 /// The hours of one day, named by their beginning.
-void add_hours(std::vector<Period>& periods, const CivilDate& day, DailyWindow hours, const Zone& zone) {
+void add_hours(std::vector<Period>& periods, const CivilDate& day, DailyWindow hours,
+               const Zone& zone) {
     for (double begin_h = hours.begin_h; begin_h < hours.end_h; begin_h += 1) {
         const DailyWindow one{begin_h, std::min(begin_h + 1, hours.end_h)};
         const auto minutes = static_cast<int>(std::lround(begin_h * 60));
-        periods.push_back(period_of(fmt::format("{}T{:02}:{:02}", format_date(day), minutes / 60, minutes % 60), day, next_day(day), one, zone));
+        periods.push_back(
+            period_of(fmt::format("{}T{:02}:{:02}", format_date(day), minutes / 60, minutes % 60),
+                      day, next_day(day), one, zone));
     }
 }
 
@@ -113,7 +130,8 @@ std::vector<Period> periods_of(CivilDate from, CivilDate to, Totals totals, Dail
             start = next_day(start);
             continue;
         }
-        const CivilDate stop = std::min(end, totals == Totals::whole ? end : end_of_bin(start, totals));
+        const CivilDate stop =
+            std::min(end, totals == Totals::whole ? end : end_of_bin(start, totals));
         periods.push_back(period_of(bin_name(start, stop, totals), start, stop, hours, zone));
         start = stop;
     }
@@ -125,7 +143,8 @@ Period with_mid_month_days(const Period& period) {
     Period thinned{period.name, {}, period.duration_s};
     for (const auto& day : period.days) {
         const auto& date = day.date;
-        const bool same_month = !thinned.days.empty() && thinned.days.back().date.year == date.year &&
+        const bool same_month = !thinned.days.empty() &&
+                                thinned.days.back().date.year == date.year &&
                                 thinned.days.back().date.month == date.month;
         if (same_month) {
             thinned.days.back().weight += day.weight;
@@ -137,7 +156,8 @@ Period with_mid_month_days(const Period& period) {
     return thinned;
 }
 
-std::vector<Period> periods_of(const std::vector<NamedSpan>& spans, DailyWindow hours, const Zone& zone) {
+std::vector<Period> periods_of(const std::vector<NamedSpan>& spans, DailyWindow hours,
+                               const Zone& zone) {
     std::vector<Period> periods;
     for (const auto& span : spans)
         periods.push_back(period_of(span.name, span.from, next_day(span.to), hours, zone));

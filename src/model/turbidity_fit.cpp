@@ -27,7 +27,8 @@ double value_of(const WeatherRecord& record, Weather quantity, std::size_t row) 
 }
 
 /// Adds a row to its hour; the means are sums until the hour is closed.
-void add_row(SunHour& hour, const WeatherRecord& record, const Station& station, const SunTrack& track, std::size_t row) {
+void add_row(SunHour& hour, const WeatherRecord& record, const Station& station,
+             const SunTrack& track, std::size_t row) {
     const auto& span = record.intervals[row];
     const double count = std::max(1.0, std::ceil((span.end - span.begin) / sample_s));
     const double step_s = (span.end - span.begin) / count;
@@ -40,11 +41,13 @@ void add_row(SunHour& hour, const WeatherRecord& record, const Station& station,
         sines += sine / count;
     }
     const double length_s = span.end - span.begin;
-    const double beam = value_of(record, Weather::beam, row), diffuse = value_of(record, Weather::diffuse, row);
+    const double beam = value_of(record, Weather::beam, row),
+                 diffuse = value_of(record, Weather::diffuse, row);
     const double parts = beam * sines + diffuse;
     hour.beam_w_m2 += beam * length_s;
     hour.diffuse_w_m2 += diffuse * length_s;
-    hour.global_w_m2 += (std::isnan(parts) ? value_of(record, Weather::global, row) : parts) * length_s;
+    hour.global_w_m2 +=
+        (std::isnan(parts) ? value_of(record, Weather::global, row) : parts) * length_s;
 }
 
 double seconds_of(const SunHour& hour) {
@@ -54,14 +57,19 @@ double seconds_of(const SunHour& hour) {
 }
 
 /// How far the rows of an hour stray from the model's course, over their mean.
-double unsteadiness(const SunHour& hour, const WeatherRecord& record, double turbidity, double pressure) {
+double unsteadiness(const SunHour& hour, const WeatherRecord& record, double turbidity,
+                    double pressure) {
     double squares = 0, sum = 0;
     for (const auto& sample : hour.samples) {
-        const auto clear = esra2000(sample.extraterrestrial_normal_w_m2, std::asin(sample.sine), turbidity, pressure);
-        const double beam = value_of(record, Weather::beam, sample.row), diffuse = value_of(record, Weather::diffuse, sample.row);
+        const auto clear = esra2000(sample.extraterrestrial_normal_w_m2, std::asin(sample.sine),
+                                    turbidity, pressure);
+        const double beam = value_of(record, Weather::beam, sample.row),
+                     diffuse = value_of(record, Weather::diffuse, sample.row);
         const double parts = beam * sample.sine + diffuse;
-        const double global = std::isnan(parts) ? value_of(record, Weather::global, sample.row) : parts;
-        const double modelled = clear.beam_normal_w_m2 * sample.sine + clear.diffuse_horizontal_w_m2;
+        const double global =
+            std::isnan(parts) ? value_of(record, Weather::global, sample.row) : parts;
+        const double modelled =
+            clear.beam_normal_w_m2 * sample.sine + clear.diffuse_horizontal_w_m2;
         squares += (global - modelled) * (global - modelled);
         sum += global;
     }
@@ -79,25 +87,35 @@ double quantile(std::vector<double>& values, double share) {
 
 }  // namespace
 
-std::vector<SunHour> sun_hours(const WeatherRecord& record, const Station& station, double lowest_elevation_rad) {
+std::vector<SunHour> sun_hours(const WeatherRecord& record, const Station& station,
+                               double lowest_elevation_rad) {
     if (!record.has(Weather::global) && !record.has(Weather::beam))
-        throw Error(Cause::input, "the table has neither global nor beam light", {}, "name its column: weather.columns: {global: NAME}");
+        throw Error(Cause::input, "the table has neither global nor beam light", {},
+                    "name its column: weather.columns: {global: NAME}");
     if (record.interval_s > hour_s)
-        throw Error(Cause::input, "the rows stand for more than an hour each", {}, "turbidity shows in hours, not in days");
-    const SunTrack track(record.intervals.front().begin - hour_s, record.intervals.back().end + hour_s);
+        throw Error(Cause::input, "the rows stand for more than an hour each", {},
+                    "turbidity shows in hours, not in days");
+    const SunTrack track(record.intervals.front().begin - hour_s,
+                         record.intervals.back().end + hour_s);
     std::vector<SunHour> hours;
     for (std::size_t first = 0; first < record.intervals.size();) {
-        const auto hour_of = [&](std::size_t row) { return std::floor((record.intervals[row].begin + record.intervals[row].end) / 2 / hour_s); };
+        const auto hour_of = [&](std::size_t row) {
+            return std::floor((record.intervals[row].begin + record.intervals[row].end) / 2 /
+                              hour_s);
+        };
         SunHour hour;
         hour.middle = (hour_of(first) + 0.5) * hour_s;
         std::size_t last = first;
-        for (; last < record.intervals.size() && hour_of(last) == hour_of(first); ++last) add_row(hour, record, station, track, last);
+        for (; last < record.intervals.size() && hour_of(last) == hour_of(first); ++last)
+            add_row(hour, record, station, track, last);
         first = last;
         const double seconds = seconds_of(hour);
         constexpr double whole = 0.95;
         const bool known = !std::isnan(hour.global_w_m2) || !std::isnan(hour.beam_w_m2);
-        if (hour.lowest_sine < std::sin(lowest_elevation_rad) || seconds < whole * hour_s || !known) continue;
-        for (auto* value : {&hour.global_w_m2, &hour.beam_w_m2, &hour.diffuse_w_m2}) *value /= seconds;
+        if (hour.lowest_sine < std::sin(lowest_elevation_rad) || seconds < whole * hour_s || !known)
+            continue;
+        for (auto* value : {&hour.global_w_m2, &hour.beam_w_m2, &hour.diffuse_w_m2})
+            *value /= seconds;
         hours.push_back(std::move(hour));
     }
     return hours;
@@ -107,10 +125,12 @@ HourLight clear_hour(const SunHour& hour, double turbidity, double pressure_rati
     HourLight sum;
     double seconds = 0;
     for (const auto& sample : hour.samples) {
-        const auto clear = esra2000(sample.extraterrestrial_normal_w_m2, std::asin(sample.sine), turbidity, pressure_ratio);
+        const auto clear = esra2000(sample.extraterrestrial_normal_w_m2, std::asin(sample.sine),
+                                    turbidity, pressure_ratio);
         sum.beam_w_m2 += clear.beam_normal_w_m2 * sample.seconds;
         sum.diffuse_w_m2 += clear.diffuse_horizontal_w_m2 * sample.seconds;
-        sum.global_w_m2 += (clear.beam_normal_w_m2 * sample.sine + clear.diffuse_horizontal_w_m2) * sample.seconds;
+        sum.global_w_m2 +=
+            (clear.beam_normal_w_m2 * sample.sine + clear.diffuse_horizontal_w_m2) * sample.seconds;
         seconds += sample.seconds;
     }
     return {sum.global_w_m2 / seconds, sum.beam_w_m2 / seconds, sum.diffuse_w_m2 / seconds};
@@ -121,7 +141,8 @@ double fitted_turbidity(std::span<const SunHour> hours, double pressure_ratio, F
         double sum = 0;
         for (const auto& hour : hours) {
             const auto clear = clear_hour(hour, turbidity, pressure_ratio);
-            const double off = to == FitTo::beam ? clear.beam_w_m2 - hour.beam_w_m2 : clear.global_w_m2 - hour.global_w_m2;
+            const double off = to == FitTo::beam ? clear.beam_w_m2 - hour.beam_w_m2
+                                                 : clear.global_w_m2 - hour.global_w_m2;
             sum += off * off;
         }
         return sum;
@@ -145,8 +166,8 @@ double fitted_turbidity(std::span<const SunHour> hours, double pressure_ratio, F
 }
 
 TurbidityFit fit_turbidity(const WeatherRecord& record, const Station& station) {
-    constexpr double lowest_elevation_rad = rad_from_deg(10), highest_clear = 7, edge = 0.01, steady = 0.5, diffuse_within = 0.5, course_within = 0.05,
-                     short_row_s = 1200;
+    constexpr double lowest_elevation_rad = rad_from_deg(10), highest_clear = 7, edge = 0.01,
+                     steady = 0.5, diffuse_within = 0.5, course_within = 0.05, short_row_s = 1200;
     TurbidityFit fit;
     fit.to = record.has(Weather::beam) ? FitTo::beam : FitTo::global;
     const double pressure = pressure_ratio(station.height_m);
@@ -161,15 +182,19 @@ TurbidityFit fit_turbidity(const WeatherRecord& record, const Station& station) 
         const double turbidity = fitted_turbidity({&hour, 1}, pressure, fit.to);
         if (turbidity < lowest_turbidity + edge || turbidity > highest_clear) continue;
         const auto clear = clear_hour(hour, turbidity, pressure);
-        if (std::abs(hour.diffuse_w_m2 - clear.diffuse_w_m2) > diffuse_within * clear.diffuse_w_m2) continue;
-        if (record.interval_s <= short_row_s && !std::isnan(hour.global_w_m2) && unsteadiness(hour, record, turbidity, pressure) > course_within) continue;
+        if (std::abs(hour.diffuse_w_m2 - clear.diffuse_w_m2) > diffuse_within * clear.diffuse_w_m2)
+            continue;
+        if (record.interval_s <= short_row_s && !std::isnan(hour.global_w_m2) &&
+            unsteadiness(hour, record, turbidity, pressure) > course_within)
+            continue;
         candidates.push_back({hour.middle, turbidity});
     }
     std::array<std::vector<double>, 12> by_month;
     std::array<std::set<CivilDate>, 12> days;
     for (std::size_t i = 0; i < candidates.size(); ++i) {
         const auto steady_beside = [&](std::size_t j) {
-            return j < candidates.size() && std::abs(candidates[j].middle - candidates[i].middle) <= hour_s + 1 &&
+            return j < candidates.size() &&
+                   std::abs(candidates[j].middle - candidates[i].middle) <= hour_s + 1 &&
                    std::abs(candidates[j].turbidity - candidates[i].turbidity) < steady;
         };
         if (!steady_beside(i + 1) && !(i > 0 && steady_beside(i - 1))) continue;
@@ -182,7 +207,8 @@ TurbidityFit fit_turbidity(const WeatherRecord& record, const Station& station) 
     for (std::size_t m = 0; m < by_month.size(); ++m) {
         auto& values = by_month[m];
         if (values.empty()) continue;
-        fit.months[m] = MonthTurbidity{quantile(values, 0.5), quantile(values, 1.0 / 6), quantile(values, 5.0 / 6), values.size(), days[m].size()};
+        fit.months[m] = MonthTurbidity{quantile(values, 0.5), quantile(values, 1.0 / 6),
+                                       quantile(values, 5.0 / 6), values.size(), days[m].size()};
     }
     return fit;
 }

@@ -6,7 +6,8 @@
 
 namespace sunbudget {
 
-void WeatherProblems::add(std::size_t line, std::string_view column, std::string what, std::string todo) {
+void WeatherProblems::add(std::size_t line, std::string_view column, std::string what,
+                          std::string todo) {
     constexpr std::size_t most_told = 10;
     if (++count_ > most_told) return;
     std::string where = file_;
@@ -19,7 +20,8 @@ void WeatherProblems::throw_if_any() const {
     if (count_ == 0) return;
     auto all = told_;
     if (count_ > told_.size())
-        all.push_back({std::to_string(count_ - told_.size()) + " more problems of this table", file_, {}});
+        all.push_back(
+            {std::to_string(count_ - told_.size()) + " more problems of this table", file_, {}});
     throw Error(Cause::input, std::move(all));
 }
 
@@ -52,11 +54,16 @@ char guessed_separator(std::string_view line) {
 
 char separator_char(Separator separator, std::string_view line) {
     switch (separator) {
-        case Separator::comma: return ',';
-        case Separator::semicolon: return ';';
-        case Separator::tab: return '\t';
-        case Separator::blanks: return ' ';
-        case Separator::automatic: break;
+        case Separator::comma:
+            return ',';
+        case Separator::semicolon:
+            return ';';
+        case Separator::tab:
+            return '\t';
+        case Separator::blanks:
+            return ' ';
+        case Separator::automatic:
+            break;
     }
     return guessed_separator(line);
 }
@@ -74,7 +81,8 @@ NameAndUnit name_and_unit(std::string_view header_cell) {
     return {std::string(text), {}};
 }
 
-std::optional<std::string_view> WeatherTable::next_line(std::size_t& at, std::size_t& number) const {
+std::optional<std::string_view> WeatherTable::next_line(std::size_t& at,
+                                                        std::size_t& number) const {
     while (at < text_.size()) {
         const auto end = std::min(text_.find('\n', at), text_.size());
         auto line = text_.substr(at, end - at);
@@ -88,7 +96,8 @@ std::optional<std::string_view> WeatherTable::next_line(std::size_t& at, std::si
     return std::nullopt;
 }
 
-WeatherTable::WeatherTable(std::string_view text, const WeatherFormat& format) : text_(text), format_(format) {
+WeatherTable::WeatherTable(std::string_view text, const WeatherFormat& format)
+    : text_(text), format_(format) {
     if (text_.starts_with("\xef\xbb\xbf")) text_.remove_prefix(3);  // a byte-order mark
     std::size_t at = 0, number = 0;
     for (int skipped = 0; skipped < format.skip && at < text_.size(); ++skipped) {
@@ -107,7 +116,8 @@ WeatherTable::WeatherTable(std::string_view text, const WeatherFormat& format) :
     }
     std::size_t rows_at = first_row_, rows_number = 0;
     if (!next_line(rows_at, rows_number))
-        throw Error(Cause::input, "the weather table has no row", format.file, "look at weather.skip, weather.header and weather.comment");
+        throw Error(Cause::input, "the weather table has no row", format.file,
+                    "look at weather.skip, weather.header and weather.comment");
 }
 
 WeatherCells WeatherTable::cells_of(std::string_view line) const {
@@ -131,7 +141,8 @@ std::optional<std::size_t> WeatherTable::index_of(const WeatherColumn& column) c
     return std::nullopt;
 }
 
-void WeatherTable::each_row(const std::function<void(std::size_t, const WeatherCells&)>& visit) const {
+void WeatherTable::each_row(
+    const std::function<void(std::size_t, const WeatherCells&)>& visit) const {
     std::size_t at = first_row_, number = first_line_ - 1;
     while (const auto line = next_line(at, number)) visit(number, cells_of(*line));
 }

@@ -49,7 +49,8 @@ class WeatherTable {
 
     [[nodiscard]] WeatherCells cells_of(std::string_view line) const;
     /// The next line that counts, from `at` on, which moves behind it.
-    [[nodiscard]] std::optional<std::string_view> next_line(std::size_t& at, std::size_t& number) const;
+    [[nodiscard]] std::optional<std::string_view> next_line(std::size_t& at,
+                                                            std::size_t& number) const;
 };
 
 /// A header cell "air [degC]" in its two parts; the unit may be missing.

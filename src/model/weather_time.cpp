@@ -33,7 +33,8 @@ std::optional<CivilDate> date_of(const Parts& parts) {
     if (parts.day_of_year) {
         const long first = days_from_civil({*parts.year, 1, 1});
         const auto date = civil_from_days(first + *parts.day_of_year - 1);
-        return *parts.day_of_year >= 1 && date.year == *parts.year ? std::optional(date) : std::nullopt;
+        return *parts.day_of_year >= 1 && date.year == *parts.year ? std::optional(date)
+                                                                   : std::nullopt;
     }
     if (!parts.month || !parts.day) return std::nullopt;
     const CivilDate date{*parts.year, *parts.month, *parts.day};
@@ -54,10 +55,11 @@ std::optional<WeatherTime> time_of(const Parts& parts) {
 
 struct Token {
     std::string_view letters;
-    std::optional<int> Parts::* part;
+    std::optional<int> Parts::*part;
 };
-constexpr std::array tokens{Token{"YYYY", &Parts::year}, Token{"MM", &Parts::month}, Token{"DDD", &Parts::day_of_year},
-                            Token{"DD", &Parts::day},    Token{"hh", &Parts::hour},  Token{"mm", &Parts::minute},
+constexpr std::array tokens{Token{"YYYY", &Parts::year},       Token{"MM", &Parts::month},
+                            Token{"DDD", &Parts::day_of_year}, Token{"DD", &Parts::day},
+                            Token{"hh", &Parts::hour},         Token{"mm", &Parts::minute},
                             Token{"ss", &Parts::second}};
 
 const Token* token_at(std::string_view form) {
@@ -120,7 +122,8 @@ WeatherTime weather_time(std::string_view text, std::string_view form) {
 }
 
 WeatherTime weather_time(std::string_view text) {
-    for (const auto* form : {"YYYY-MM-DDThh:mm", "YYYY-MM-DD hh:mm", "YYYY-MM-DD", "YYYYMMDDhhmm", "YYYYMMDD"}) {
+    for (const auto* form :
+         {"YYYY-MM-DDThh:mm", "YYYY-MM-DD hh:mm", "YYYY-MM-DD", "YYYYMMDDhhmm", "YYYYMMDD"}) {
         Parts parts;
         auto rest = text;
         if (!take_form(rest, form, parts)) continue;
@@ -128,30 +131,37 @@ WeatherTime weather_time(std::string_view text) {
         if (!time) break;
         if (rest.empty() || (time->seconds_of_day && take_rest(rest, *time))) return *time;
     }
-    refuse(text, "write 2025-06-21T12:00, or say how times are written: weather.time_form: \"DD/MM/YYYY hh:mm\"");
+    refuse(text,
+           "write 2025-06-21T12:00, or say how times are written: weather.time_form: \"DD/MM/YYYY "
+           "hh:mm\"");
 }
 
-WeatherClock::WeatherClock(const WeatherTable& table, const WeatherFormat& format) : format_(format) {
+WeatherClock::WeatherClock(const WeatherTable& table, const WeatherFormat& format)
+    : format_(format) {
     bool declared = false;
     for (std::size_t i = 0; i < index_.size(); ++i) {
         if (!format.time_columns[i]) continue;
         declared = true;
         index_[i] = table.index_of(*format.time_columns[i]);
         if (!index_[i])
-            throw Error(Cause::input, "the table has no column \"" + format.time_columns[i]->name + "\"", format.file,
-                        suggestion(format.time_columns[i]->name, table.header()));
+            throw Error(Cause::input,
+                        "the table has no column \"" + format.time_columns[i]->name + "\"",
+                        format.file, suggestion(format.time_columns[i]->name, table.header()));
     }
     if (!declared)
-        for (std::size_t i = 0; i < index_.size(); ++i) index_[i] = table.index_of({weather_time_names[i], 0});
+        for (std::size_t i = 0; i < index_.size(); ++i)
+            index_[i] = table.index_of({weather_time_names[i], 0});
     const bool has_day = index_[3] ? index_[2].has_value() : index_[4].has_value();
     if (!index_[0] && !(has_day && (index_[1] || format.typical)))
         throw Error(Cause::input, "no column of the table is known to hold its time", format.file,
-                    "say weather.columns: {time: NAME}, or year, month, day (or day_of_year), hour, minute");
+                    "say weather.columns: {time: NAME}, or year, month, day (or day_of_year), "
+                    "hour, minute");
 }
 
 WeatherTime WeatherClock::at(const WeatherCells& cells) const {
     if (!index_[0]) return from_parts(cells);
-    if (*index_[0] >= cells.size()) throw Error(Cause::input, "the row has no time", {}, "it has too few cells");
+    if (*index_[0] >= cells.size())
+        throw Error(Cause::input, "the row has no time", {}, "it has too few cells");
     const auto text = trimmed(cells[*index_[0]]);
     return format_.time_form.empty() ? weather_time(text) : weather_time(text, format_.time_form);
 }
@@ -161,14 +171,17 @@ WeatherTime WeatherClock::from_parts(const WeatherCells& cells) const {
         if (!index_[part]) return std::nullopt;
         const auto text = *index_[part] < cells.size() ? cells[*index_[part]] : std::string_view();
         const auto value = parse_number(text);
-        if (!value) throw Error(Cause::input, "\"" + std::string(text) + "\" is no " + weather_time_names[part], {}, {});
+        if (!value)
+            throw Error(Cause::input,
+                        "\"" + std::string(text) + "\" is no " + weather_time_names[part], {}, {});
         return value;
     };
     const auto whole = [&](std::size_t part) -> std::optional<int> {
         const auto value = number(part);
         if (!value) return std::nullopt;
         if (std::abs(*value) > 9999 || std::trunc(*value) != *value)
-            throw Error(Cause::input, shortest(*value) + " is no " + weather_time_names[part], {}, {});
+            throw Error(Cause::input, shortest(*value) + " is no " + weather_time_names[part], {},
+                        {});
         return static_cast<int>(*value);
     };
     Parts parts;
@@ -178,13 +191,17 @@ WeatherTime WeatherClock::from_parts(const WeatherCells& cells) const {
     parts.day = whole(3);
     if (!parts.day) parts.day_of_year = whole(4);
     auto time = time_of(parts);
-    if (!time) throw Error(Cause::input, "the row's day is on no calendar", {}, "look at the columns of year, month and day");
+    if (!time)
+        throw Error(Cause::input, "the row's day is on no calendar", {},
+                    "look at the columns of year, month and day");
     const auto hour = number(5), minute = number(6);
     if (!hour) return *time;
     time->seconds_of_day = *hour * 3600 + minute.value_or(0) * 60;
     if (!(*time->seconds_of_day >= 0 && *time->seconds_of_day <= seconds_per_day))
-        throw Error(Cause::input, "the row's time of day is " + shortest(*hour) + " h " + shortest(minute.value_or(0)) + " min", {},
-                    "a day has hours 0 to 24");
+        throw Error(Cause::input,
+                    "the row's time of day is " + shortest(*hour) + " h " +
+                        shortest(minute.value_or(0)) + " min",
+                    {}, "a day has hours 0 to 24");
     return *time;
 }
 

@@ -68,7 +68,8 @@ void add_from_table(const LookUp& t, std::size_t count) noexcept {
         std::memcpy(&other_high, t.second + t.at_second->index[i] + 1, sizeof other_high);
         const Lanes found = (low + t.at_first->share[i] * (high - low)) +
                             (other_low + t.at_second->share[i] * (other_high - other_low));
-        const Lanes normal{t.east[i], t.north[i], t.up[i], 1.0F, t.east[i], t.north[i], t.up[i], 0.0F};
+        const Lanes normal{t.east[i], t.north[i], t.up[i], 1.0F,
+                           t.east[i], t.north[i], t.up[i], 0.0F};
         const Lanes parts = found * normal;
         const Lanes level = parts + __builtin_shuffle(parts, Pick{1, 1, 1, 1, 5, 5, 5, 5});
         const Lanes whole = level + __builtin_shuffle(parts, Pick{2, 2, 2, 2, 6, 6, 6, 6});
@@ -93,9 +94,8 @@ OneSun one_sun(const PlacedSun& placed) noexcept {
     return {static_cast<float>(sun.beam[0]),   static_cast<float>(sun.beam[1]),
             static_cast<float>(sun.beam[2]),   static_cast<float>(sun.hours),
             static_cast<float>(sun.around[0]), static_cast<float>(sun.around[1]),
-            static_cast<float>(sun.around[2]),
-            static_cast<float>(sun.sine_high), static_cast<float>(1 / rise),
-            static_cast<float>(placed.share)};
+            static_cast<float>(sun.around[2]), static_cast<float>(sun.sine_high),
+            static_cast<float>(1 / rise),      static_cast<float>(placed.share)};
 }
 
 struct SunRows {
@@ -114,7 +114,8 @@ void add_one(const OneSun sun, const SunRows row, std::size_t count) noexcept {
         const float above = (sun.high - horizon) * sun.per_sine;
         const float capped = above > 1 ? 1.0F : above;
         const float lit = capped < 0 ? 0.0F : capped;  // NaN stays
-        const float facing = (row.east[i] * sun.east + row.north[i] * sun.north) + row.up[i] * sun.up;
+        const float facing =
+            (row.east[i] * sun.east + row.north[i] * sun.north) + row.up[i] * sun.up;
         const float front = facing < 0 ? 0.0F : facing;
         beam[i] += lit * front;
         hours[i] += lit * sun.hours;
@@ -131,8 +132,8 @@ void add_one_around(const OneSun sun, const SunRows row, std::size_t count) noex
         const float above = (sun.high - horizon) * sun.per_sine;
         const float capped = above > 1 ? 1.0F : above;
         const float lit = capped < 0 ? 0.0F : capped;
-        const float facing =
-            (row.east[i] * sun.around_east + row.north[i] * sun.around_north) + row.up[i] * sun.around_up;
+        const float facing = (row.east[i] * sun.around_east + row.north[i] * sun.around_north) +
+                             row.up[i] * sun.around_up;
         around[i] += lit * (facing < 0 ? 0.0F : facing);
     }
 }
@@ -202,10 +203,12 @@ void add_beams(std::span<const BeamTable> tables, const HorizonPair& horizon,
         for (std::size_t period = 0; period < tables.size(); ++period) {
             if (tables[period].empty()) continue;
             const auto& sum = sums[period];
-            add_from_table({tables[period].half(0), tables[period].half(1), &at[0], &at[1], normal.east.data() + from,
-                            normal.north.data() + from, normal.up.data() + from, sum.beam.data() + from,
-                            sum.hours.data() + from, sum.around.empty() ? nullptr : sum.around.data() + from},
-                           count);
+            add_from_table(
+                {tables[period].half(0), tables[period].half(1), &at[0], &at[1],
+                 normal.east.data() + from, normal.north.data() + from, normal.up.data() + from,
+                 sum.beam.data() + from, sum.hours.data() + from,
+                 sum.around.empty() ? nullptr : sum.around.data() + from},
+                count);
         }
     }
 }

@@ -19,7 +19,8 @@ SUNBUDGET_CLONES void saturation_row(std::size_t n, const float* t, float* out) 
     for (std::size_t i = 0; i < n; ++i) {
         const float celsius = t[i] - static_cast<float>(freezing_k);
         out[i] = static_cast<float>(at_freezing_hpa) *
-                 exp_of(static_cast<float>(slope) * celsius / (celsius - static_cast<float>(pole_celsius)));
+                 exp_of(static_cast<float>(slope) * celsius /
+                        (celsius - static_cast<float>(pole_celsius)));
     }
 }
 }  // namespace

@@ -44,7 +44,8 @@ template <class Weather, class Visitor>
 void visit_weather(Weather& weather, Visitor& v) {
     v.value("table", weather.table);
     v.map("columns", weather.columns, [&](auto& columns) {
-        for (std::size_t i = 0; i < weather_time_names.size(); ++i) v.value(weather_time_names[i], columns.of_time[i]);
+        for (std::size_t i = 0; i < weather_time_names.size(); ++i)
+            v.value(weather_time_names[i], columns.of_time[i]);
         visit_quantities(columns, v);
     });
     v.map("units", weather.units, [&](auto& units) { visit_quantities(units, v); });

@@ -48,7 +48,8 @@ class Typed {
     static void get(const Node& node, double& value) { value = *read_number(node); }
     static void get(const Node& node, int& value) { value = static_cast<int>(*read_integer(node)); }
     static void get(const Node& node, std::vector<int>& value) {
-        for (const auto& item : node.children) value.push_back(static_cast<int>(*read_integer(item)));
+        for (const auto& item : node.children)
+            value.push_back(static_cast<int>(*read_integer(item)));
     }
     static void get(const Node& node, bool& value) { value = *read_boolean(node); }
     static void get(const Node& node, WeatherColumn& value) {
@@ -108,24 +109,29 @@ class Typed {
         else
             get(node, value.emplace<PlanPath>());
     }
-    static void get(const Node& node, PlanLength& value) { value.m = *read_quantity(node, ValueKind::length); }
+    static void get(const Node& node, PlanLength& value) {
+        value.m = *read_quantity(node, ValueKind::length);
+    }
     void get(const Node& node, std::vector<PlanRaster>& value) const {
         if (node.shape == Node::Shape::scalar) return get(node, value.emplace_back());
         for (const auto& item : node.children) get(item, value.emplace_back());
     }
     void get(const Node& node, std::variant<Monthly, std::vector<PlanRaster>>& value) const {
-        if (node.shape == Node::Shape::scalar && !read_number(node)) return get(node, value.emplace<std::vector<PlanRaster>>());
+        if (node.shape == Node::Shape::scalar && !read_number(node))
+            return get(node, value.emplace<std::vector<PlanRaster>>());
         get(node, value.emplace<Monthly>());
     }
     void get(const Node& node, std::variant<std::vector<PlanRaster>, PlanLength>& value) const {
-        if (node.shape == Node::Shape::scalar && read_quantity(node, ValueKind::length)) return get(node, value.emplace<PlanLength>());
+        if (node.shape == Node::Shape::scalar && read_quantity(node, ValueKind::length))
+            return get(node, value.emplace<PlanLength>());
         auto& rasters = value.emplace<std::vector<PlanRaster>>();
         if (node.shape == Node::Shape::scalar) return get(node, rasters.emplace_back());
         for (const auto& item : node.children) get(item, rasters.emplace_back());
     }
     void get(const Node& node, PlanSkyNumbers& value) const {
         const bool numbers = node.shape == Node::Shape::list || read_number(node);
-        return numbers ? get(node, value.emplace<Monthly>()) : get(node, value.emplace<PlanRaster>());
+        return numbers ? get(node, value.emplace<Monthly>())
+                       : get(node, value.emplace<PlanRaster>());
     }
     void get(const Node& node, std::variant<SlopeFrom, PlanPath>& value) const {
         if (is_choice(node, "terrain.slope_from")) return get(node, value.emplace<SlopeFrom>());
@@ -135,7 +141,10 @@ class Typed {
     static Monthly months(const Node& node, ValueKind kind) {
         Monthly values{};
         // A bad one among them has a problem of its own already.
-        const auto one = [&](const Node& item) { return (kind == ValueKind::number ? read_number(item) : read_quantity(item, kind)).value_or(0); };
+        const auto one = [&](const Node& item) {
+            return (kind == ValueKind::number ? read_number(item) : read_quantity(item, kind))
+                .value_or(0);
+        };
         if (node.shape == Node::Shape::scalar)
             values.fill(one(node));
         else
@@ -155,20 +164,30 @@ class Typed {
         value.scale = number_or(node, "scale", 1);
         value.offset = number_or(node, "offset", 0);
     }
-    void field(const Node& node, ValueKind kind, std::variant<Monthly, PlanFieldRaster>& value) const {
+    void field(const Node& node, ValueKind kind,
+               std::variant<Monthly, PlanFieldRaster>& value) const {
         if (node.shape == Node::Shape::map) return get(node, value.emplace<PlanFieldRaster>());
         value = months(node, kind);
     }
-    void get(const Node& node, PlanTemperatures& value) const { field(node, ValueKind::temperature, value.value); }
-    void get(const Node& node, PlanPressures& value) const { field(node, ValueKind::pressure, value.value); }
-    void get(const Node& node, PlanShares& value) const { field(node, ValueKind::number, value.value); }
+    void get(const Node& node, PlanTemperatures& value) const {
+        field(node, ValueKind::temperature, value.value);
+    }
+    void get(const Node& node, PlanPressures& value) const {
+        field(node, ValueKind::pressure, value.value);
+    }
+    void get(const Node& node, PlanShares& value) const {
+        field(node, ValueKind::number, value.value);
+    }
     static void get(const Node& node, PlanWind& value) {
-        if (node.shape == Node::Shape::scalar && std::ranges::find(wind_names, node.text) != wind_names.end())
+        if (node.shape == Node::Shape::scalar &&
+            std::ranges::find(wind_names, node.text) != wind_names.end())
             get(node, value.value.emplace<WindCase>());
         else
             value.value = months(node, ValueKind::speed);
     }
-    static void get(const Node& node, PlanLapse& value) { value.k_km = months(node, ValueKind::lapse); }
+    static void get(const Node& node, PlanLapse& value) {
+        value.k_km = months(node, ValueKind::lapse);
+    }
     void get(const Node& node, PlanEmissivity& value) const {
         if (node.shape == Node::Shape::scalar) return get(node, value.value.emplace<double>());
         if (node.has("from")) return get(*node.find("from"), value.value.emplace<EmissivityFrom>());
@@ -195,7 +214,9 @@ class Typed {
         } else if (node.has("from")) {
             value.value = HeatSource::balance;
         } else {
-            value.value = PlanDifference{node.has("air_plus") ? *read_quantity(*node.find("air_plus"), ValueKind::difference) : 0};
+            value.value = PlanDifference{
+                node.has("air_plus") ? *read_quantity(*node.find("air_plus"), ValueKind::difference)
+                                     : 0};
         }
     }
 
@@ -329,14 +350,17 @@ Plan with_defaults(Plan plan) {
     visit_plan(plan, filler);
     // A default belongs to the models that have the parameter.
     for (std::size_t i = 0; i < sky_parameter_count; ++i)
-        if (auto& given = plan.sky.parameters[i]; given && given->place.is_default && plan.sky.model &&
-                                                  !has(clear_model_named(**plan.sky.model), static_cast<SkyParameter>(i)))
+        if (auto& given = plan.sky.parameters[i];
+            given && given->place.is_default && plan.sky.model &&
+            !has(clear_model_named(**plan.sky.model), static_cast<SkyParameter>(i)))
             given.reset();
     // How the ground is looked at belongs to an elevation raster.
     const auto& elevation = plan.terrain.elevation;
-    if (!elevation || std::holds_alternative<PlanLength>(**elevation)) plan.terrain = {elevation, {}, {}, {}, {}};
+    if (!elevation || std::holds_alternative<PlanLength>(**elevation))
+        plan.terrain = {elevation, {}, {}, {}, {}};
     // Weights of one's own stand in the place of a method, and a sensor of one's own has none.
-    if (auto& image = plan.surface.reflectance; image && image->method && image->method->place.is_default)
+    if (auto& image = plan.surface.reflectance;
+        image && image->method && image->method->place.is_default)
         if (image->weights || weight_set_names(*image->sensor).empty()) image->method.reset();
     // How a table is read belongs to a table.
     if (plan.weather && !plan.weather->table) {

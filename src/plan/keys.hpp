@@ -17,9 +17,9 @@ enum class ValueKind {
     raster,  ///< PATH, PATH:N or PATH:NAME
     number,
     integer,
-    boolean,   ///< true or false, without quotes
-    length,    ///< "250 m", "20 km", "800 ft"
-    duration,  ///< "10 min", "1 h", "30 s"
+    boolean,      ///< true or false, without quotes
+    length,       ///< "250 m", "20 km", "800 ft"
+    duration,     ///< "10 min", "1 h", "30 s"
     temperature,  ///< "25 degC", "298 K"
     difference,   ///< of two temperatures: "4 K"
     pressure,     ///< "14 hPa", "1.4 kPa"

@@ -9,8 +9,8 @@ namespace sunbudget {
 
 // The words of the plan file for our enumerations, in their order.
 inline constexpr std::array<std::string_view, 2> like_names{"surface", "elevation"};
-inline constexpr std::array<std::string_view, 6> totals_names{"whole", "hour", "day", "month", "season",
-                                                              "year"};
+inline constexpr std::array<std::string_view, 6> totals_names{"whole", "hour",   "day",
+                                                              "month", "season", "year"};
 inline constexpr std::array<std::string_view, 2> format_names{"cog", "geotiff"};
 inline constexpr std::array<std::string_view, 3> height_unit_names{"m", "ft", "us-ft"};
 inline constexpr std::array<std::string_view, 2> slope_from_names{"elevation", "flat"};
@@ -19,7 +19,8 @@ inline constexpr std::array<std::string_view, 3> product_names{"auto", "surface-
                                                                "top-of-atmosphere"};
 inline constexpr std::array<std::string_view, 2> fill_names{"nodata", "cover"};
 inline constexpr std::array<std::string_view, 2> implausible_names{"stop", "allow"};
-inline constexpr std::array<std::string_view, 5> separator_names{"auto", "comma", "semicolon", "tab", "blanks"};
+inline constexpr std::array<std::string_view, 5> separator_names{"auto", "comma", "semicolon",
+                                                                 "tab", "blanks"};
 inline constexpr std::array<std::string_view, 2> decimal_names{"point", "comma"};
 inline constexpr std::array<std::string_view, 2> header_names{"line", "none"};
 inline constexpr std::array<std::string_view, 3> stamp_names{"start", "middle", "end"};

@@ -8,8 +8,8 @@
 #include "resolve_parts.hpp"
 #include "sunbudget/base/text.hpp"
 #include "sunbudget/base/units.hpp"
-#include "sunbudget/physics/sun.hpp"
 #include "sunbudget/model/neighbourhood.hpp"
+#include "sunbudget/physics/sun.hpp"
 #include "sunbudget/raster/locator.hpp"
 
 namespace sunbudget {
@@ -28,7 +28,8 @@ std::optional<double> metres_in(const std::string& unit) {
     return std::nullopt;
 }
 
-Source open_elevation(RasterName name, std::optional<HeightUnit> unit, const ResolveOptions& options, Run& run) {
+Source open_elevation(RasterName name, std::optional<HeightUnit> unit,
+                      const ResolveOptions& options, Run& run) {
     SourceSpec spec;
     spec.name = std::move(name);
     spec.limits = limits_of(options);
@@ -40,7 +41,8 @@ Source open_elevation(RasterName name, std::optional<HeightUnit> unit, const Res
                     info.name.path.string(), "say terrain.unit: m, ft or us-ft");
     if (*metres != 1.0) {
         spec.scaling = Scaling{info.scale.value_or(1) * *metres, info.offset.value_or(0) * *metres};
-        run.assumptions.push_back("terrain.elevation: heights in \"" + info.unit + "\" are turned into metres");
+        run.assumptions.push_back("terrain.elevation: heights in \"" + info.unit +
+                                  "\" are turned into metres");
     }
     return Source::open(spec, run.grid);
 }
@@ -66,9 +68,11 @@ void thin_days(const Plan& plan, const Run& run, TimePlan& times, RunProblems& p
         for (const double v : {0.0, 0.5, 1.0}) {
             const auto place = locator.at(u * run.grid.width, v * run.grid.height);
             if (!place || std::abs(deg_from_rad(place->latitude_rad)) <= farthest_deg) continue;
-            problems.add(Cause::usage, plan.time.days->place,
-                         fmt::format("one day for a month does not hold at {:.1f} degrees of latitude", deg_from_rad(place->latitude_rad)),
-                         "beyond 60 degrees write days: all");
+            problems.add(
+                Cause::usage, plan.time.days->place,
+                fmt::format("one day for a month does not hold at {:.1f} degrees of latitude",
+                            deg_from_rad(place->latitude_rad)),
+                "beyond 60 degrees write days: all");
             return;
         }
     for (auto& period : times.periods) period = with_mid_month_days(period);
@@ -88,7 +92,8 @@ bool needs_time(const Plan& plan) {
 
 bool needs_light(const Plan& plan) {
     return needs_sun(plan) ||
-           (needs_time(plan) && plan.surface_temperature && std::holds_alternative<HeatSource>((**plan.surface_temperature).value));
+           (needs_time(plan) && plan.surface_temperature &&
+            std::holds_alternative<HeatSource>((**plan.surface_temperature).value));
 }
 
 Geodetic middle_of(const Grid& grid) {
@@ -97,10 +102,13 @@ Geodetic middle_of(const Grid& grid) {
     return place.value_or(Geodetic{});
 }
 
-void resolve_elevation(const Plan& plan, const ResolveOptions& options, Run& run, RunProblems& problems) {
+void resolve_elevation(const Plan& plan, const ResolveOptions& options, Run& run,
+                       RunProblems& problems) {
     const bool needed = needs_light(plan);
     if (!plan.terrain.elevation) {
-        if (needed) run.assumptions.emplace_back("no terrain.elevation: the ground is level and open, at 0 m");
+        if (needed)
+            run.assumptions.emplace_back(
+                "no terrain.elevation: the ground is level and open, at 0 m");
         return;
     }
     const auto& terrain = plan.terrain;
@@ -109,7 +117,8 @@ void resolve_elevation(const Plan& plan, const ResolveOptions& options, Run& run
         run.assumptions.push_back(fmt::format("the ground is level and open, at {} m", height->m));
         return;
     }
-    const std::optional<HeightUnit> unit = terrain.unit ? std::optional(**terrain.unit) : std::nullopt;
+    const std::optional<HeightUnit> unit =
+        terrain.unit ? std::optional(**terrain.unit) : std::nullopt;
     Terrain found;
     problems.attempt(terrain.elevation->place, [&] {
         for (const auto& raster : std::get<std::vector<PlanRaster>>(**terrain.elevation)) {
@@ -133,30 +142,38 @@ void resolve_elevation(const Plan& plan, const ResolveOptions& options, Run& run
     run.terrain = std::move(found);
     run.methods.push_back(&method("horizon", "terrain-horizons"));
     if (!run.has_surface() && needed)
-        run.assumptions.push_back(fmt::format("no surface: the ground in view is taken to reflect {}", albedo_where_unknown));
+        run.assumptions.push_back(fmt::format(
+            "no surface: the ground in view is taken to reflect {}", albedo_where_unknown));
 }
 
 namespace {
 
 /// Says what a number of the sky's is worth; false where it is refused.
-bool judge_number(const Parameter& parameter, double value, const Place& place, Run& run, RunProblems& problems) {
+bool judge_number(const Parameter& parameter, double value, const Place& place, Run& run,
+                  RunProblems& problems) {
     const auto verdict = judge(parameter, value);
     if (verdict == Verdict::refused)
-        problems.add(Cause::usage, place, fmt::format("{} {}, expected a number {}", parameter.name, value, parameter.allowed.text()),
+        problems.add(Cause::usage, place,
+                     fmt::format("{} {}, expected a number {}", parameter.name, value,
+                                 parameter.allowed.text()),
                      parameter.text);
     if (verdict == Verdict::unusual)
-        run.warnings.push_back(fmt::format("sky.{}: {} is outside the usual {}", parameter.name, value, parameter.usual.text()));
+        run.warnings.push_back(fmt::format("sky.{}: {} is outside the usual {}", parameter.name,
+                                           value, parameter.usual.text()));
     return verdict == Verdict::fine;
 }
 
-std::vector<Source> open_months(const PlanRaster& raster, const ResolveOptions& options, const Run& run) {
+std::vector<Source> open_months(const PlanRaster& raster, const ResolveOptions& options,
+                                const Run& run) {
     SourceSpec spec;
     spec.name = raster_of(raster);
     spec.limits = limits_of(options);
     const int bands = raster.band.empty() ? inspect(spec.name, spec.limits).bands : 1;
     if (bands != 1 && bands != 12)
-        throw Error(Cause::input, fmt::format("the raster has {} bands, expected one, or twelve for the months", bands),
-                    spec.name.path.string(), "name the band: PATH:N");
+        throw Error(
+            Cause::input,
+            fmt::format("the raster has {} bands, expected one, or twelve for the months", bands),
+            spec.name.path.string(), "name the band: PATH:N");
     std::vector<Source> months;
     for (int band = 1; band <= bands; ++band) {
         if (bands == 12) spec.name.band = band;
@@ -173,47 +190,61 @@ std::vector<double> sample(const Source& source, const Grid& grid) {
     std::vector<double> values;
     for (long r = 0; r < side; ++r)
         for (long c = 0; c < side; ++c) {
-            reader.read({(2 * c + 1) * grid.width / (2 * side), (2 * r + 1) * grid.height / (2 * side), 1, 1}, pixel);
+            reader.read({(2 * c + 1) * grid.width / (2 * side),
+                         (2 * r + 1) * grid.height / (2 * side), 1, 1},
+                        pixel);
             if (!std::isnan(pixel.at(0, 0))) values.push_back(static_cast<double>(pixel.at(0, 0)));
         }
     return values;
 }
 
-void resolve_sky_raster(SkyParameter id, const Given<PlanSkyNumbers>& given, const Parameter& parameter, const ResolveOptions& options,
-                        Run& run, RunProblems& problems) {
+void resolve_sky_raster(SkyParameter id, const Given<PlanSkyNumbers>& given,
+                        const Parameter& parameter, const ResolveOptions& options, Run& run,
+                        RunProblems& problems) {
     problems.attempt(given.place, [&] {
-        SkyRaster raster{id, open_months(std::get<PlanRaster>(*given), options, run), parameter.allowed.low, parameter.allowed.high};
+        SkyRaster raster{id, open_months(std::get<PlanRaster>(*given), options, run),
+                         parameter.allowed.low, parameter.allowed.high};
         for (std::size_t month = 0; month < raster.months.size(); ++month) {
             const auto values = sample(raster.months[month], run.grid);
             if (values.empty())
-                throw Error(Cause::input, "no value in any of 256 places spread over the grid", raster.months[month].info().name.path.string(),
+                throw Error(Cause::input, "no value in any of 256 places spread over the grid",
+                            raster.months[month].info().name.path.string(),
                             "give a raster that covers the grid");
             // Of many values beyond the range one is enough to say so.
-            const auto odd = std::find_if(values.begin(), values.end(), [&](double v) { return judge(parameter, v) != Verdict::fine; });
-            if (odd != values.end() && !judge_number(parameter, *odd, given.place, run, problems) && judge(parameter, *odd) == Verdict::refused)
+            const auto odd = std::find_if(values.begin(), values.end(), [&](double v) {
+                return judge(parameter, v) != Verdict::fine;
+            });
+            if (odd != values.end() && !judge_number(parameter, *odd, given.place, run, problems) &&
+                judge(parameter, *odd) == Verdict::refused)
                 return;
-            const double mean = std::accumulate(values.begin(), values.end(), 0.0) / static_cast<double>(values.size());
+            const double mean = std::accumulate(values.begin(), values.end(), 0.0) /
+                                static_cast<double>(values.size());
             if (raster.months.size() == 1)
                 run.sky[id].fill(mean);
             else
                 run.sky[id][month] = mean;
         }
         add_input(run, "sky." + parameter.name, raster.months.front());
-        run.assumptions.push_back(fmt::format("sky.{}: shadows are weighed by the light of its mean, {:.3g}", parameter.name, run.sky[id][0]));
+        run.assumptions.push_back(
+            fmt::format("sky.{}: shadows are weighed by the light of its mean, {:.3g}",
+                        parameter.name, run.sky[id][0]));
         run.sky_raster = std::move(raster);
     });
 }
 
-void resolve_sky_parameter(SkyParameter id, const Plan& plan, const ResolveOptions& options, Run& run, RunProblems& problems) {
+void resolve_sky_parameter(SkyParameter id, const Plan& plan, const ResolveOptions& options,
+                           Run& run, RunProblems& problems) {
     const auto& given = plan.sky[id];
     const auto* parameter = method("clear_sky", name_of(run.sky.model)).parameter(name_of(id));
     if (!given || parameter == nullptr) return;
-    if (std::holds_alternative<PlanRaster>(**given)) return resolve_sky_raster(id, *given, *parameter, options, run, problems);
+    if (std::holds_alternative<PlanRaster>(**given))
+        return resolve_sky_raster(id, *given, *parameter, options, run, problems);
     run.sky[id] = std::get<Monthly>(**given);
     for (const double value : run.sky[id])
         if (!judge_number(*parameter, value, given->place, run, problems)) break;
     if (given->place.is_default && needs_light(plan))
-        run.assumptions.push_back(fmt::format("sky.{} is not given: {}{}", parameter->name, *parameter->default_value,
+        run.assumptions.push_back(fmt::format("sky.{} is not given: {}{}", parameter->name,
+                                              *parameter->default_value,
                                               parameter->unit == "1" ? "" : " " + parameter->unit));
 }
 
@@ -222,10 +253,13 @@ void resolve_sky_parameter(SkyParameter id, const Plan& plan, const ResolveOptio
 void resolve_sky(const Plan& plan, const ResolveOptions& options, Run& run, RunProblems& problems) {
     if (plan.sky.model) run.sky = Sky(clear_model_named(**plan.sky.model));
     if (plan.sky.diffuse) run.sky.diffuse = diffuse_model_named(**plan.sky.diffuse);
-    for (std::size_t i = 0; i < sky_parameter_count; ++i) resolve_sky_parameter(static_cast<SkyParameter>(i), plan, options, run, problems);
+    for (std::size_t i = 0; i < sky_parameter_count; ++i)
+        resolve_sky_parameter(static_cast<SkyParameter>(i), plan, options, run, problems);
     if (plan.sky.uncertainty) run.light_uncertainty = **plan.sky.uncertainty;
     if (waits_for_ground(run.sky) && !run.has_surface() && !run.terrain && needs_light(plan))
-        run.assumptions.push_back(fmt::format("no surface: the ground that lights the sky is taken to reflect {}", albedo_where_unknown));
+        run.assumptions.push_back(
+            fmt::format("no surface: the ground that lights the sky is taken to reflect {}",
+                        albedo_where_unknown));
 }
 
 void resolve_time(const Plan& plan, Run& run, RunProblems& problems) {
@@ -242,27 +276,35 @@ void resolve_time(const Plan& plan, Run& run, RunProblems& problems) {
         problems.attempt(time.at->place, [&] {
             const auto middle = middle_of(run.grid);
             const auto utc = resolve((**time.at).written, times.zone, middle.longitude_rad);
-            times.instant = times.zone.kind() == ZoneKind::solar_true && !(**time.at).written.offset_s
-                                ? utc_from_true_solar(utc)
-                                : utc;
+            times.instant =
+                times.zone.kind() == ZoneKind::solar_true && !(**time.at).written.offset_s
+                    ? utc_from_true_solar(utc)
+                    : utc;
             if (times.zone.is_solar() && !(**time.at).written.offset_s)
-                run.assumptions.push_back(fmt::format("{} is the sun's time in the middle of the grid: {} everywhere",
-                                                      times.zone.name(), format_utc(*times.instant)));
+                run.assumptions.push_back(
+                    fmt::format("{} is the sun's time in the middle of the grid: {} everywhere",
+                                times.zone.name(), format_utc(*times.instant)));
         });
     } else {
         DailyWindow hours;
         if (time.hours) hours = {(**time.hours).begin_h, (**time.hours).end_h};
-        const auto* named = time.totals ? std::get_if<std::vector<NamedPeriod>>(&**time.totals) : nullptr;
+        const auto* named =
+            time.totals ? std::get_if<std::vector<NamedPeriod>>(&**time.totals) : nullptr;
         times.periods = named != nullptr ? periods_of(named_spans(*named), hours, times.zone)
-                                         : periods_of(**time.from, **time.to, totals_of(time), hours, times.zone);
+                                         : periods_of(**time.from, **time.to, totals_of(time),
+                                                      hours, times.zone);
     }
     if (time.days && **time.days == DayChoice::mid_month) thin_days(plan, run, times, problems);
     run.times = std::move(times);
     if (!needs_light(plan)) return;
     for (const auto* family : {"sun_position", "air_mass"})
         run.methods.push_back(&method(family, method_names(family).front()));
-    if (run.terrain) run.methods.push_back(&method("diffuse_sky", plan.sky.diffuse ? **plan.sky.diffuse : method_names("diffuse_sky").front()));
-    run.methods.push_back(&method("clear_sky", plan.sky.model ? **plan.sky.model : method_names("clear_sky").front()));
+    if (run.terrain)
+        run.methods.push_back(&method("diffuse_sky", plan.sky.diffuse
+                                                         ? **plan.sky.diffuse
+                                                         : method_names("diffuse_sky").front()));
+    run.methods.push_back(&method(
+        "clear_sky", plan.sky.model ? **plan.sky.model : method_names("clear_sky").front()));
 }
 
 }  // namespace sunbudget

@@ -37,7 +37,8 @@ void add_input(Run& run, const std::string& role, const Source& source);
 [[nodiscard]] Geodetic middle_of(const Grid& grid);
 
 /// What the files of an image's albedo say of it.
-[[nodiscard]] std::map<std::string, std::string> reflectance_metadata(const ReflectanceSurface& surface);
+[[nodiscard]] std::map<std::string, std::string> reflectance_metadata(
+    const ReflectanceSurface& surface);
 
 /// Light under a closed cover in a month, as a share of the clear sky's.
 [[nodiscard]] double overcast_in(const Plan& plan, int month);
@@ -52,13 +53,17 @@ void add_input(Run& run, const std::string& role, const Source& source);
 
 // The steps of resolve(), in this order; each fills its part of the run.
 /// After the cover, which becomes the fill.
-void resolve_reflectance(const PlanReflectance& image, const ResolveOptions& options, Run& run, RunProblems& problems);
-void resolve_surface(const Plan& plan, const ResolveOptions& options, Run& run, RunProblems& problems);
-void resolve_elevation(const Plan& plan, const ResolveOptions& options, Run& run, RunProblems& problems);
+void resolve_reflectance(const PlanReflectance& image, const ResolveOptions& options, Run& run,
+                         RunProblems& problems);
+void resolve_surface(const Plan& plan, const ResolveOptions& options, Run& run,
+                     RunProblems& problems);
+void resolve_elevation(const Plan& plan, const ResolveOptions& options, Run& run,
+                       RunProblems& problems);
 void resolve_sky(const Plan& plan, const ResolveOptions& options, Run& run, RunProblems& problems);
 void resolve_time(const Plan& plan, Run& run, RunProblems& problems);
 /// After the time, which a typical year is laid over.
-void resolve_weather(const Plan& plan, const ResolveOptions& options, Run& run, RunProblems& problems);
+void resolve_weather(const Plan& plan, const ResolveOptions& options, Run& run,
+                     RunProblems& problems);
 /// The pressure of the sky, from the plan or the table. After the weather.
 void resolve_pressure(const Plan& plan, Run& run, RunProblems& problems);
 /// Says which of a table's columns the run is not made from. After all that takes some.
@@ -66,14 +71,16 @@ void tell_unused_columns(Run& run);
 /// The wind at the ground, and where it is from.
 [[nodiscard]] Wind resolved_wind(const Plan& plan, Run& run);
 /// Last of the sky: what the table or the plan's clouds make of it.
-void resolve_clouds(const Plan& plan, const ResolveOptions& options, Run& run, RunProblems& problems);
+void resolve_clouds(const Plan& plan, const ResolveOptions& options, Run& run,
+                    RunProblems& problems);
 /// After surface, sky, time and weather.
 void resolve_heat(const Plan& plan, const ResolveOptions& options, Run& run, RunProblems& problems);
 void resolve_layers(const Plan& plan, Run& run, RunProblems& problems);
 /// A layer of the run as it is: file, bands, units, metadata.
 [[nodiscard]] OutputLayer output_layer(const Layer& layer, const Run& run);
 /// After the layers, to which it adds those of the changes.
-void resolve_changes(const Plan& plan, const ResolveOptions& options, Run& run, RunProblems& problems);
+void resolve_changes(const Plan& plan, const ResolveOptions& options, Run& run,
+                     RunProblems& problems);
 /// Adds the slope to the layers where zones need it.
 void resolve_zones(const Plan& plan, Run& run, RunProblems& problems);
 

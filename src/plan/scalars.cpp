@@ -15,16 +15,25 @@ std::span<const Unit> units_of(ValueKind kind) {
     static constexpr std::array differences{Unit{"K", 1}};
     static constexpr std::array pressures{Unit{"hPa", 1}, Unit{"kPa", 10}, Unit{"Pa", 0.01}};
     static constexpr std::array lapses{Unit{"K/km", 1}};
-    static constexpr std::array speeds{Unit{"m/s", 1}, Unit{"km/h", 1 / 3.6}, Unit{"kn", 1852.0 / 3600}};
+    static constexpr std::array speeds{Unit{"m/s", 1}, Unit{"km/h", 1 / 3.6},
+                                       Unit{"kn", 1852.0 / 3600}};
     switch (kind) {
-        case ValueKind::length: return lengths;
-        case ValueKind::duration: return durations;
-        case ValueKind::temperature: return temperatures;
-        case ValueKind::difference: return differences;
-        case ValueKind::pressure: return pressures;
-        case ValueKind::lapse: return lapses;
-        case ValueKind::speed: return speeds;
-        default: return {};
+        case ValueKind::length:
+            return lengths;
+        case ValueKind::duration:
+            return durations;
+        case ValueKind::temperature:
+            return temperatures;
+        case ValueKind::difference:
+            return differences;
+        case ValueKind::pressure:
+            return pressures;
+        case ValueKind::lapse:
+            return lapses;
+        case ValueKind::speed:
+            return speeds;
+        default:
+            return {};
     }
 }
 
@@ -39,7 +48,8 @@ std::optional<double> read_integer(const Node& node) {
 }
 
 std::optional<bool> read_boolean(const Node& node) {
-    if (node.shape != Node::Shape::scalar || node.quoted || plain_kind(node.text) != Plain::boolean) return std::nullopt;
+    if (node.shape != Node::Shape::scalar || node.quoted || plain_kind(node.text) != Plain::boolean)
+        return std::nullopt;
     return node.text.front() == 't' || node.text.front() == 'T';
 }
 

@@ -110,9 +110,10 @@ Json of_form(const Form& form) {
                                   ? R"(^[^\u0000-\u001f\u007f]*[./][^\u0000-\u001f\u007f]*$)"
                                   : printable_text);
         case ValueKind::raster:
-            return of_pattern(form.beside_names
-                                  ? R"(^(?!.*:0*$)(?=.*[./])[^:\u0000-\u001f\u007f][^\u0000-\u001f\u007f]*$)"
-                                  : R"(^(?!.*:0*$)[^:\u0000-\u001f\u007f][^\u0000-\u001f\u007f]*$)");
+            return of_pattern(
+                form.beside_names
+                    ? R"(^(?!.*:0*$)(?=.*[./])[^:\u0000-\u001f\u007f][^\u0000-\u001f\u007f]*$)"
+                    : R"(^(?!.*:0*$)[^:\u0000-\u001f\u007f][^\u0000-\u001f\u007f]*$)");
         case ValueKind::date:
             return of_pattern("^[0-9]{4}-[0-9]{2}-[0-9]{2}$");
         case ValueKind::instant:

@@ -53,7 +53,9 @@ void Validator::scalar(Node& node, const std::vector<Form>& forms) {
         auto against = mismatch(node, form);
         if (!against) return;
         // A length or number out of range is no file of that name.
-        if (read_quantity(node, form.kind) || (form.kind == ValueKind::number && parse_number(node.text))) return refuse(node, against->what, against->todo);
+        if (read_quantity(node, form.kind) ||
+            (form.kind == ValueKind::number && parse_number(node.text)))
+            return refuse(node, against->what, against->todo);
         found.push_back(std::move(*against));
     }
     if (forms.size() == 1) return refuse(node, found.front().what, found.front().todo);

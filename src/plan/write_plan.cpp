@@ -194,28 +194,38 @@ class Writer {
     [[nodiscard]] Node node_of(const NamedPeriod& period) const;
     [[nodiscard]] Node node_of(const PlanFieldRaster& field) const;
     [[nodiscard]] Node node_of(const PlanSurfaceRaster& field) const;
-    [[nodiscard]] Node node_of(const PlanTemperatures& field) const { return field_of(field.value, " K"); }
-    [[nodiscard]] Node node_of(const PlanPressures& field) const { return field_of(field.value, " hPa"); }
+    [[nodiscard]] Node node_of(const PlanTemperatures& field) const {
+        return field_of(field.value, " K");
+    }
+    [[nodiscard]] Node node_of(const PlanPressures& field) const {
+        return field_of(field.value, " hPa");
+    }
     [[nodiscard]] Node node_of(const PlanShares& field) const { return node_of(field.value); }
-    [[nodiscard]] Node node_of(const PlanLapse& lapse) const { return months_of(lapse.k_km, " K/km"); }
+    [[nodiscard]] Node node_of(const PlanLapse& lapse) const {
+        return months_of(lapse.k_km, " K/km");
+    }
     [[nodiscard]] Node node_of(const PlanWind& wind) const {
         const auto* months = std::get_if<Monthly>(&wind.value);
-        return months != nullptr ? months_of(*months, " m/s") : node_of(std::get<WindCase>(wind.value));
+        return months != nullptr ? months_of(*months, " m/s")
+                                 : node_of(std::get<WindCase>(wind.value));
     }
     [[nodiscard]] Node node_of(const PlanEmissivity& emissivity) const {
         const auto* from = std::get_if<EmissivityFrom>(&emissivity.value);
         return from != nullptr ? map_of({{"from", node_of(*from)}}) : node_of(emissivity.value);
     }
     [[nodiscard]] Node node_of(const PlanSurfaceTemperature& surface) const;
-    [[nodiscard]] Node field_of(const std::variant<Monthly, PlanFieldRaster>& field, const char* unit) const {
+    [[nodiscard]] Node field_of(const std::variant<Monthly, PlanFieldRaster>& field,
+                                const char* unit) const {
         const auto* months = std::get_if<Monthly>(&field);
-        return months != nullptr ? months_of(*months, unit) : node_of(std::get<PlanFieldRaster>(field));
+        return months != nullptr ? months_of(*months, unit)
+                                 : node_of(std::get<PlanFieldRaster>(field));
     }
     /// One value for all months, or a list of twelve.
     [[nodiscard]] Node months_of(const Monthly& months, const char* unit) const {
         std::vector<std::string> texts;
         for (const double value : months) texts.push_back(shortest(value) + unit);
-        return std::ranges::count(months, months[0]) == 12 ? node_of(texts.front()) : node_of(texts);
+        return std::ranges::count(months, months[0]) == 12 ? node_of(texts.front())
+                                                           : node_of(texts);
     }
     [[nodiscard]] static Node map_of(std::vector<std::pair<const char*, Node>> entries) {
         Node map;
@@ -295,7 +305,8 @@ Node Writer::node_of(const PlanSurfaceRaster& field) const {
     if (field.scale) entries.emplace_back("scale", number_node(*field.scale));
     if (field.offset) entries.emplace_back("offset", number_node(*field.offset));
     if (!field.time.empty()) entries.emplace_back("time", text_node(field.time));
-    if (field.covers != RasterCovers::instant) entries.emplace_back("covers", node_of(field.covers));
+    if (field.covers != RasterCovers::instant)
+        entries.emplace_back("covers", node_of(field.covers));
     return map_of(std::move(entries));
 }
 
@@ -304,7 +315,8 @@ Node Writer::node_of(const PlanSurfaceTemperature& surface) const {
     if (const auto* table = std::get_if<SurfaceTable>(&surface.value)) return node_of(*table);
     if (const auto* above = std::get_if<PlanDifference>(&surface.value))
         return map_of({{"air_plus", text_node(shortest(above->k) + " K")}});
-    if (const auto* from = std::get_if<HeatSource>(&surface.value)) return map_of({{"from", node_of(*from)}});
+    if (const auto* from = std::get_if<HeatSource>(&surface.value))
+        return map_of({{"from", node_of(*from)}});
     return node_of(std::get<PlanSurfaceRaster>(surface.value));
 }
 

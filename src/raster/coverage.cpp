@@ -41,11 +41,14 @@ void add_edge(PixelPlace a, PixelPlace b, Plane<double>& cells) {
     const double per_row = (b.column - a.column) / (b.row - a.row);
     // Ends are taken as they are: neighbours that share an edge get the same numbers.
     const auto column_at = [&](double row) {
-        return row == a.row ? a.column : row == b.row ? b.column : a.column + (row - a.row) * per_row;
+        return row == a.row   ? a.column
+               : row == b.row ? b.column
+                              : a.column + (row - a.row) * per_row;
     };
     for (double row = std::floor(top); row < bottom; ++row) {
         const double from = std::max(top, row), to = std::min(bottom, row + 1);
-        add_piece(column_at(from), column_at(to), sense * (to - from), cells.row(static_cast<int>(row)));
+        add_piece(column_at(from), column_at(to), sense * (to - from),
+                  cells.row(static_cast<int>(row)));
     }
 }
 
@@ -58,7 +61,8 @@ double signed_area(std::span<const PixelPlace> ring) noexcept {
     double twice = 0;
     for (std::size_t i = 0; i < ring.size(); ++i) {
         const auto &a = ring[i], &b = ring[i + 1 < ring.size() ? i + 1 : 0];
-        twice += (b.column - origin.column) * (a.row - origin.row) - (a.column - origin.column) * (b.row - origin.row);
+        twice += (b.column - origin.column) * (a.row - origin.row) -
+                 (a.column - origin.column) * (b.row - origin.row);
     }
     return twice / 2;
 }
@@ -69,12 +73,14 @@ void cover(const Rings& rings, const Window& window, Plane<double>& shares) {
     else
         shares.fill(0);
     const auto inside = [&](const PixelPlace& place) {
-        return PixelPlace{place.column - static_cast<double>(window.column), place.row - static_cast<double>(window.row)};
+        return PixelPlace{place.column - static_cast<double>(window.column),
+                          place.row - static_cast<double>(window.row)};
     };
     for (const auto& ring : rings)
         for (std::size_t i = 0; i < ring.size(); ++i) {
             const auto a = inside(ring[i]), b = inside(ring[i + 1 < ring.size() ? i + 1 : 0]);
-            const bool beside = std::max(a.row, b.row) <= 0 || std::min(a.row, b.row) >= window.height ||
+            const bool beside = std::max(a.row, b.row) <= 0 ||
+                                std::min(a.row, b.row) >= window.height ||
                                 std::min(a.column, b.column) >= window.width;
             if (a.row != b.row && !beside) add_edge(a, b, shares);
         }

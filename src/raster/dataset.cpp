@@ -188,14 +188,16 @@ DatasetPtr open_dataset(const RasterName& name) {
 std::vector<std::string> band_descriptions(GDALDataset& dataset, const RasterName& name) {
     const auto names_in = [](GDALDataset& file) {
         std::vector<std::string> names;
-        for (int band = 1; band <= file.GetRasterCount(); ++band) names.emplace_back(file.GetRasterBand(band)->GetDescription());
+        for (int band = 1; band <= file.GetRasterCount(); ++band)
+            names.emplace_back(file.GetRasterBand(band)->GetDescription());
         return names;
     };
     const std::string driver = dataset.GetDriverName();
     if (driver == "netCDF") return names_in(dataset);
     const GdalMessages messages;
     const auto plain = open_with(gdal_name(name), {driver.c_str()}, nullptr);
-    return names_in(plain != nullptr && plain->GetRasterCount() == dataset.GetRasterCount() ? *plain : dataset);
+    return names_in(
+        plain != nullptr && plain->GetRasterCount() == dataset.GetRasterCount() ? *plain : dataset);
 }
 
 void refuse_cut_file(GDALRasterBand& band, const std::filesystem::path& path) {

@@ -22,7 +22,8 @@ using DatasetPtr = std::unique_ptr<GDALDataset, CloseDataset>;
 [[nodiscard]] DatasetPtr open_dataset(const RasterName& name);
 
 /// The bands' names, "" where a band has none. Asked of the file itself: with its overviews off GDAL hides them.
-[[nodiscard]] std::vector<std::string> band_descriptions(GDALDataset& dataset, const RasterName& name);
+[[nodiscard]] std::vector<std::string> band_descriptions(GDALDataset& dataset,
+                                                         const RasterName& name);
 
 /// Throws Error(input) when a block of a GeoTIFF's band, or of its mask, ends beyond the file's end.
 void refuse_cut_file(GDALRasterBand& band, const std::filesystem::path& path);

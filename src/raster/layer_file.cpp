@@ -56,8 +56,7 @@ Layout layout_of(const LayerFile& layer) {
     assert(!layer.bands.empty());
     auto levels = levels_of(layer.grid.width, layer.grid.height, layer.tile);
     if (!layer.overviews) levels.resize(1);
-    return {layer.grid.width, layer.grid.height,
-            layer.tile,       static_cast<int>(layer.bands.size()),
+    return {layer.grid.width, layer.grid.height, layer.tile, static_cast<int>(layer.bands.size()),
             layer.sample,     std::move(levels)};
 }
 

@@ -59,8 +59,8 @@ Vector3 earth_centred(const Geodetic& place) {
     constexpr double a = 6378137.0, f = 1 / 298.257223563, e2 = f * (2 - f);
     const double s = std::sin(place.latitude_rad), c = std::cos(place.latitude_rad);
     const double normal_m = a / std::sqrt(1 - e2 * s * s);
-    return {normal_m * c * std::cos(place.longitude_rad), normal_m * c * std::sin(place.longitude_rad),
-            normal_m * (1 - e2) * s};
+    return {normal_m * c * std::cos(place.longitude_rad),
+            normal_m * c * std::sin(place.longitude_rad), normal_m * (1 - e2) * s};
 }
 
 }  // namespace
@@ -72,29 +72,36 @@ std::optional<PixelMatrix> Locator::matrix(double column, double row) const {
     const auto above = at(column, row - 0.5), below = at(column, row + 0.5);
     if (!middle || !left || !right || !above || !below) return std::nullopt;
     const double sin_lat = std::sin(middle->latitude_rad), cos_lat = std::cos(middle->latitude_rad);
-    const double sin_lon = std::sin(middle->longitude_rad), cos_lon = std::cos(middle->longitude_rad);
+    const double sin_lon = std::sin(middle->longitude_rad),
+                 cos_lon = std::cos(middle->longitude_rad);
     const auto step = [&](const Geodetic& from, const Geodetic& to) {
         const auto a = earth_centred(from), b = earth_centred(to);
         const double x = b.x - a.x, y = b.y - a.y, z = b.z - a.z;
-        return std::pair{-sin_lon * x + cos_lon * y, -sin_lat * (cos_lon * x + sin_lon * y) + cos_lat * z};
+        return std::pair{-sin_lon * x + cos_lon * y,
+                         -sin_lat * (cos_lon * x + sin_lon * y) + cos_lat * z};
     };
     const auto [east_per_column, north_per_column] = step(*left, *right);
     const auto [east_per_row, north_per_row] = step(*above, *below);
     const PixelMatrix found{east_per_column, east_per_row, north_per_column, north_per_row};
-    const double size = std::hypot(east_per_column, north_per_column) * std::hypot(east_per_row, north_per_row);
+    const double size =
+        std::hypot(east_per_column, north_per_column) * std::hypot(east_per_row, north_per_row);
     if (!(std::abs(found.determinant()) > 1e-6 * size)) return std::nullopt;
     return found;
 }
 
-void places_in(const Grid& grid, const Grid& from, std::span<double> column, std::span<double> row) {
+void places_in(const Grid& grid, const Grid& from, std::span<double> column,
+               std::span<double> row) {
     for (std::size_t i = 0; i < column.size(); ++i) {
-        const double easting = from.easting(column[i], row[i]), northing = from.northing(column[i], row[i]);
+        const double easting = from.easting(column[i], row[i]),
+                     northing = from.northing(column[i], row[i]);
         column[i] = easting;
         row[i] = northing;
     }
-    if (!same_crs(grid.crs_wkt, from.crs_wkt)) PointTransform(from.crs_wkt, grid.crs_wkt, from).apply(column, row);
+    if (!same_crs(grid.crs_wkt, from.crs_wkt))
+        PointTransform(from.crs_wkt, grid.crs_wkt, from).apply(column, row);
     for (std::size_t i = 0; i < column.size(); ++i)
-        if (!std::isnan(column[i]) && !std::isnan(row[i])) to_pixels(grid.affine, column[i], row[i]);
+        if (!std::isnan(column[i]) && !std::isnan(row[i]))
+            to_pixels(grid.affine, column[i], row[i]);
 }
 
 std::optional<PixelPlace> place_in(const Grid& grid, double easting, double northing,

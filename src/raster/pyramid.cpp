@@ -53,7 +53,8 @@ SUNBUDGET_CLONES void round_values(float* row, std::size_t count, double quantum
 }
 
 /// Folds a whole tile into one quarter of its parent.
-void fold(const Plane<float>& child, int left, int top, float quantum, bool nearest, Plane<float>& parent) {
+void fold(const Plane<float>& child, int left, int top, float quantum, bool nearest,
+          Plane<float>& parent) {
     const auto half = static_cast<std::size_t>(child.width() / 2);
     for (int r = 0; r < child.height() / 2; ++r) {
         const auto upper = child.row(2 * r), lower = child.row(2 * r + 1);
@@ -127,7 +128,7 @@ class Folder {
     Spool& spool_;
     mutable std::mutex lock_;  // of what follows; the pixels of a parent are written without it
     std::map<std::size_t, Parent> parents_;
-    std::size_t held_ = 0;       // parents with pixels
+    std::size_t held_ = 0;  // parents with pixels
     std::size_t most_parents_ = 0;
 };
 
@@ -177,7 +178,8 @@ void Folder<T>::climb(TileKey key, const Plane<T>& pixels) {
         if (spool_.has(parent)) return;  // from an earlier run, made of the same pixels
         const int half = layout_.tile / 2;
         if (auto* pixels_above = parent_pixels(parent))
-            fold(*child, key.column % 2 * half, key.row % 2 * half, quantum_, nearest_, *pixels_above);
+            fold(*child, key.column % 2 * half, key.row % 2 * half, quantum_, nearest_,
+                 *pixels_above);
         whole = taken_if_whole(parent);
         if (whole.empty()) return;
         spool_.append(parent, encode_tile(whole));
@@ -207,9 +209,11 @@ Plane<T> Folder<T>::made_from_spool(const TileKey& parent) const {
     const int half = layout_.tile / 2;
     for (const int down : {0, 1})
         for (const int across : {0, 1}) {
-            const TileKey child{parent.level - 1, parent.band, 2 * parent.column + across, 2 * parent.row + down};
+            const TileKey child{parent.level - 1, parent.band, 2 * parent.column + across,
+                                2 * parent.row + down};
             if (!layout_.has(child)) continue;
-            fold(decode_tile<T>(spool_.read(child), layout_.tile), across * half, down * half, quantum_, nearest_, pixels);
+            fold(decode_tile<T>(spool_.read(child), layout_.tile), across * half, down * half,
+                 quantum_, nearest_, pixels);
         }
     return pixels;
 }
@@ -262,7 +266,8 @@ struct Pyramid::State {
     std::variant<std::monostate, Folder<float>, Folder<std::uint16_t>> folder;
 };
 
-Pyramid::Pyramid(const LayerFile& layer, Spool& spool, std::size_t most_bytes) : state_(std::make_unique<State>()) {
+Pyramid::Pyramid(const LayerFile& layer, Spool& spool, std::size_t most_bytes)
+    : state_(std::make_unique<State>()) {
     assert(layout_of(layer) == spool.layout());
     if (layer.sample == Sample::float32)
         state_->folder.emplace<Folder<float>>(layer, spool, most_bytes).restore();

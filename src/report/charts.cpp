@@ -132,12 +132,12 @@ std::string curve_svg(std::span<const CurvePoint> points, const std::string& uni
     std::size_t longest = 0;
     for (const auto& point : points) longest = std::max(longest, short_name(point.name).size());
     const double names_with_room = inner_width / (letter * static_cast<double>(longest) + between);
-    const auto every = static_cast<std::size_t>(std::ceil(std::max(1.0, static_cast<double>(points.size()) / std::max(1.0, names_with_room))));
+    const auto every = static_cast<std::size_t>(std::ceil(
+        std::max(1.0, static_cast<double>(points.size()) / std::max(1.0, names_with_room))));
     bool pen_down = false;
     for (std::size_t i = 0; i < points.size(); ++i) {
         if (i % every == 0)
-            content +=
-                text_at(x_of(i), height - 16, "middle", escaped(short_name(points[i].name)));
+            content += text_at(x_of(i), height - 16, "middle", escaped(short_name(points[i].name)));
         const bool there = !std::isnan(points[i].mean);
         const double y = top + inner_height * (1 - (points[i].mean - low) / (high - low));
         if (there) way += fmt::format("{}{:.1f} {:.1f}", pen_down ? "L" : "M", x_of(i), y);

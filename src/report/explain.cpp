@@ -56,9 +56,9 @@ const ClassUse* class_of(const Run& run, const InputPixel& input) {
 }
 
 std::string range_text(const ClassUse& use) {
-    return use.albedo_low ? fmt::format(", range {} to {}", number(*use.albedo_low),
-                                        number(*use.albedo_high))
-                          : std::string();
+    return use.albedo_low
+               ? fmt::format(", range {} to {}", number(*use.albedo_low), number(*use.albedo_high))
+               : std::string();
 }
 
 /// Weight and reflectance of each band of an image: their products and the constant add up to the albedo.

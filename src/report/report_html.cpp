@@ -385,7 +385,9 @@ std::string Report::facts() const {
         fact("Time", fmt::format("{} to {}{}, {}, steps of {:g} min",
                                  format_date(run_.times->periods.front().days.front().date),
                                  format_date(run_.times->periods.back().days.back().date),
-                                 run_.times->periods.front().days.front().weight != 1 ? " (one day standing for each month)" : "",
+                                 run_.times->periods.front().days.front().weight != 1
+                                     ? " (one day standing for each month)"
+                                     : "",
                                  run_.times->periods.size() == 1
                                      ? "one period"
                                      : fmt::format("{} periods", run_.times->periods.size()),

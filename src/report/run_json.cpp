@@ -1,7 +1,7 @@
 #include "sunbudget/report/run_json.hpp"
 
-#include <cmath>
 #include <fmt/format.h>
+#include <cmath>
 
 #include <algorithm>
 #include <fstream>
@@ -22,7 +22,10 @@ using Json = nlohmann::ordered_json;
 
 Json grid_json(const Grid& grid) {
     const auto bounds = bounds_of(grid);
-    Json json{{"columns", grid.width}, {"rows", grid.height}, {"affine", grid.affine}, {"crs", crs_name(grid.crs_wkt)}};
+    Json json{{"columns", grid.width},
+              {"rows", grid.height},
+              {"affine", grid.affine},
+              {"crs", crs_name(grid.crs_wkt)}};
     json["bounds"] = {bounds.west, bounds.south, bounds.east, bounds.north};
     json["crs_wkt"] = grid.crs_wkt;
     return json;
@@ -34,8 +37,10 @@ Json sky_json(const Run& run) {
     if (run.sky_raster) json["raster"] = name_of(run.sky_raster->parameter);
     for (std::size_t i = 0; i < sky_parameter_count; ++i)
         if (const auto& months = sky.parameters[i]; !std::isnan(months[0])) {
-            const bool same = std::all_of(months.begin(), months.end(), [&](double month) { return month == months[0]; });
-            json[std::string(name_of(static_cast<SkyParameter>(i)))] = same ? Json(months[0]) : Json(months);
+            const bool same = std::all_of(months.begin(), months.end(),
+                                          [&](double month) { return month == months[0]; });
+            json[std::string(name_of(static_cast<SkyParameter>(i)))] =
+                same ? Json(months[0]) : Json(months);
         }
     return json;
 }
@@ -91,7 +96,8 @@ Json changes_json(const Run& run) {
 Json methods_json(const Run& run) {
     Json methods = Json::array();
     for (const auto* method : run.methods)
-        methods.push_back({{"family", method->family}, {"name", method->name}, {"source", method->source}});
+        methods.push_back(
+            {{"family", method->family}, {"name", method->name}, {"source", method->source}});
     return methods;
 }
 
@@ -110,11 +116,13 @@ Json layers_json(const Run& run, const Execution& execution) {
     Json layers = Json::array();
     for (std::size_t n = 0; n < run.layers.size(); ++n) {
         const auto& file = run.layers[n].file;
-        Json json{{"layer", file.name}, {"file", execution.layers[n].file_name}, {"unit", file.unit}};
+        Json json{
+            {"layer", file.name}, {"file", execution.layers[n].file_name}, {"unit", file.unit}};
         if (file.quantum > 0) json["rounded_to"] = static_cast<double>(file.quantum);
         Json bands = Json::array();
         for (std::size_t band = 0; band < execution.layers[n].bands.size(); ++band)
-            bands.push_back(band_json(file.bands[band].description, execution.layers[n].bands[band]));
+            bands.push_back(
+                band_json(file.bands[band].description, execution.layers[n].bands[band]));
         if (!bands.empty()) json["bands"] = std::move(bands);
         layers.push_back(std::move(json));
     }
@@ -123,7 +131,8 @@ Json layers_json(const Run& run, const Execution& execution) {
 
 Json gaps_json(const MeasuredReport& report) {
     Json gaps = Json::array();
-    for (const auto& gap : report.first_gaps) gaps.push_back({{"from", format_utc(gap.begin)}, {"to", format_utc(gap.end)}});
+    for (const auto& gap : report.first_gaps)
+        gaps.push_back({{"from", format_utc(gap.begin)}, {"to", format_utc(gap.end)}});
     return gaps;
 }
 
@@ -132,20 +141,26 @@ Json real_sky_json(const Run& run) {
     Json json = Json::object();
     if (run.sky.mean_cloud) {
         Json shares = Json::array();
-        for (const auto& share : *run.sky.mean_cloud) shares.push_back({{"beam", share.beam}, {"diffuse", share.diffuse}, {"scattered", share.scattered}});
+        for (const auto& share : *run.sky.mean_cloud)
+            shares.push_back(
+                {{"beam", share.beam}, {"diffuse", share.diffuse}, {"scattered", share.scattered}});
         json["shares_of_the_clear_sky_by_month"] = std::move(shares);
     }
     if (!run.light.measured) return json;
     const auto& report = *run.light.measured;
     json["from"] = report.from;
-    json["days"] = {{"sunlit", report.days}, {"missing", report.days_missing}, {"with_gaps_filled", report.days_with_gaps}};
+    json["days"] = {{"sunlit", report.days},
+                    {"missing", report.days_missing},
+                    {"with_gaps_filled", report.days_with_gaps}};
     json["sunlit_hours_without_value"] = report.gap_h;
     json["first_gaps"] = gaps_json(report);
     json["day_needs_share_of_light"] = day_needs;
     json["month_needs_share_of_days"] = month_needs;
     Json thin = Json::array();
     for (std::size_t band = 0; band < run.light.thin.size(); ++band)
-        if (run.light.thin[band]) thin.push_back(run.times->instant ? format_utc(*run.times->instant) : run.times->periods[band].name);
+        if (run.light.thin[band])
+            thin.push_back(run.times->instant ? format_utc(*run.times->instant)
+                                              : run.times->periods[band].name);
     json["bands_without_data"] = std::move(thin);
     json["intervals_with_sky_light_split_off"] = report.split_intervals;
     if (report.closure.intervals > 0)
@@ -188,7 +203,8 @@ using Reasons = std::vector<std::pair<std::string, std::uint64_t>>;
 Reasons reasons_of(const ReflectanceSurface& surface, const Execution& execution) {
     Reasons reasons;
     const auto count = [&](const std::string& name, std::uint64_t pixels) {
-        const auto known = std::find_if(reasons.begin(), reasons.end(), [&](const auto& r) { return r.first == name; });
+        const auto known = std::find_if(reasons.begin(), reasons.end(),
+                                        [&](const auto& r) { return r.first == name; });
         if (known == reasons.end())
             reasons.emplace_back(name, pixels);
         else
@@ -203,7 +219,8 @@ Reasons reasons_of(const ReflectanceSurface& surface, const Execution& execution
         });
         count(row == rows.end() ? "no_data" : row->name, pixels);
     }
-    std::sort(reasons.begin(), reasons.end(), [](const auto& a, const auto& b) { return a.second > b.second; });
+    std::sort(reasons.begin(), reasons.end(),
+              [](const auto& a, const auto& b) { return a.second > b.second; });
     return reasons;
 }
 
@@ -217,7 +234,8 @@ double share_without_surface(const Execution& execution) {
     double all = 0, without = 0;
     for (const auto& [flag, pixels] : execution.flags) {
         all += static_cast<double>(pixels);
-        if ((flag & quality::source_mask) == quality::no_surface) without += static_cast<double>(pixels);
+        if ((flag & quality::source_mask) == quality::no_surface)
+            without += static_cast<double>(pixels);
     }
     return all > 0 ? without / all : 0;
 }
@@ -235,7 +253,8 @@ std::vector<std::string> closing_warnings(const Run& run, const Execution& execu
     constexpr double nearly_all = 0.95;
     const double share = share_without_surface(execution);
     if (!run.has_surface() || share <= nearly_all) return {};
-    auto text = fmt::format("the result is nearly empty: {:.4g} % of the pixels have no albedo", share * 100);
+    auto text = fmt::format("the result is nearly empty: {:.4g} % of the pixels have no albedo",
+                            share * 100);
     if (const auto* image = std::get_if<ReflectanceSurface>(&run.surface))
         text += " (pixels: " + reasons_text(reasons_of(*image, execution)) + ")";
     return {text};
@@ -252,7 +271,8 @@ std::string run_digest(const Run& run) {
 std::string recorded_run_digest(const std::filesystem::path& folder) {
     std::ifstream file(folder / "run.json");
     const auto json = Json::parse(file, nullptr, false);
-    if (!json.is_object() || !json.contains("run_digest") || !json["run_digest"].is_string()) return {};
+    if (!json.is_object() || !json.contains("run_digest") || !json["run_digest"].is_string())
+        return {};
     return json["run_digest"].get<std::string>();
 }
 
@@ -276,40 +296,53 @@ std::string run_json(const Run& run, const Execution& execution) {
     if (!run.changes.empty()) json["changes"] = changes_json(run);
     json["methods"] = methods_json(run);
     json["layers"] = layers_json(run, execution);
-    if (run.zones) json["zones"] = {{"file", "zones.csv"}, {"shapes", "zones.gpkg"}, {"count", execution.zones}, {"notes", execution.zone_notes}};
+    if (run.zones)
+        json["zones"] = {{"file", "zones.csv"},
+                         {"shapes", "zones.gpkg"},
+                         {"count", execution.zones},
+                         {"notes", execution.zone_notes}};
     json["quality_pixels"] = quality_json(execution);
     json["infinite_numbers_in_inputs"] = execution.infinities;
     json["assumptions"] = run.assumptions;
     json["warnings"] = run.warnings;
-    for (const auto& warning : closing_warnings(run, execution)) json["warnings"].push_back(warning);
+    for (const auto& warning : closing_warnings(run, execution))
+        json["warnings"].push_back(warning);
     return json.dump(2, ' ', false, Json::error_handler_t::replace) + "\n";
 }
 
 std::vector<std::string> summary(const Run& run, const Execution& execution) {
     std::vector<std::string> lines;
     for (std::size_t n = 0; n < run.layers.size(); ++n) {
-        if (run.layers[n].changed && run.layers[n].layer->id != LayerId::net_shortwave) continue;  // there are many
+        if (run.layers[n].changed && run.layers[n].layer->id != LayerId::net_shortwave)
+            continue;  // there are many
         const auto& file = run.layers[n].file;
         const auto unit = file.unit == "1" ? std::string() : " " + file.unit;
         for (std::size_t b = 0; b < execution.layers[n].bands.size(); ++b) {
             const auto& band = execution.layers[n].bands[b];
-            const auto name = file.bands.size() == 1 ? file.name : file.name + " " + file.bands[b].description;
-            const auto missing = static_cast<double>(band.pixels - band.count) / static_cast<double>(band.pixels) * 100;
-            lines.push_back(band.count == 0 ? name + ": no pixel has a value"
-                                            : fmt::format("{}: mean {:.4g}, {:.4g} to {:.4g}{}, {:.2g} % without value", name,
-                                                          band.mean, band.min, band.max, unit, missing));
+            const auto name =
+                file.bands.size() == 1 ? file.name : file.name + " " + file.bands[b].description;
+            const auto missing = static_cast<double>(band.pixels - band.count) /
+                                 static_cast<double>(band.pixels) * 100;
+            lines.push_back(
+                band.count == 0
+                    ? name + ": no pixel has a value"
+                    : fmt::format("{}: mean {:.4g}, {:.4g} to {:.4g}{}, {:.2g} % without value",
+                                  name, band.mean, band.min, band.max, unit, missing));
         }
     }
     if (const auto* image = std::get_if<ReflectanceSurface>(&run.surface))
         if (const auto reasons = reasons_of(*image, execution); !reasons.empty())
-            lines.push_back("pixels without the image's albedo, by reason: " + reasons_text(reasons));
+            lines.push_back("pixels without the image's albedo, by reason: " +
+                            reasons_text(reasons));
     for (const auto& row : quality_rows()) {
-        const bool where_from = row.mask == quality::source_mask && row.value != quality::no_surface;
+        const bool where_from =
+            row.mask == quality::source_mask && row.value != quality::no_surface;
         const auto pixels = pixels_of(row, execution);
         if (!where_from && pixels > 0 && (row.mask != quality::source_mask || run.has_surface()))
             lines.push_back(fmt::format("{} pixels: {}", pixels, row.text));
     }
-    if (run.zones) lines.push_back(fmt::format("zones.csv, zones.gpkg: figures of {} zones", execution.zones));
+    if (run.zones)
+        lines.push_back(fmt::format("zones.csv, zones.gpkg: figures of {} zones", execution.zones));
     for (const auto& note : execution.zone_notes) lines.push_back("zones: " + note);
     return lines;
 }

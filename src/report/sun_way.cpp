@@ -21,7 +21,8 @@ SunPlace place_of(const Run& run, const PixelAccount& account) {
         if (term.name == "height" && !std::isnan(term.value)) height_m = term.value;
     SunPlace place{account.place->latitude_rad, account.place->longitude_rad, height_m, run.sky};
     // The pixel's own is among the terms; the light beside the sun's way is open ground's.
-    if (waits_for_ground(place.sky)) place.sky[SkyParameter::ground_albedo].fill(place.ground_albedo);
+    if (waits_for_ground(place.sky))
+        place.sky[SkyParameter::ground_albedo].fill(place.ground_albedo);
     return place;
 }
 

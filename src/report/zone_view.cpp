@@ -106,8 +106,11 @@ std::string path_of(const Rings& rings, double across, double down) {
 /// What is kept counts before what arrives: light that neighbours gain is no saving of the treated place.
 std::vector<std::string>::const_iterator saving_to_rank_by(const std::vector<std::string>& header) {
     for (const auto* layer : {"net_radiation", "net_shortwave"})
-        if (const auto found = std::ranges::find(header, std::string(layer) + "_saved_sum"); found != header.end()) return found;
-    return std::ranges::find_if(header, [](const std::string& name) { return name.ends_with("_saved_sum"); });
+        if (const auto found = std::ranges::find(header, std::string(layer) + "_saved_sum");
+            found != header.end())
+            return found;
+    return std::ranges::find_if(
+        header, [](const std::string& name) { return name.ends_with("_saved_sum"); });
 }
 
 }  // namespace

@@ -21,11 +21,13 @@ constexpr std::array units{
 };
 
 constexpr double ratio_quantum = 1.0 / 8192;  // 2^-13: 0.00012, far below any albedo's uncertainty
-constexpr double angle_quantum_deg = 1.0 / 64;  // far below what a height model's own error does to a slope
-constexpr double time_quantum_h = 1.0 / 64;     // a minute
+constexpr double angle_quantum_deg =
+    1.0 / 64;  // far below what a height model's own error does to a slope
+constexpr double time_quantum_h = 1.0 / 64;  // a minute
 constexpr double flux_quantum_w_m2 = 1.0 / 16;
-constexpr double temperature_quantum_k = 1.0 / 64;  // a thermal band's own step is 0.003 K, its error 1 K
-constexpr double index_quantum = 1.0 / 16;          // the index is quoted in whole numbers
+constexpr double temperature_quantum_k =
+    1.0 / 64;                               // a thermal band's own step is 0.003 K, its error 1 K
+constexpr double index_quantum = 1.0 / 16;  // the index is quoted in whole numbers
 
 const std::vector<Layer>& table() {
     static const std::vector<Layer> rows{
@@ -42,7 +44,8 @@ const std::vector<Layer>& table() {
          .name = "albedo_uncertainty",
          .quantity = Quantity::ratio,
          .sample = SampleType::float32,
-         .text = "standard uncertainty of the albedo: half the class's range over the root of 3, an image's fit error, or as the plan says",
+         .text = "standard uncertainty of the albedo: half the class's range over the root of 3, "
+                 "an image's fit error, or as the plan says",
          .standard_name = "surface_albedo standard_error",
          .standard_name_sum = {},
          .needs_sun = false,
@@ -99,9 +102,11 @@ const std::vector<Layer>& table() {
          .name = "net_shortwave_uncertainty",
          .quantity = Quantity::radiation,
          .sample = SampleType::float32,
-         .text = "standard uncertainty of net_shortwave: that of the albedo and, the same at all times, that of the light",
+         .text = "standard uncertainty of net_shortwave: that of the albedo and, the same at all "
+                 "times, that of the light",
          .standard_name = "surface_net_downward_shortwave_flux standard_error",
-         .standard_name_sum = "integral_wrt_time_of_surface_net_downward_shortwave_flux standard_error",
+         .standard_name_sum =
+             "integral_wrt_time_of_surface_net_downward_shortwave_flux standard_error",
          .needs_sun = true,
          .needs_albedo = true,
          .needs_albedo_uncertainty = true},
@@ -109,7 +114,8 @@ const std::vector<Layer>& table() {
          .name = "sunlit_hours",
          .quantity = Quantity::hours,
          .sample = SampleType::float32,
-         .text = "hours of the period in which the sun's disc shines on the surface, under a clear sky",
+         .text =
+             "hours of the period in which the sun's disc shines on the surface, under a clear sky",
          .standard_name = {},
          .standard_name_sum = {},
          .needs_sun = true,
@@ -139,7 +145,8 @@ const std::vector<Layer>& table() {
          .name = "aspect",
          .quantity = Quantity::angle,
          .sample = SampleType::float32,
-         .text = "direction the surface faces, downslope, clockwise from true north; none on level ground",
+         .text = "direction the surface faces, downslope, clockwise from true north; none on level "
+                 "ground",
          .standard_name = {},
          .standard_name_sum = {},
          .needs_sun = false,
@@ -184,7 +191,8 @@ const std::vector<Layer>& table() {
          .name = "net_longwave",
          .quantity = Quantity::radiation,
          .sample = SampleType::float32,
-         .text = "heat radiation the surface keeps: what comes down less what goes up, mostly negative",
+         .text =
+             "heat radiation the surface keeps: what comes down less what goes up, mostly negative",
          .standard_name = "surface_net_downward_longwave_flux",
          .standard_name_sum = "integral_wrt_time_of_surface_net_downward_longwave_flux",
          .needs_air = true,
@@ -214,7 +222,8 @@ const std::vector<Layer>& table() {
          .name = "surface_temperature",
          .quantity = Quantity::temperature,
          .sample = SampleType::float32,
-         .text = "temperature of the surface; from a balance it is steady, of dry built and bare ground alone",
+         .text = "temperature of the surface; from a balance it is steady, of dry built and bare "
+                 "ground alone",
          .standard_name = "surface_temperature",
          .standard_name_sum = {},
          .needs_surface_temperature = true},
@@ -222,7 +231,8 @@ const std::vector<Layer>& table() {
          .name = "sri",
          .quantity = Quantity::index,
          .sample = SampleType::float32,
-         .text = "solar reflectance index: how cool a dry built or bare surface stays in the sun, 0 black and 100 white; "
+         .text = "solar reflectance index: how cool a dry built or bare surface stays in the sun, "
+                 "0 black and 100 white; "
                  "none on slopes of 9.5 degrees and more",
          .standard_name = {},
          .standard_name_sum = {},
@@ -294,11 +304,16 @@ std::vector<std::string> layer_names() {
 
 std::string_view unit_of(const Layer& layer, OutputUnit unit) noexcept {
     switch (layer.quantity) {
-        case Quantity::radiation: return name_of(unit);
-        case Quantity::hours: return "h";
-        case Quantity::angle: return "degree";
-        case Quantity::temperature: return "degC";
-        default: return "1";
+        case Quantity::radiation:
+            return name_of(unit);
+        case Quantity::hours:
+            return "h";
+        case Quantity::angle:
+            return "degree";
+        case Quantity::temperature:
+            return "degC";
+        default:
+            return "1";
     }
 }
 

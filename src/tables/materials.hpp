@@ -12,8 +12,12 @@ struct Material {
     const char* source;
 };
 
-inline constexpr auto roof_list = "list of cool roofing materials of the Lawrence Berkeley National Laboratory, as reprinted in LEED-NC 2.2 (from memory)";
-inline constexpr auto oke_middle = "near the middle of the ranges in Oke 1987, Boundary Layer Climates, Tables 1.1 and 8.2 (from memory)";
+inline constexpr auto roof_list =
+    "list of cool roofing materials of the Lawrence Berkeley National Laboratory, as reprinted in "
+    "LEED-NC 2.2 (from memory)";
+inline constexpr auto oke_middle =
+    "near the middle of the ranges in Oke 1987, Boundary Layer Climates, Tables 1.1 and 8.2 (from "
+    "memory)";
 inline constexpr auto standard = "reference surface of ASTM E1980-11";
 
 inline constexpr std::array materials{

@@ -95,7 +95,8 @@ Listing method_listing() {
 std::string quantum_text(const Layer& layer) {
     if (layer.quantity == Quantity::ratio) return "2^-13";
     if (layer.quantity == Quantity::flags) return {};
-    if (layer.quantity != Quantity::radiation) return shortest(quantum_of(layer, OutputUnit::w_m2, 0));
+    if (layer.quantity != Quantity::radiation)
+        return shortest(quantum_of(layer, OutputUnit::w_m2, 0));
     return "1/16 W/m2; of sums the largest power of two not above 1/16 W/m2 times the period";
 }
 
@@ -112,8 +113,9 @@ Listing layer_listing() {
                   {"text"}},
                  {}};
     for (const auto& row : layers()) {
-        const auto unit =
-            row.quantity == Quantity::radiation ? joined(output_unit_names(), " or ") : std::string(unit_of(row, OutputUnit::w_m2));
+        const auto unit = row.quantity == Quantity::radiation
+                              ? joined(output_unit_names(), " or ")
+                              : std::string(unit_of(row, OutputUnit::w_m2));
         list.rows.push_back({row.name, unit, std::string(name_of(row.sample)), quantum_text(row),
                              row.standard_name, row.standard_name_sum, row.text});
     }
@@ -206,7 +208,8 @@ Listing quality_listing() {
 /// Of materials whose albedo somebody wrote down: a given roof ages and may be another.
 Listing sri_listing() {
     Listing list{"sri",
-                 "solar reflectance index of common materials after ASTM E1980: 0 the black, 100 the white reference, in wind below 2, 2 to 6 "
+                 "solar reflectance index of common materials after ASTM E1980: 0 the black, 100 "
+                 "the white reference, in wind below 2, 2 to 6 "
                  "and 6 to 10 m/s",
                  {},
                  {{"material"},

@@ -13,7 +13,8 @@ TEST_CASE("sha256: agrees with the standard's own example", "[base][vector]") {
     CHECK(sha256_of("abc") == "ba7816bf8f01cfea414140de5dae2223b00361a396177a9cb410ff61f20015ad");
 }
 
-TEST_CASE("input_digest: whole file when small, sampled when large, refused when missing", "[base]") {
+TEST_CASE("input_digest: whole file when small, sampled when large, refused when missing",
+          "[base]") {
     test::TemporaryFolder folder;
     const auto small = folder.path() / "small";
     std::ofstream(small) << "abc";

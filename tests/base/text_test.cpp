@@ -37,5 +37,6 @@ TEST_CASE("printable: control characters cannot reach the terminal", "[base]") {
 }
 
 TEST_CASE("shortest: reads back as the same double", "[base][property]") {
-    for (const double value : {0.1, 1.0 / 3.0, 1e300, -2.5, 0.0}) CHECK(parse_number(shortest(value)) == value);
+    for (const double value : {0.1, 1.0 / 3.0, 1e300, -2.5, 0.0})
+        CHECK(parse_number(shortest(value)) == value);
 }

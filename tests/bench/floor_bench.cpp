@@ -49,10 +49,14 @@ std::vector<Plane<float>> overview_tiles(const char* product) {
         auto* level = band->GetOverview(n);
         for (int row = 0; row < level->GetYSize(); row += tile)
             for (int column = 0; column < level->GetXSize(); column += tile) {
-                auto& plane = tiles.emplace_back(tile, tile, std::numeric_limits<float>::quiet_NaN());
-                const int width = std::min(tile, level->GetXSize() - column), height = std::min(tile, level->GetYSize() - row);
-                if (level->RasterIO(GF_Read, column, row, width, height, plane.data(), width, height, GDT_Float32, 4,
-                                    static_cast<GSpacing>(plane.stride() * sizeof(float)), nullptr) != CE_None)
+                auto& plane =
+                    tiles.emplace_back(tile, tile, std::numeric_limits<float>::quiet_NaN());
+                const int width = std::min(tile, level->GetXSize() - column),
+                          height = std::min(tile, level->GetYSize() - row);
+                if (level->RasterIO(GF_Read, column, row, width, height, plane.data(), width,
+                                    height, GDT_Float32, 4,
+                                    static_cast<GSpacing>(plane.stride() * sizeof(float)),
+                                    nullptr) != CE_None)
                     throw Error(Cause::input, "an overview cannot be read", product);
             }
     }

@@ -9,7 +9,8 @@ TEST_CASE("sunbudget: help and version go to stdout, mistakes to stderr with exi
     const auto version = sunbudget::test::sunbudget({"--version"});
     CHECK(version.exit_code == 0);
     CHECK_THAT(version.out, Catch::StartsWith("sunbudget "));
-    for (const auto* command : {"run", "check", "explain", "albedo", "insolation", "net", "sun", "tables"}) {
+    for (const auto* command :
+         {"run", "check", "explain", "albedo", "insolation", "net", "sun", "tables"}) {
         const auto help = sunbudget::test::sunbudget({command, "--help"});
         CAPTURE(command, help.out);
         CHECK(help.exit_code == 0);

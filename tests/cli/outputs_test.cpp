@@ -178,7 +178,8 @@ TEST_CASE("run: a link as the output folder leads where it points", "[cli][edge]
     CHECK(fs::is_symlink(desk.path("out")));
 }
 
-TEST_CASE("run: a report is published with the rest, the same bytes every time, and later too", "[cli]") {
+TEST_CASE("run: a report is published with the rest, the same bytes every time, and later too",
+          "[cli]") {
     const Desk desk;
     REQUIRE(desk.run({"run", "plan.yaml"}).exit_code == 0);
     CHECK(names_in(desk.path("out")) == whole_set);
@@ -191,15 +192,20 @@ TEST_CASE("run: a report is published with the rest, the same bytes every time, 
     with_report.insert(with_report.begin() + 3, "report.html");
     CHECK(names_in(desk.path("out")) == with_report);
     CHECK(content(desk.path("out/albedo.tif")) == albedo);
-    CHECK(shell("cd " + word(desk.path("out")) + " && sha256sum -c --quiet SHA256SUMS").exit_code == 0);
+    CHECK(shell("cd " + word(desk.path("out")) + " && sha256sum -c --quiet SHA256SUMS").exit_code ==
+          0);
     CHECK_THAT(content(desk.path("out/SHA256SUMS")), Contains("  report.html"));
     const auto report = content(desk.path("out/report.html"));
     CHECK_THAT(report, Contains("cover.tif") && Contains("Kasten"));
-    CHECK_THAT(desk.run({"run", "plan.yaml", "--set", "report.html=true"}).err, Contains("complete already"));
+    CHECK_THAT(desk.run({"run", "plan.yaml", "--set", "report.html=true"}).err,
+               Contains("complete already"));
     CHECK_THAT(desk.run({"run", "plan.yaml"}).err, Contains("complete already"));
-    REQUIRE(desk.run({"run", "plan.yaml", "--set", "report.html=true", "--fresh", "--threads", "1"}).exit_code == 0);
+    REQUIRE(desk.run({"run", "plan.yaml", "--set", "report.html=true", "--fresh", "--threads", "1"})
+                .exit_code == 0);
     CHECK(content(desk.path("out/report.html")) == report);
-    REQUIRE(desk.run({"run", "plan.yaml", "--set", "report.html=true", "--set", "outputs.format=geotiff", "--fresh"}).exit_code == 0);
+    REQUIRE(desk.run({"run", "plan.yaml", "--set", "report.html=true", "--set",
+                      "outputs.format=geotiff", "--fresh"})
+                .exit_code == 0);
     CHECK_THAT(content(desk.path("out/report.html")), Contains("<img alt=\"Map of albedo"));
     CHECK(desk.run({"run", "plan.yaml", "--set", "report.html=maybe"}).exit_code == 2);
 }

@@ -33,12 +33,13 @@ void check_folder(const fs::path& folder) {
     CHECK(sums.exit_code == 0);
     check_run_json(folder / "run.json");
     // The public validator's warnings and errors, and GDAL's own complaints, of all files at one start.
-    const auto verdict = shell("cd " + word(folder) +
-                               " && /usr/bin/python3 -c 'import glob\n"
-                               "from osgeo import gdal\n"
-                               "from osgeo_utils.samples.validate_cloud_optimized_geotiff import validate\n"
-                               "for f in sorted(glob.glob(\"*.tif\")): gdal.ErrorReset(); w, e, _ = validate(f); "
-                               "gdal.Info(f); print(f, w, e, gdal.GetLastErrorMsg() or \"silent\")' 2>&1");
+    const auto verdict =
+        shell("cd " + word(folder) +
+              " && /usr/bin/python3 -c 'import glob\n"
+              "from osgeo import gdal\n"
+              "from osgeo_utils.samples.validate_cloud_optimized_geotiff import validate\n"
+              "for f in sorted(glob.glob(\"*.tif\")): gdal.ErrorReset(); w, e, _ = validate(f); "
+              "gdal.Info(f); print(f, w, e, gdal.GetLastErrorMsg() or \"silent\")' 2>&1");
     std::string expected;
     for (const auto& name : names_in(folder))
         if (name.ends_with(".tif")) expected += name + " [] [] silent\n";
@@ -66,8 +67,10 @@ TEST_CASE("pipelines: every plan is checked and runs, and its folder is whole an
         // its own is coarse.
         std::vector<std::string> words{"check", (folder.path() / name).string()};
         const auto text = content(pipelines / name);
-        if (text.find("elevation:") != std::string::npos) words.insert(words.end(), {"--set", "terrain.directions=16"});
-        if (text.find("\ngrid:") == std::string::npos) words.insert(words.end(), {"--set", "grid.bounds=[448900, 5304000, 450100, 5305200]"});
+        if (text.find("elevation:") != std::string::npos)
+            words.insert(words.end(), {"--set", "terrain.directions=16"});
+        if (text.find("\ngrid:") == std::string::npos)
+            words.insert(words.end(), {"--set", "grid.bounds=[448900, 5304000, 450100, 5305200]"});
         const auto checked = sunbudget::test::sunbudget(words);
         CAPTURE(checked.err);
         CHECK(checked.exit_code == 0);

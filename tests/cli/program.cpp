@@ -17,8 +17,12 @@ namespace sunbudget::test {
 
 namespace fs = std::filesystem;
 
-std::string program_path() { return SUNBUDGET_PROGRAM; }
-fs::path build_folder() { return SUNBUDGET_BUILD_DIR; }
+std::string program_path() {
+    return SUNBUDGET_PROGRAM;
+}
+fs::path build_folder() {
+    return SUNBUDGET_BUILD_DIR;
+}
 
 namespace {
 

@@ -85,8 +85,7 @@ TEST_CASE("run: goes on after a hang-up when it was started to ignore it", "[cli
     const Desk desk;
     write_long_plan(desk);
     const auto outcome = shell(
-        "cd " + word(desk.path()) +
-        " && nohup " + program_path() +
+        "cd " + word(desk.path()) + " && nohup " + program_path() +
         " run plan.yaml --set grid.cell=4 >log 2>&1 & p=$!; sleep 0.5; kill -HUP $p; wait $p");
     CHECK(outcome.exit_code == 0);
     CHECK(names_in(desk.path("out")).size() == 6);

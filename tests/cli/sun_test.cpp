@@ -96,10 +96,11 @@ TEST_CASE("sun: day lengths agree with FAO-56, and a year has a row a day", "[cl
 TEST_CASE("sun: polar day has no sunrise but a length of 24 h, polar night no light",
           "[cli][edge]") {
     const auto day = json_of({"--at", "80,20", "--from", "2025-06-21"})[0];
-    CHECK(keys_of(day) == std::vector<std::string>{"date", "sunrise", "transit", "sunset",
-                                                   "sunrise_apparent", "sunset_apparent", "day_length_h", "transit_elevation_deg",
-                                                   "extraterrestrial_mj_m2", "direct_mj_m2",
-                                                   "diffuse_mj_m2", "global_mj_m2", "on_slope_mj_m2"});
+    CHECK(keys_of(day) ==
+          std::vector<std::string>{"date", "sunrise", "transit", "sunset", "sunrise_apparent",
+                                   "sunset_apparent", "day_length_h", "transit_elevation_deg",
+                                   "extraterrestrial_mj_m2", "direct_mj_m2", "diffuse_mj_m2",
+                                   "global_mj_m2", "on_slope_mj_m2"});
     CHECK(day["sunrise"].is_null());
     CHECK(day["sunset"].is_null());
     CHECK(day["day_length_h"] == 24.0);
@@ -208,25 +209,33 @@ TEST_CASE("sun: turbidity outside the usual is used with a warning", "[cli]") {
     CHECK_THAT(outcome.err, Catch::StartsWith("sunbudget: warning: ") && Contains("--turbidity"));
 }
 
-TEST_CASE("sun: every clear-sky model answers with its own numbers and refuses those of others", "[cli]") {
-    const std::vector<std::string> noon{"--at", "40,-105", "--height", "1600", "--time", "2025-06-21T12:00-07:00"};
+TEST_CASE("sun: every clear-sky model answers with its own numbers and refuses those of others",
+          "[cli]") {
+    const std::vector<std::string> noon{"--at", "40,-105", "--height",
+                                        "1600", "--time",  "2025-06-21T12:00-07:00"};
     const auto global = [&](std::vector<std::string> more) {
         auto all = noon;
         all.insert(all.end(), more.begin(), more.end());
         return json_of(all)[0]["global_w_m2"].get<double>();
     };
-    for (const auto* model : {"esra2000", "bird-hulstrom1981", "ineichen-perez2002", "asce2005", "fao56"})
-        CHECK(global({"--model", model}) == Approx(1030).epsilon(0.05));  // as far apart as the models are
+    for (const auto* model :
+         {"esra2000", "bird-hulstrom1981", "ineichen-perez2002", "asce2005", "fao56"})
+        CHECK(global({"--model", model}) ==
+              Approx(1030).epsilon(0.05));  // as far apart as the models are
     // FAO-56 eq. 37 at 1600 m: 0.782 of the light outside the air, on its own solar constant of 1366.67 W m-2.
     const auto row = [&] {
         auto all = noon;
         all.insert(all.end(), {"--model", "fao56"});
         return json_of(all)[0];
     }();
-    const double outside = row["extraterrestrial_w_m2"].get<double>() * std::sin(row["elevation_deg"].get<double>() * M_PI / 180);
-    CHECK(row["global_w_m2"].get<double>() == Approx(0.782 * outside * 1366.6667 / 1361).epsilon(1e-4));
-    CHECK(global({"--model", "asce2005", "--vapour-pressure", "25"}) < global({"--model", "asce2005"}));
-    CHECK(global({"--model", "bird-hulstrom1981", "--albedo", "0.8"}) > global({"--model", "bird-hulstrom1981"}) * 1.03);
+    const double outside = row["extraterrestrial_w_m2"].get<double>() *
+                           std::sin(row["elevation_deg"].get<double>() * M_PI / 180);
+    CHECK(row["global_w_m2"].get<double>() ==
+          Approx(0.782 * outside * 1366.6667 / 1361).epsilon(1e-4));
+    CHECK(global({"--model", "asce2005", "--vapour-pressure", "25"}) <
+          global({"--model", "asce2005"}));
+    CHECK(global({"--model", "bird-hulstrom1981", "--albedo", "0.8"}) >
+          global({"--model", "bird-hulstrom1981"}) * 1.03);
     CHECK(global({"--turbidity", "3,3,3,3,3,6,3,3,3,3,3,3"}) == global({"--turbidity", "6"}));
 
     const auto refused = [&](std::vector<std::string> more) {
@@ -237,15 +246,19 @@ TEST_CASE("sun: every clear-sky model answers with its own numbers and refuses t
         CHECK(outcome.exit_code == 2);
         return outcome.err;
     };
-    CHECK_THAT(refused({"--model", "fao56", "--turbidity", "3"}), Contains("fao56 has no turbidity (--turbidity)"));
+    CHECK_THAT(refused({"--model", "fao56", "--turbidity", "3"}),
+               Contains("fao56 has no turbidity (--turbidity)"));
     CHECK_THAT(refused({"--model", "asce"}), Contains("asce2005"));
     CHECK_THAT(refused({"--turbidity", "3,4"}), Contains("neither one number nor twelve"));
-    CHECK_THAT(refused({"--model", "ineichen-perez2002", "--turbidity", "0.5"}), Contains("1 to 9"));
+    CHECK_THAT(refused({"--model", "ineichen-perez2002", "--turbidity", "0.5"}),
+               Contains("1 to 9"));
     CHECK_THAT(refused({"--slope", "30"}), Contains("--azimuth"));
 }
 
-TEST_CASE("sun: level ground gets the global, a wall that faces the sun gets more, one that turns away only sky and ground",
-          "[cli][property]") {
+TEST_CASE(
+    "sun: level ground gets the global, a wall that faces the sun gets more, one that turns away "
+    "only sky and ground",
+    "[cli][property]") {
     const std::vector<std::string> where{"--at", "52,0", "--time", "2025-12-21T12:00Z"};
     const auto row = [&](std::vector<std::string> more) {
         auto all = where;
@@ -254,20 +267,27 @@ TEST_CASE("sun: level ground gets the global, a wall that faces the sun gets mor
     };
     const auto level = row({});
     CHECK(level["on_slope_w_m2"] == level["global_w_m2"]);
-    CHECK(row({"--slope", "75", "--azimuth", "180"})["on_slope_w_m2"].get<double>() > 2 * level["global_w_m2"].get<double>());
+    CHECK(row({"--slope", "75", "--azimuth", "180"})["on_slope_w_m2"].get<double>() >
+          2 * level["global_w_m2"].get<double>());
     // Liu & Jordan and no ground light: half of the sky is all a north wall has.
-    const auto north = row({"--slope", "90", "--azimuth", "0", "--diffuse", "liu-jordan1963", "--albedo", "0"});
-    CHECK(north["on_slope_w_m2"].get<double>() == Approx(level["diffuse_w_m2"].get<double>() / 2).margin(0.01));
+    const auto north =
+        row({"--slope", "90", "--azimuth", "0", "--diffuse", "liu-jordan1963", "--albedo", "0"});
+    CHECK(north["on_slope_w_m2"].get<double>() ==
+          Approx(level["diffuse_w_m2"].get<double>() / 2).margin(0.01));
     const auto day = json_of({"--at", "52,0", "--from", "2025-12-21"})[0];
     // The sun lower than 5 degrees has its light from around it spread over the whole sky: level ground still adds up.
-    CHECK(day["on_slope_mj_m2"].get<double>() == Approx(day["global_mj_m2"].get<double>()).margin(1e-4));
+    CHECK(day["on_slope_mj_m2"].get<double>() ==
+          Approx(day["global_mj_m2"].get<double>()).margin(1e-4));
     CHECK(day["sunrise_apparent"].get<std::string>() < day["sunrise"].get<std::string>());
     CHECK(day["sunset_apparent"].get<std::string>() > day["sunset"].get<std::string>());
 }
 
-TEST_CASE("sun: a plot has the day's height, its hours and no line wider than a terminal", "[cli]") {
-    const auto plot = sun({"--at", "40,-105", "--from", "2025-06-21", "--zone", "solar-mean", "--slope", "30", "--azimuth", "180", "--plot"});
-    CHECK_THAT(plot, Contains("1200 |") && Contains("12") && Contains("h, solar-mean") && Contains("o all light on the slope"));
+TEST_CASE("sun: a plot has the day's height, its hours and no line wider than a terminal",
+          "[cli]") {
+    const auto plot = sun({"--at", "40,-105", "--from", "2025-06-21", "--zone", "solar-mean",
+                           "--slope", "30", "--azimuth", "180", "--plot"});
+    CHECK_THAT(plot, Contains("1200 |") && Contains("12") && Contains("h, solar-mean") &&
+                         Contains("o all light on the slope"));
     std::istringstream lines(plot);
     std::size_t count = 0;
     for (std::string line; std::getline(lines, line); ++count) {
@@ -278,7 +298,8 @@ TEST_CASE("sun: a plot has the day's height, its hours and no line wider than a 
     // Polar night: nothing but the frame.
     const auto dark = sun({"--at", "80,20", "--time", "2025-12-21T12:00Z", "--plot"});
     CHECK(dark.find('#') == dark.rfind('#'));  // the legend's alone
-    const auto outcome = sunbudget::test::sunbudget({"sun", "--at", "40,-105", "--from", "2025-06-21", "--to", "2025-06-22", "--plot"});
+    const auto outcome = sunbudget::test::sunbudget(
+        {"sun", "--at", "40,-105", "--from", "2025-06-21", "--to", "2025-06-22", "--plot"});
     CHECK(outcome.exit_code == 2);
     CHECK_THAT(outcome.err, Contains("a plot shows one day"));
 }

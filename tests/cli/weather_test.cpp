@@ -22,24 +22,31 @@ std::string plan_for(const std::string& table, const std::string& day) {
            "grid: {crs: EPSG:4326, bounds: [-88.38, 40.04, -88.36, 40.06], cell: 0.01}\n"
            "terrain: {elevation: 213 m}\n"
            "weather:\n"
-           "  table: " + table + "\n"
+           "  table: " +
+           table +
+           "\n"
            "  header: none\n"
            "  skip: 2\n"
-           "  columns: {year: 1, month: 3, day: 4, hour: 5, minute: 6, global: 9, beam: 13, diffuse: 15}\n"
+           "  columns: {year: 1, month: 3, day: 4, hour: 5, minute: 6, global: 9, beam: 13, "
+           "diffuse: 15}\n"
            "  units: {global: W/m2, beam: W/m2, diffuse: W/m2}\n"
            "  flags: {global: 10, beam: 14, diffuse: 16}\n"
            "  missing: -9999.9\n"
            "  stamp: end\n"
            "  station: [40.05, -88.37]\n"
-           "time: {from: " + day + ", to: " + day + ", zone: solar-mean}\n"
+           "time: {from: " +
+           day + ", to: " + day +
+           ", zone: solar-mean}\n"
            "outputs: {layers: [direct, diffuse, insolation], directory: out}\n";
 }
 
 }  // namespace
 
-TEST_CASE("weather: at the station the rasters hold the day that was measured there", "[cli][weather]") {
+TEST_CASE("weather: at the station the rasters hold the day that was measured there",
+          "[cli][weather]") {
     SUNBUDGET_NEEDS_DATA();
-    const auto [name, day] = GENERATE(table<const char*, const char*>({{"bon06197", "2006-07-16"}, {"bon06107", "2006-04-17"}}));
+    const auto [name, day] = GENERATE(
+        table<const char*, const char*>({{"bon06197", "2006-07-16"}, {"bon06107", "2006-04-17"}}));
     const auto file = real_data(fmt::format("ground/surfrad/{}.dat", name))->string();
     const Desk desk;
     write(desk.path("plan.yaml"), plan_for(file, day));
@@ -65,7 +72,8 @@ TEST_CASE("weather: at the station the rasters hold the day that was measured th
     // The file's day is UTC's, the run's the station's own: they differ by a sunny quarter of an hour
     // of one evening against that of another, and rows of three minutes. 1 %.
     CHECK(mean_of(pixels_of(desk.path("out/direct.tif"))) == Approx(direct / count).epsilon(0.01));
-    CHECK(mean_of(pixels_of(desk.path("out/diffuse.tif"))) == Approx(diffuse / count).epsilon(0.01).margin(flux_quantum));
+    CHECK(mean_of(pixels_of(desk.path("out/diffuse.tif"))) ==
+          Approx(diffuse / count).epsilon(0.01).margin(flux_quantum));
     const auto run = nlohmann::json::parse(content(desk.path("out/run.json")));
     CHECK(run["real_sky"]["from"] == "global, beam, diffuse");
     CHECK(run["sky"]["uncertainty"] == 0.05);
@@ -73,7 +81,8 @@ TEST_CASE("weather: at the station the rasters hold the day that was measured th
     CHECK(run["inputs"][0]["role"] == "weather.table");
     CHECK(run["inputs"][0]["digest"].get<std::string>().starts_with("sha256:"));
     // Its own turbidity, a July day's.
-    const auto fit = desk.run({"sun", "--at", "40.05,-88.37", "--height", "213", "--fit", "plan.yaml", "--json"});
+    const auto fit = desk.run(
+        {"sun", "--at", "40.05,-88.37", "--height", "213", "--fit", "plan.yaml", "--json"});
     REQUIRE(fit.exit_code == 0);
     const auto months = nlohmann::json::parse(fit.out);
     REQUIRE(months.size() == 1);
@@ -96,24 +105,28 @@ TEST_CASE("weather: thin days have no data and the run says so", "[cli][weather]
     write(desk.path("plan.yaml"), plan);
     const auto outcome = desk.run({"run", "plan.yaml"});
     REQUIRE(outcome.exit_code == 0);
-    CHECK_THAT(outcome.err, Contains("too few days for 2025-06-01") && Contains("insolation 2025-06-01: no pixel has a value"));
+    CHECK_THAT(outcome.err, Contains("too few days for 2025-06-01") &&
+                                Contains("insolation 2025-06-01: no pixel has a value"));
     const auto pixels = pixels_of(desk.path("out/insolation.tif"));
     REQUIRE(pixels.size() == 8);
     CHECK(std::isnan(pixels[0]));
     CHECK(pixels[4] > 100);
     const auto stopped = desk.run({"check", "plan.yaml", "--set", "weather.gaps=stop"});
     CHECK(stopped.exit_code == 3);
-    CHECK_THAT(stopped.err, Contains("no light was measured from 2025-06-01") && Contains("plan.yaml:3: weather.table"));
+    CHECK_THAT(stopped.err, Contains("no light was measured from 2025-06-01") &&
+                                Contains("plan.yaml:3: weather.table"));
     const auto both = desk.run({"check", "plan.yaml", "--set", "sky.cloud=0.3"});
     CHECK(both.exit_code == 2);
     CHECK_THAT(both.err, Contains("has the light of the run already"));
-    write(desk.path("station.csv"), "time,relative_humidity [1]\n2025-06-02T10:00,1.4\n2025-06-02T11:00,0.4\n");
+    write(desk.path("station.csv"),
+          "time,relative_humidity [1]\n2025-06-02T10:00,1.4\n2025-06-02T11:00,0.4\n");
     const auto nonsense = desk.run({"check", "plan.yaml"});
     CHECK(nonsense.exit_code == 3);
     CHECK_THAT(nonsense.err, Contains("station.csv:2: relative_humidity") && Contains("1.4"));
 }
 
-TEST_CASE("weather: clouds and sunshine of a plan dim the sky as their rules say", "[cli][weather]") {
+TEST_CASE("weather: clouds and sunshine of a plan dim the sky as their rules say",
+          "[cli][weather]") {
     const Desk desk;
     write(desk.path("plan.yaml"),
           "sunbudget: 1\n"
@@ -130,16 +143,21 @@ TEST_CASE("weather: clouds and sunshine of a plan dim the sky as their rules say
     };
     const double clear = mean({});
     CHECK(mean({"sky.cloud=0.4"}) == Approx(clear * 0.7).margin(flux_quantum));
-    CHECK(mean({"sky.cloud=0.4", "sky.overcast=0.4"}) == Approx(clear * (1 - 0.6 * 0.4)).margin(flux_quantum));
+    CHECK(mean({"sky.cloud=0.4", "sky.overcast=0.4"}) ==
+          Approx(clear * (1 - 0.6 * 0.4)).margin(flux_quantum));
     // June at 49.6 N: 41.7 MJ/m2 a day outside the air (FAO-56 Table 2.6 has 41.7 at 50 N), 8 of 16.2 hours.
     const double sunny = mean({"sky.sunshine=[2, 3, 4, 5, 6, 8, 8, 7, 5, 4, 2, 2]"});
     CHECK(sunny == Approx((0.25 + 0.5 * 8 / 16.2) * 41.7e6 / 86400).epsilon(0.01));
-    CHECK(desk.run({"check", "plan.yaml", "--set", "sky.sunshine=[2, 3, 4, 5, 6, 20, 8, 7, 5, 4, 2, 2]"}).exit_code == 2);
+    CHECK(desk.run({"check", "plan.yaml", "--set",
+                    "sky.sunshine=[2, 3, 4, 5, 6, 20, 8, 7, 5, 4, 2, 2]"})
+              .exit_code == 2);
 }
 
-TEST_CASE("weather: an index raster dims pixel by pixel; what is no index has no light", "[cli][weather]") {
+TEST_CASE("weather: an index raster dims pixel by pixel; what is no index has no light",
+          "[cli][weather]") {
     const Desk desk;
-    make_cover(desk.path("index.tif"), 2, 2, [](int column, int) { return column == 0 ? 1.0 : 9.0; });
+    make_cover(desk.path("index.tif"), 2, 2,
+               [](int column, int) { return column == 0 ? 1.0 : 9.0; });
     write(desk.path("plan.yaml"),
           "sunbudget: 1\n"
           "grid: {like: index.tif}\n"
@@ -160,7 +178,8 @@ TEST_CASE("weather: an index raster dims pixel by pixel; what is no index has no
     const auto covered = pixels({"--set", "sky.cloud=index.tif", "--set", "sky.overcast=0.4"});
     CHECK(covered[0] == Approx(clear[0] * 0.4).margin(flux_quantum));
     CHECK(std::isnan(covered[1]));
-    const auto wrong = desk.run({"check", "plan.yaml", "--set", "sky.index=[index.tif, index.tif, index.tif]"});
+    const auto wrong =
+        desk.run({"check", "plan.yaml", "--set", "sky.index=[index.tif, index.tif, index.tif]"});
     CHECK(wrong.exit_code == 2);
     CHECK_THAT(wrong.err, Contains("3 rasters for 2 periods"));
 }

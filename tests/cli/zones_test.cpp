@@ -11,17 +11,30 @@ namespace {
 /// Two parcels and a sliver on the desk's cover, in longitude and latitude.
 void make_parcels(const Desk& desk) {
     const auto in_utm = [](const std::string& ring, const std::string& name) {
-        return R"({"type":"Feature","properties":{"name":")" + name + R"("},"geometry":{"type":"Polygon","coordinates":[[)" + ring + "]]}}";
+        return R"({"type":"Feature","properties":{"name":")" + name +
+               R"("},"geometry":{"type":"Polygon","coordinates":[[)" + ring + "]]}}";
     };
-    write(desk.path("utm.geojson"),
-          R"({"type":"FeatureCollection","crs":{"type":"name","properties":{"name":"urn:ogc:def:crs:EPSG::32633"}},"features":[)" +
-              in_utm("[500100,5499900],[500100,5499300],[500900,5499300],[500900,5499900],[500100,5499900]", "mill, old") + "," +
-              in_utm("[501000,5499800],[501400,5498700],[502000,5499500],[501000,5499800]", "school") + "," +
-              in_utm("[502000.2,5499400],[502000.2,5499300],[502000.7,5499300],[502000.7,5499400],[502000.2,5499400]", "sliver") + "]}");
-    REQUIRE(shell("cd " + word(desk.path()) + " && ogr2ogr -t_srs EPSG:4326 -nln parcels parcels.gpkg utm.geojson").exit_code == 0);
+    write(
+        desk.path("utm.geojson"),
+        R"({"type":"FeatureCollection","crs":{"type":"name","properties":{"name":"urn:ogc:def:crs:EPSG::32633"}},"features":[)" +
+            in_utm("[500100,5499900],[500100,5499300],[500900,5499300],[500900,5499900],[500100,"
+                   "5499900]",
+                   "mill, old") +
+            "," +
+            in_utm("[501000,5499800],[501400,5498700],[502000,5499500],[501000,5499800]",
+                   "school") +
+            "," +
+            in_utm("[502000.2,5499400],[502000.2,5499300],[502000.7,5499300],[502000.7,5499400],["
+                   "502000.2,5499400]",
+                   "sliver") +
+            "]}");
+    REQUIRE(shell("cd " + word(desk.path()) +
+                  " && ogr2ogr -t_srs EPSG:4326 -nln parcels parcels.gpkg utm.geojson")
+                .exit_code == 0);
 }
 
-const std::string zones_set = "zones={file: parcels.gpkg, id: name, layers: [albedo, net_shortwave], above: 500}";
+const std::string zones_set =
+    "zones={file: parcels.gpkg, id: name, layers: [albedo, net_shortwave], above: 500}";
 
 }  // namespace
 
@@ -32,26 +45,36 @@ TEST_CASE("zones: a run and the command on its folder give the same bytes", "[cl
     CAPTURE(ran.err);
     REQUIRE(ran.exit_code == 0);
     CHECK_THAT(ran.err, Contains("figures of 3 zones"));
-    CHECK(names_in(desk.path("out")) == std::vector<std::string>{"SHA256SUMS", "albedo.tif", "net_shortwave.tif", "run.json", "zones.csv", "zones.gpkg"});
-    CHECK(shell("cd " + word(desk.path("out")) + " && sha256sum -c --quiet SHA256SUMS").exit_code == 0);
-    CHECK_THAT(content(desk.path("out/run.json")), Contains("\"zones.file\"") && Contains("\"count\": 3"));
+    CHECK(names_in(desk.path("out")) == std::vector<std::string>{"SHA256SUMS", "albedo.tif",
+                                                                 "net_shortwave.tif", "run.json",
+                                                                 "zones.csv", "zones.gpkg"});
+    CHECK(shell("cd " + word(desk.path("out")) + " && sha256sum -c --quiet SHA256SUMS").exit_code ==
+          0);
+    CHECK_THAT(content(desk.path("out/run.json")),
+               Contains("\"zones.file\"") && Contains("\"count\": 3"));
     const auto table = content(desk.path("out/zones.csv"));
-    CHECK_THAT(table, Contains("\"mill, old\",") && Contains("net_shortwave_above_share") && Contains("class_50_share"));
+    CHECK_THAT(table, Contains("\"mill, old\",") && Contains("net_shortwave_above_share") &&
+                          Contains("class_50_share"));
 
-    const auto again = desk.run({"zones", "out", "--polygons", "parcels.gpkg", "--id", "name", "--layers", "albedo,net_shortwave", "--above", "500",
-                                 "--cover", "cover.tif", "--classes", "worldcover", "-o", "again.csv", "--gpkg", "again.gpkg"});
+    const auto again =
+        desk.run({"zones", "out", "--polygons", "parcels.gpkg", "--id", "name", "--layers",
+                  "albedo,net_shortwave", "--above", "500", "--cover", "cover.tif", "--classes",
+                  "worldcover", "-o", "again.csv", "--gpkg", "again.gpkg"});
     CAPTURE(again.err);
     REQUIRE(again.exit_code == 0);
     CHECK(content(desk.path("again.csv")) == table);
     CHECK(content(desk.path("again.gpkg")) == content(desk.path("out/zones.gpkg")));
 
     // Once more with one thread: the same bytes; and a complete folder stays as it is.
-    CHECK(desk.run({"run", "plan.yaml", "--set", zones_set, "--threads", "1", "--out", "single"}).exit_code == 0);
+    CHECK(desk.run({"run", "plan.yaml", "--set", zones_set, "--threads", "1", "--out", "single"})
+              .exit_code == 0);
     CHECK(content(desk.path("single/zones.csv")) == table);
-    CHECK_THAT(desk.run({"run", "plan.yaml", "--set", zones_set}).err, Contains("complete already"));
+    CHECK_THAT(desk.run({"run", "plan.yaml", "--set", zones_set}).err,
+               Contains("complete already"));
 }
 
-TEST_CASE("zones: mean and area of a parcel as GDAL's own pixels give them", "[cli][differential]") {
+TEST_CASE("zones: mean and area of a parcel as GDAL's own pixels give them",
+          "[cli][differential]") {
     const Desk desk;
     make_parcels(desk);
     REQUIRE(desk.run({"run", "plan.yaml", "--set", zones_set}).exit_code == 0);
@@ -81,14 +104,17 @@ TEST_CASE("zones: mean and area of a parcel as GDAL's own pixels give them", "[c
 TEST_CASE("zones: mistakes are said with what to do", "[cli][edge]") {
     const Desk desk;
     make_parcels(desk);
-    const auto missing = desk.run({"run", "plan.yaml", "--set", "zones={file: parcels.gpkg, id: nmae}"});
+    const auto missing =
+        desk.run({"run", "plan.yaml", "--set", "zones={file: parcels.gpkg, id: nmae}"});
     CHECK(missing.exit_code == 3);
     CHECK_THAT(missing.err, Contains("no field \"nmae\"") && Contains("did you mean \"name\"?"));
-    const auto not_written = desk.run({"check", "plan.yaml", "--set", "zones={file: parcels.gpkg, layers: [insolation]}"});
+    const auto not_written = desk.run(
+        {"check", "plan.yaml", "--set", "zones={file: parcels.gpkg, layers: [insolation]}"});
     CHECK(not_written.exit_code == 2);
     CHECK_THAT(not_written.err, Contains("the run does not write insolation"));
     const auto no_run = desk.run({"zones", ".", "--polygons", "parcels.gpkg", "-o", "x.csv"});
     CHECK(no_run.exit_code == 3);
     CHECK_THAT(no_run.err, Contains("no complete run"));
-    CHECK(names_in(desk.path()) == std::vector<std::string>{"cover.tif", "parcels.gpkg", "plan.yaml", "utm.geojson"});
+    CHECK(names_in(desk.path()) ==
+          std::vector<std::string>{"cover.tif", "parcels.gpkg", "plan.yaml", "utm.geojson"});
 }

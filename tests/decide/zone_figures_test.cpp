@@ -7,10 +7,13 @@
 
 namespace sunbudget::test {
 
-TEST_CASE("zone figures: mean, spread and percentiles of weighted values as sums by hand give them", "[decide][property]") {
+TEST_CASE("zone figures: mean, spread and percentiles of weighted values as sums by hand give them",
+          "[decide][property]") {
     // Values 1, 2, 3, 10 with weights 4, 3, 2, 1: mean 2.6; variance 0.4*2.56 + 0.3*0.36 + 0.2*0.16 + 0.1*54.76.
     ZoneTally tally;
-    for (const auto& [value, weight] : {std::pair{3.0F, 2.0}, {1.0F, 4.0}, {10.0F, 1.0}, {2.0F, 3.0}}) tally.add(value, weight);
+    for (const auto& [value, weight] :
+         {std::pair{3.0F, 2.0}, {1.0F, 4.0}, {10.0F, 1.0}, {2.0F, 3.0}})
+        tally.add(value, weight);
     tally.settle();
     const auto found = tally.figures(2.5);
     CHECK(found.weight == Approx(10));
@@ -50,10 +53,12 @@ TEST_CASE("zone figures: pieces merged give what one piece gives", "[decide][pro
     CHECK(a.p90 == b.p90);
 }
 
-TEST_CASE("zone figures: more values than can be kept cost percentiles some bits, and nothing else", "[decide][edge]") {
+TEST_CASE("zone figures: more values than can be kept cost percentiles some bits, and nothing else",
+          "[decide][edge]") {
     ZoneTally tally;
     constexpr int count = 1 << 19;
-    for (int i = 0; i < count; ++i) tally.add(1.0F + static_cast<float>(i) / static_cast<float>(count), 1);
+    for (int i = 0; i < count; ++i)
+        tally.add(1.0F + static_cast<float>(i) / static_cast<float>(count), 1);
     tally.settle();
     const auto found = tally.figures({});
     CHECK(found.mean == Approx(1.5).epsilon(1e-5));

@@ -1,10 +1,10 @@
 #include "sunbudget/engine/output_set.hpp"
 
+#include <sys/wait.h>
+#include <unistd.h>
 #include <catch2/catch.hpp>
 #include <fstream>
 #include <iterator>
-#include <sys/wait.h>
-#include <unistd.h>
 
 #include "sunbudget/base/digest.hpp"
 #include "sunbudget/base/error.hpp"
@@ -21,10 +21,12 @@ std::string content(const fs::path& file) {
 }
 
 std::size_t entries(const fs::path& folder) {
-    return static_cast<std::size_t>(std::distance(fs::directory_iterator(folder), fs::directory_iterator()));
+    return static_cast<std::size_t>(
+        std::distance(fs::directory_iterator(folder), fs::directory_iterator()));
 }
 
-void make_set(const fs::path& folder, const std::vector<std::string>& names, const std::string& text) {
+void make_set(const fs::path& folder, const std::vector<std::string>& names,
+              const std::string& text) {
     OutputSet set(folder, OutputSet::Mark::checksums);
     for (const auto& name : names) write_text_file(set.staged(name), text);
     set.publish(names);
@@ -64,7 +66,8 @@ TEST_CASE("OutputSet: an older set is replaced as a whole, sidecars too", "[engi
     CHECK(fs::exists(folder.path() / "mine.txt"));
 }
 
-TEST_CASE("OutputSet: a link at a final name is replaced, its target is not touched", "[engine][edge]") {
+TEST_CASE("OutputSet: a link at a final name is replaced, its target is not touched",
+          "[engine][edge]") {
     test::TemporaryFolder folder;
     std::ofstream(folder.path() / "victim") << "precious";
     fs::create_directory(folder.path() / "out");
@@ -74,7 +77,8 @@ TEST_CASE("OutputSet: a link at a final name is replaced, its target is not touc
     CHECK_FALSE(fs::is_symlink(folder.path() / "out/a.tif"));
 }
 
-TEST_CASE("OutputSet: a second run in the folder is refused and told who is there", "[engine][edge]") {
+TEST_CASE("OutputSet: a second run in the folder is refused and told who is there",
+          "[engine][edge]") {
     test::TemporaryFolder folder;
     OutputSet first(folder.path(), OutputSet::Mark::checksums);
     try {

@@ -113,8 +113,8 @@ std::vector<Pixel> random_pixels(const RealRaster& ground, const Places& places,
 
 Computed run_on(const TemporaryFolder& folder, const std::filesystem::path& raster, int band,
                 const std::string& rest) {
-    return computed(folder.path(),
-                    fmt::format("terrain: {{elevation: '{}:{}'}}\n{}", raster.string(), band, rest));
+    return computed(folder.path(), fmt::format("terrain: {{elevation: '{}:{}'}}\n{}",
+                                               raster.string(), band, rest));
 }
 
 }  // namespace
@@ -200,8 +200,7 @@ TEST_CASE("terrain: slope and aspect meet those of gdaldem on a real raster",
         const auto file = *real_data(name);
         const auto ground = read_raster(file, band);
         const Places places(ground.frame);
-        const auto found = run_on(folder, file, band,
-                                  "outputs: {layers: [slope, aspect]}\n");
+        const auto found = run_on(folder, file, band, "outputs: {layers: [slope, aspect]}\n");
         const auto by_gdal = [&](const char* kind) {
             char b[] = "-b";
             std::string number = std::to_string(band);

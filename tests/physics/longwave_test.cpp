@@ -178,7 +178,8 @@ TEST_CASE("saturation_vapour_pressure: reproduces FAO-56 Table 2.3", "[physics][
               Approx(table.number(i, "es_kpa")).margin(6e-4).epsilon(0));
 }
 
-TEST_CASE("saturation_vapour_pressure: a row agrees with single values", "[physics][differential]") {
+TEST_CASE("saturation_vapour_pressure: a row agrees with single values",
+          "[physics][differential]") {
     // The exponent reaches -40 and has 24 bits; exp makes a relative error of that absolute one.
     Row t{nodata}, out(132);
     for (float k = 200; k <= 330; ++k) t.push_back(k);

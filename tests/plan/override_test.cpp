@@ -39,7 +39,8 @@ TEST_CASE("a value on the command line stands for itself unless it is a list, a 
 
 TEST_CASE("relative paths of overrides start from the plan's folder too", "[plan][vector]") {
     const auto plan = plan_of(small_plan, {"terrain.elevation=in/dem.tif:2"});
-    CHECK(std::get<std::vector<PlanRaster>>(**plan.terrain.elevation).front().path.file == "/plans/in/dem.tif");
+    CHECK(std::get<std::vector<PlanRaster>>(**plan.terrain.elevation).front().path.file ==
+          "/plans/in/dem.tif");
 }
 
 TEST_CASE("a wrong override is told with its name", "[plan][edge]") {

@@ -36,7 +36,9 @@ double sampled(const Rings& rings, int column, int row, int n) {
             for (const auto& ring : rings)
                 for (std::size_t j = 0; j < ring.size(); ++j) {
                     const auto &a = ring[j], &b = ring[(j + 1) % ring.size()];
-                    if ((a.row > y) != (b.row > y) && x < a.column + (y - a.row) / (b.row - a.row) * (b.column - a.column)) in = !in;
+                    if ((a.row > y) != (b.row > y) &&
+                        x < a.column + (y - a.row) / (b.row - a.row) * (b.column - a.column))
+                        in = !in;
                 }
             inside += in;
         }
@@ -45,7 +47,8 @@ double sampled(const Rings& rings, int column, int row, int n) {
 
 }  // namespace
 
-TEST_CASE("coverage: a triangle's pixels hold the shares that geometry gives", "[raster][property]") {
+TEST_CASE("coverage: a triangle's pixels hold the shares that geometry gives",
+          "[raster][property]") {
     // Below the diagonal from (0, 0) to (4, 4): half of each pixel on it, all of those below it.
     const Rings triangle{{{0, 0}, {0, 4}, {4, 4}}};
     CHECK(signed_area(triangle[0]) == 8);
@@ -70,7 +73,8 @@ TEST_CASE("coverage: shares add up to the polygon's area, holes left out", "[ras
     CHECK(sum_of(shares) == Approx(area).epsilon(1e-12));
 }
 
-TEST_CASE("coverage: exact shares agree with many samples of each pixel", "[raster][differential]") {
+TEST_CASE("coverage: exact shares agree with many samples of each pixel",
+          "[raster][differential]") {
     std::mt19937 random(7);
     std::uniform_real_distribution<double> place(-3, 15);
     constexpr int samples = 200;
@@ -78,7 +82,8 @@ TEST_CASE("coverage: exact shares agree with many samples of each pixel", "[rast
         // Corners around a middle never cross each other.
         Ring ring;
         for (int i = 0; i < 9; ++i) {
-            const double turn = -2 * std::numbers::pi * i / 9, radius = 1 + std::abs(place(random)) / 2;
+            const double turn = -2 * std::numbers::pi * i / 9,
+                         radius = 1 + std::abs(place(random)) / 2;
             ring.push_back({6 + radius * std::cos(turn), 6 + radius * std::sin(turn)});
         }
         const Rings rings{ring};
@@ -88,7 +93,8 @@ TEST_CASE("coverage: exact shares agree with many samples of each pixel", "[rast
             for (int c = 0; c < 12; ++c) {
                 CAPTURE(shape, c, r);
                 // An edge makes each of `samples` rows of points err by at most one point; a pixel holds few edges.
-                CHECK(shares.at(c, r) == Approx(sampled(rings, c, r, samples)).margin(3.0 / samples));
+                CHECK(shares.at(c, r) ==
+                      Approx(sampled(rings, c, r, samples)).margin(3.0 / samples));
             }
     }
 }
@@ -97,18 +103,22 @@ TEST_CASE("coverage: windows give the shares of the whole", "[raster][differenti
     const Rings rings{circle(20, 20, 17.3, 97)};
     Plane<double> whole, part;
     cover(rings, {0, 0, 40, 40}, whole);
-    for (const auto& window : {Window{5, 3, 9, 30}, Window{31, 31, 9, 9}, Window{18, 0, 1, 40}, Window{-4, 12, 20, 5}}) {
+    for (const auto& window :
+         {Window{5, 3, 9, 30}, Window{31, 31, 9, 9}, Window{18, 0, 1, 40}, Window{-4, 12, 20, 5}}) {
         cover(rings, window, part);
         for (int r = 0; r < window.height; ++r)
             for (int c = 0; c < window.width; ++c) {
                 const long column = window.column + c, row = window.row + r;
-                const double expected = column < 0 || row < 0 ? 0 : whole.at(static_cast<int>(column), static_cast<int>(row));
+                const double expected = column < 0 || row < 0 ? 0
+                                                              : whole.at(static_cast<int>(column),
+                                                                         static_cast<int>(row));
                 CHECK(part.at(c, r) == Approx(expected).margin(1e-13));
             }
     }
 }
 
-TEST_CASE("coverage: neighbours that share an edge share its pixels without gap or overlap", "[raster][property]") {
+TEST_CASE("coverage: neighbours that share an edge share its pixels without gap or overlap",
+          "[raster][property]") {
     const PixelPlace a{0.1, 0.3}, b{9.7, 8.9};
     const Rings left{{a, {0.1, 8.9}, b}}, right{{a, b, {9.7, 0.3}}};
     REQUIRE(signed_area(left[0]) > 0);
@@ -119,7 +129,8 @@ TEST_CASE("coverage: neighbours that share an edge share its pixels without gap 
     cover(right, window, other);
     cover({{a, {0.1, 8.9}, b, {9.7, 0.3}}}, window, both);
     for (int r = 0; r < 10; ++r)
-        for (int c = 0; c < 10; ++c) CHECK(one.at(c, r) + other.at(c, r) == Approx(both.at(c, r)).margin(1e-14));
+        for (int c = 0; c < 10; ++c)
+            CHECK(one.at(c, r) + other.at(c, r) == Approx(both.at(c, r)).margin(1e-14));
 }
 
 TEST_CASE("coverage: slivers and points weigh what they are", "[raster][edge]") {

@@ -26,9 +26,11 @@ TEST_CASE("inspect: bands keep their names in a file with overviews", "[raster][
     const TemporaryFolder folder;
     gdal_setup(std::uint64_t{64} << 20);
     const auto file = folder.path() / "named.tif";
-    const auto script = "from osgeo import gdal; d = gdal.GetDriverByName('GTiff').Create('" + file.string() +
-                        "', 600, 600, 2); d.SetGeoTransform((0, 10, 0, 6000, 0, -10)); d.SetProjection('EPSG:32633'); "
-                        "d.GetRasterBand(2).SetDescription('July'); d.BuildOverviews('NEAREST', [2])";
+    const auto script =
+        "from osgeo import gdal; d = gdal.GetDriverByName('GTiff').Create('" + file.string() +
+        "', 600, 600, 2); d.SetGeoTransform((0, 10, 0, 6000, 0, -10)); "
+        "d.SetProjection('EPSG:32633'); "
+        "d.GetRasterBand(2).SetDescription('July'); d.BuildOverviews('NEAREST', [2])";
     REQUIRE(std::system(("/usr/bin/python3 -c \"" + script + "\"").c_str()) == 0);
     const auto info = inspect(raster_name(file.string() + ":July"));
     CHECK(info.band == 2);

@@ -6,11 +6,11 @@
 #include <fstream>
 
 #include "input_support.hpp"
-#include "sunbudget/raster/grid_build.hpp"
-#include "sunbudget/raster/locator.hpp"
 #include "sunbudget/base/digest.hpp"
 #include "sunbudget/base/error.hpp"
 #include "sunbudget/raster/gdal_setup.hpp"
+#include "sunbudget/raster/grid_build.hpp"
+#include "sunbudget/raster/locator.hpp"
 #include "support/vectors.hpp"
 
 namespace sunbudget::test {
@@ -38,20 +38,29 @@ std::string geojson(const std::string& features) {
 std::string feature(const std::string& geometry, const std::string& properties = "{}") {
     return R"({"type":"Feature","properties":)" + properties + R"(,"geometry":)" + geometry + "}";
 }
-std::string polygon(const std::string& rings) { return R"({"type":"Polygon","coordinates":)" + rings + "}"; }
+std::string polygon(const std::string& rings) {
+    return R"({"type":"Polygon","coordinates":)" + rings + "}";
+}
 
 /// 100 x 100 cells of 10 m; the upper left corner at (500000, 5000000).
 const Grid grid = square_grid(100, 100, 500000, 5000000, 10);
 
-const std::string square = polygon("[[[500100,4999900],[500100,4999800],[500300,4999800],[500300,4999900],[500100,4999900]]]");
+const std::string square = polygon(
+    "[[[500100,4999900],[500100,4999800],[500300,4999800],[500300,4999900],[500100,4999900]]]");
 
 }  // namespace
 
-TEST_CASE("polygons: rings come in pixels, holes against the outer ring, whatever way they were drawn", "[raster][property]") {
+TEST_CASE(
+    "polygons: rings come in pixels, holes against the outer ring, whatever way they were drawn",
+    "[raster][property]") {
     const Folder here;
-    const auto hole = "[[500150,4999880],[500200,4999880],[500200,4999850],[500150,4999850],[500150,4999880]]";
-    const auto outer = "[[500100,4999900],[500300,4999900],[500300,4999800],[500100,4999800],[500100,4999900]]";
-    const auto file = here.write("a.geojson", geojson(feature(polygon("[" + std::string(outer) + "," + hole + "]"), R"({"name":"Mill","share":0.5})")));
+    const auto hole =
+        "[[500150,4999880],[500200,4999880],[500200,4999850],[500150,4999850],[500150,4999880]]";
+    const auto outer =
+        "[[500100,4999900],[500300,4999900],[500300,4999800],[500100,4999800],[500100,4999900]]";
+    const auto file = here.write(
+        "a.geojson", geojson(feature(polygon("[" + std::string(outer) + "," + hole + "]"),
+                                     R"({"name":"Mill","share":0.5})")));
     const auto found = read_polygons({file, {}, {}}, grid, {"name", {"share"}});
     REQUIRE(found.all.size() == 1);
     const auto& one = found.all[0];
@@ -66,12 +75,16 @@ TEST_CASE("polygons: rings come in pixels, holes against the outer ring, whateve
     CHECK(found.notes.empty());
 }
 
-TEST_CASE("polygons: invalid ones are repaired and named, those without an area left out", "[raster][edge]") {
+TEST_CASE("polygons: invalid ones are repaired and named, those without an area left out",
+          "[raster][edge]") {
     const Folder here;
     // A bow tie, a line folded onto itself, a point.
-    const auto tie = polygon("[[[500100,4999900],[500200,4999800],[500200,4999900],[500100,4999800],[500100,4999900]]]");
-    const auto flat = polygon("[[[500100,4999900],[500200,4999900],[500100,4999900],[500100,4999900]]]");
-    const auto file = here.write("a.geojson", geojson(feature(tie, R"({"id_":"tie"})") + "," + feature(flat, R"({"id_":"flat"})") + "," +
+    const auto tie = polygon(
+        "[[[500100,4999900],[500200,4999800],[500200,4999900],[500100,4999800],[500100,4999900]]]");
+    const auto flat =
+        polygon("[[[500100,4999900],[500200,4999900],[500100,4999900],[500100,4999900]]]");
+    const auto file = here.write("a.geojson", geojson(feature(tie, R"({"id_":"tie"})") + "," +
+                                                      feature(flat, R"({"id_":"flat"})") + "," +
                                                       feature(square, R"({"id_":"good"})")));
     const auto found = read_polygons({file, {}, {}}, grid, {"id_", {}});
     REQUIRE(found.all.size() == 2);
@@ -83,12 +96,14 @@ TEST_CASE("polygons: invalid ones are repaired and named, those without an area 
     CHECK_THAT(found.notes[1], Contains("without an area") && Contains("flat"));
 }
 
-TEST_CASE("polygons: edges straight in their own CRS are bent in the grid's", "[raster][property]") {
+TEST_CASE("polygons: edges straight in their own CRS are bent in the grid's",
+          "[raster][property]") {
     const Folder here;
     // 20 degrees of a parallel: in the polar grid it is an arc, 3 degrees of sagitta from its chord.
     const Grid polar{1000, 1000, {-3e6, 6000, 0, 3e6, 0, -6000}, crs_wkt_of("EPSG:3031")};
     const auto band = feature(polygon("[[[10,-80],[30,-80],[30,-75],[10,-75],[10,-80]]]"));
-    const auto file = here.write("a.geojson", R"({"type":"FeatureCollection","features":[)" + band + "]}");
+    const auto file =
+        here.write("a.geojson", R"({"type":"FeatureCollection","features":[)" + band + "]}");
     const auto found = read_polygons({file, {}, {}}, polar, {});
     REQUIRE(found.all.size() == 1);
     // A sector of a ring: area in the polar plane = angle / 2 * (r1^2 - r2^2), r from PROJ at its two edges.
@@ -96,15 +111,18 @@ TEST_CASE("polygons: edges straight in their own CRS are bent in the grid's", "[
         const auto place = place_in(polar, 0, latitude, crs_wkt_of("OGC:CRS84"));
         return std::hypot(place->column - 500, place->row - 500);
     };
-    const double expected = 20 * 3.14159265358979 / 180 / 2 * (std::pow(radius_px(-75), 2) - std::pow(radius_px(-80), 2));
+    const double expected = 20 * 3.14159265358979 / 180 / 2 *
+                            (std::pow(radius_px(-75), 2) - std::pow(radius_px(-80), 2));
     // Edges within 0.01 pixel over an outline of 430 pixels: 4.3 of 9,000 pixels at the very most.
     CHECK(found.all[0].area_px == Approx(expected).epsilon(5e-4));
 }
 
 TEST_CASE("polygons: what is wrong with a file is said with what to do", "[raster][edge]") {
     const Folder here;
-    const auto good = here.write("good.geojson", geojson(feature(square, R"({"kind":"flat","area":3.5})")));
-    const auto points = here.write("points.geojson", geojson(feature(R"({"type":"Point","coordinates":[500100,4999900]})")));
+    const auto good =
+        here.write("good.geojson", geojson(feature(square, R"({"kind":"flat","area":3.5})")));
+    const auto points = here.write(
+        "points.geojson", geojson(feature(R"({"type":"Point","coordinates":[500100,4999900]})")));
     const auto text = here.write("text.geojson", "hello");
     const auto wrong = [&](const PolygonName& name, const PolygonsWanted& wanted = {}) {
         return error_text([&] { (void)read_polygons(name, grid, wanted); });
@@ -114,17 +132,24 @@ TEST_CASE("polygons: what is wrong with a file is said with what to do", "[raste
     CHECK_THAT(wrong({points, {}, {}}), Contains("holds no polygons but Point"));
     CHECK_THAT(wrong({good, "other", {}}), Contains("no layer \"other\""));
     CHECK_THAT(wrong({good, {}, "kind = "}), Contains("query"));
-    CHECK_THAT(wrong({good, {}, {}}, {"knid", {}}), Contains("no field \"knid\"") && Contains("kind"));
+    CHECK_THAT(wrong({good, {}, {}}, {"knid", {}}),
+               Contains("no field \"knid\"") && Contains("kind"));
     CHECK_THAT(wrong({good, {}, {}}, {"", {"kind"}}), Contains("holds no numbers"));
     CHECK(read_polygons({good, {}, "kind = 'flat' AND area > 3"}, grid, {}).all.size() == 1);
     CHECK(read_polygons({good, {}, "kind = 'steep'"}, grid, {}).all.empty());
 }
 
-TEST_CASE("polygons: every format gives the same shapes, and a table goes out as a GeoPackage of the same bytes", "[raster][differential]") {
+TEST_CASE(
+    "polygons: every format gives the same shapes, and a table goes out as a GeoPackage of the "
+    "same bytes",
+    "[raster][differential]") {
     const Folder here;
-    const auto json = here.write("a.geojson", geojson(feature(square, R"({"name":"one"})") + "," + feature(square, R"({"name":"two"})")));
+    const auto json = here.write("a.geojson", geojson(feature(square, R"({"name":"one"})") + "," +
+                                                      feature(square, R"({"name":"two"})")));
     for (const auto* name : {"a.gpkg", "a.shp", "a.fgb"})
-        REQUIRE(std::system(("ogr2ogr -nln a " + here.file(name).string() + " " + json.string() + " 2>/dev/null").c_str()) == 0);
+        REQUIRE(std::system(("ogr2ogr -nln a " + here.file(name).string() + " " + json.string() +
+                             " 2>/dev/null")
+                                .c_str()) == 0);
     for (const auto* name : {"a.geojson", "a.gpkg", "a.shp", "a.fgb"}) {
         CAPTURE(name);
         const auto found = read_polygons({here.file(name), {}, {}}, grid, {"name", {}});
@@ -132,8 +157,13 @@ TEST_CASE("polygons: every format gives the same shapes, and a table goes out as
         for (const auto& one : found.all) CHECK(one.area_px == Approx(200).epsilon(1e-9));
     }
     const std::vector<FeatureColumn> columns{{"name", true}, {"mean", false}};
-    const auto row = [](std::size_t i) { return FeatureRow{i == 0 ? 1 : 2, {i == 0 ? "one" : "two"}, {i == 0 ? 2.5 : std::numeric_limits<double>::quiet_NaN()}}; };
-    for (const auto* name : {"x.gpkg", "y.gpkg"}) write_features(here.file(name), {here.file("a.gpkg"), {}, {}}, "zones", columns, 2, row);
+    const auto row = [](std::size_t i) {
+        return FeatureRow{i == 0 ? 1 : 2,
+                          {i == 0 ? "one" : "two"},
+                          {i == 0 ? 2.5 : std::numeric_limits<double>::quiet_NaN()}};
+    };
+    for (const auto* name : {"x.gpkg", "y.gpkg"})
+        write_features(here.file(name), {here.file("a.gpkg"), {}, {}}, "zones", columns, 2, row);
     CHECK(sha256_of_file(here.file("x.gpkg")) == sha256_of_file(here.file("y.gpkg")));
     const auto back = read_polygons({here.file("x.gpkg"), "zones", {}}, grid, {"name", {"mean"}});
     REQUIRE(back.all.size() == 2);

@@ -20,12 +20,14 @@ TEST_CASE("round_row: equals rounding in double precision, bit for bit", "[raste
     std::uniform_real_distribution<float> values(-2000, 2000);
     std::vector<float> row(1000);
     for (auto& value : row) value = values(random);
-    for (int i = 0; i < 100; ++i) row[static_cast<std::size_t>(i)] = (static_cast<float>(i) + 0.5f) * quantum;  // halves
+    for (int i = 0; i < 100; ++i)
+        row[static_cast<std::size_t>(i)] = (static_cast<float>(i) + 0.5f) * quantum;  // halves
     const auto before = row;
     round_row(row, quantum);
     int differ = 0;
     for (std::size_t i = 0; i < row.size(); ++i)
-        differ += static_cast<double>(row[i]) != quantised_reference(static_cast<double>(before[i]), static_cast<double>(quantum));
+        differ += static_cast<double>(row[i]) !=
+                  quantised_reference(static_cast<double>(before[i]), static_cast<double>(quantum));
     CHECK(differ == 0);
 }
 
@@ -117,7 +119,8 @@ TEST_CASE("Pyramid: goes on from an interrupted run and ends with the same bytes
     CHECK(sha256_of_file(folder.path() / "resumed.tif") == expected);
 }
 
-TEST_CASE("Pyramid: overviews beyond the memory limit are made from the spool, with the same bits", "[raster][differential]") {
+TEST_CASE("Pyramid: overviews beyond the memory limit are made from the spool, with the same bits",
+          "[raster][differential]") {
     // 5 x 3 tiles of 64: parents with four, two and one children.
     LayerFile layer;
     layer.name = "layer";
@@ -133,11 +136,14 @@ TEST_CASE("Pyramid: overviews beyond the memory limit are made from the spool, w
         for (int band = 0; band < 2; ++band)
             for (int row = 0; row < 3; ++row)
                 for (int column = 0; column < 5; ++column) {
-                    Plane<float> tile(std::min(64, 300 - 64 * column), std::min(64, 170 - 64 * row));
+                    Plane<float> tile(std::min(64, 300 - 64 * column),
+                                      std::min(64, 170 - 64 * row));
                     for (int r = 0; r < tile.height(); ++r)
                         for (int c = 0; c < tile.width(); ++c)
-                            tile.at(c, r) = (c * r) % 7 == 0 ? std::numeric_limits<float>::quiet_NaN()
-                                                             : static_cast<float>(band + (column * 64 + c) % 13 + row * 0.125);
+                            tile.at(c, r) = (c * r) % 7 == 0
+                                                ? std::numeric_limits<float>::quiet_NaN()
+                                                : static_cast<float>(band + (column * 64 + c) % 13 +
+                                                                     row * 0.125);
                     pyramid.put(band, column, row, tile);
                 }
         CHECK(spool.missing() == 0);

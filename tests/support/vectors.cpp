@@ -64,9 +64,13 @@ Table read_table(const std::string& name) {
     return table;
 }
 
-fs::path source_folder() { return SUNBUDGET_SOURCE_DIR; }
+fs::path source_folder() {
+    return SUNBUDGET_SOURCE_DIR;
+}
 
-fs::path testdata(const std::string& name) { return source_folder() / "testdata" / name; }
+fs::path testdata(const std::string& name) {
+    return source_folder() / "testdata" / name;
+}
 
 std::optional<fs::path> real_data(const std::string& name) {
     const char* folder = std::getenv("SUNBUDGET_DATA");

@@ -51,12 +51,13 @@ TEST_CASE("method: an unknown name comes with a suggestion", "[tables][edge]") {
     CHECK(method("clear_sky", "esra2000").parameter("ozone") == nullptr);
     CHECK(method_names("no-such-family").empty());
     CHECK(method_families() ==
-          std::vector<std::string>{"sun_position", "air_mass", "clear_sky", "diffuse_sky", "real_sky", "horizon",
-                                   "albedo", "longwave", "longwave_daily", "longwave_cloud", "surface_temperature",
-                                   "emissivity", "sri"});
+          std::vector<std::string>{"sun_position", "air_mass", "clear_sky", "diffuse_sky",
+                                   "real_sky", "horizon", "albedo", "longwave", "longwave_daily",
+                                   "longwave_cloud", "surface_temperature", "emissivity", "sri"});
 }
 
-TEST_CASE("methods of heat: rows stand in the order of the physics' enumerations", "[tables][property]") {
+TEST_CASE("methods of heat: rows stand in the order of the physics' enumerations",
+          "[tables][property]") {
     const auto row = [](const char* family, auto which) {
         return method_names(family).at(static_cast<std::size_t>(which));
     };

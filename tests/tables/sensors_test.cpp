@@ -119,8 +119,9 @@ TEST_CASE("landsat-oli-c2: reads the product's quality bits", "[tables][vector]"
     CHECK(seen("SR_QA_AEROSOL", 2 << 6).empty());  // medium
 }
 
-TEST_CASE("quality tests: lead to the flag of the same name, and neither snow nor aerosol is a rejection",
-          "[tables][property]") {
+TEST_CASE(
+    "quality tests: lead to the flag of the same name, and neither snow nor aerosol is a rejection",
+    "[tables][property]") {
     for (const auto& row : sensors()) {
         for (const auto& test : row.tests) {
             CAPTURE(row.name, test.name);

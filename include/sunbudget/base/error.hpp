@@ -8,12 +8,12 @@ namespace sunbudget {
 
 /// Why a run ended; the value is the program's exit code.
 enum class Cause {
-    internal = 1,   ///< a bug of ours, or anything nobody foresaw
-    usage = 2,      ///< the command line or the plan is wrong
-    input = 3,      ///< an input is missing, unreadable or does not fit
-    output = 4,     ///< the output cannot be written
-    partial = 5,    ///< some tiles or parts are missing
-    temporary = 75, ///< worth another try
+    internal = 1,    ///< a bug of ours, or anything nobody foresaw
+    usage = 2,       ///< the command line or the plan is wrong
+    input = 3,       ///< an input is missing, unreadable or does not fit
+    output = 4,      ///< the output cannot be written
+    partial = 5,     ///< some tiles or parts are missing
+    temporary = 75,  ///< worth another try
 };
 
 /// One thing that is wrong: what, where (file, line, key, block) and what to do about it.

@@ -43,7 +43,8 @@ class Plane {
         const std::size_t count = stride_ * static_cast<std::size_t>(height);
         if (count == 0) return;
         const std::size_t bytes = count * sizeof(T);
-        data_ = std::unique_ptr<T[], Free>(static_cast<T*>(detail::take_plane_memory(bytes)), Free{bytes});
+        data_ = std::unique_ptr<T[], Free>(static_cast<T*>(detail::take_plane_memory(bytes)),
+                                           Free{bytes});
         std::fill_n(data_.get(), count, fill);
     }
 
@@ -57,13 +58,17 @@ class Plane {
 
     [[nodiscard]] std::span<T> row(int r) noexcept {
         assert(r >= 0 && r < height_);
-        return {data_.get() + stride_ * static_cast<std::size_t>(r), static_cast<std::size_t>(width_)};
+        return {data_.get() + stride_ * static_cast<std::size_t>(r),
+                static_cast<std::size_t>(width_)};
     }
     [[nodiscard]] std::span<const T> row(int r) const noexcept {
         assert(r >= 0 && r < height_);
-        return {data_.get() + stride_ * static_cast<std::size_t>(r), static_cast<std::size_t>(width_)};
+        return {data_.get() + stride_ * static_cast<std::size_t>(r),
+                static_cast<std::size_t>(width_)};
     }
-    [[nodiscard]] T& at(int column, int r) noexcept { return row(r)[static_cast<std::size_t>(column)]; }
+    [[nodiscard]] T& at(int column, int r) noexcept {
+        return row(r)[static_cast<std::size_t>(column)];
+    }
     [[nodiscard]] T at(int column, int r) const noexcept {
         return row(r)[static_cast<std::size_t>(column)];
     }

@@ -26,7 +26,8 @@ namespace sunbudget {
 [[nodiscard]] std::optional<std::string> nearest_name(std::string_view name,
                                                       std::span<const std::string> candidates);
 /// `did you mean "x"?`, or the list of candidates where none is near.
-[[nodiscard]] std::string suggestion(std::string_view name, std::span<const std::string> candidates);
+[[nodiscard]] std::string suggestion(std::string_view name,
+                                     std::span<const std::string> candidates);
 
 [[nodiscard]] std::string_view trimmed(std::string_view text) noexcept;
 [[nodiscard]] std::vector<std::string> split(std::string_view text, char separator);

@@ -10,7 +10,9 @@ namespace sunbudget {
 [[nodiscard]] constexpr double deg_from_rad(double rad) noexcept {
     return rad * (180.0 / std::numbers::pi);
 }
-[[nodiscard]] constexpr double k_from_celsius(double celsius) noexcept { return celsius + 273.15; }
+[[nodiscard]] constexpr double k_from_celsius(double celsius) noexcept {
+    return celsius + 273.15;
+}
 
 inline constexpr double seconds_per_day = 86400.0;
 /// IAU 2015 Resolution B3; Kopp & Lean 2011, Geophys. Res. Lett. 38, L01706.

@@ -13,8 +13,8 @@ namespace sunbudget {
 class ZoneTable {
   public:
     /// The arguments must outlive the table. `id` is the name of the first column.
-    ZoneTable(const ZoneQuestion& question, const std::vector<Polygon>& zones, const std::vector<ZoneAnswer>& answers,
-              std::string id);
+    ZoneTable(const ZoneQuestion& question, const std::vector<Polygon>& zones,
+              const std::vector<ZoneAnswer>& answers, std::string id);
 
     [[nodiscard]] std::span<const FeatureColumn> columns() const { return columns_; }
     [[nodiscard]] std::size_t rows() const { return zones_.size() * periods_; }
@@ -25,9 +25,11 @@ class ZoneTable {
 
   private:
     struct Ranks {
-        std::vector<std::size_t> by_mean, by_sum;  ///< by zone, from 1; 0 where the zone has no value
+        std::vector<std::size_t> by_mean,
+            by_sum;  ///< by zone, from 1; 0 where the zone has no value
     };
-    [[nodiscard]] const ZoneFigures& figures(std::size_t zone, std::size_t layer, std::size_t period) const;
+    [[nodiscard]] const ZoneFigures& figures(std::size_t zone, std::size_t layer,
+                                             std::size_t period) const;
     [[nodiscard]] double total(std::size_t zone, std::size_t layer, std::size_t period) const;
     void rank(std::size_t layer, std::size_t period);
 
@@ -42,13 +44,14 @@ class ZoneTable {
 
 /// Plain sentences a reader of the table needs: zones that differ only because the map has one class, zones beyond
 /// the grid.
-[[nodiscard]] std::vector<std::string> zone_notes(const ZoneQuestion& question, const std::vector<ZoneAnswer>& answers);
+[[nodiscard]] std::vector<std::string> zone_notes(const ZoneQuestion& question,
+                                                  const std::vector<ZoneAnswer>& answers);
 
 /// The question about finished rasters: `files` by layer name, all on one grid.
 struct ZoneRasters {
     std::vector<std::filesystem::path> files;
-    std::filesystem::path slope;    ///< may be empty
-    RasterName cover;               ///< may be empty
+    std::filesystem::path slope;  ///< may be empty
+    RasterName cover;             ///< may be empty
     std::map<std::int32_t, std::string> class_names{};
     std::optional<double> above;
 };

@@ -19,7 +19,7 @@ struct ZoneLayer {
     bool per_surface_area = false;  ///< radiation: weighted with the inclined surface, and summed
     double to_total = 0;            ///< times mean and area: W, or GJ; 0: a sum has no meaning
     std::string total_unit{};
-    std::vector<Source> bands;      ///< one, or one a period
+    std::vector<Source> bands;  ///< one, or one a period
     /// Standard uncertainty of each band, systematic over a zone; may be empty.
     std::vector<Source> uncertainty{};
 };
@@ -28,8 +28,9 @@ struct ZoneLayer {
 struct ZoneQuestion {
     Grid grid;
     std::vector<ZoneLayer> layers;
-    std::vector<std::string> periods;  ///< names of the bands of layers that have several; empty: none has
-    std::optional<Source> slope_deg;   ///< without it the ground counts as level
+    std::vector<std::string>
+        periods;  ///< names of the bands of layers that have several; empty: none has
+    std::optional<Source> slope_deg;  ///< without it the ground counts as level
     std::optional<Source> classes;
     std::map<std::int32_t, std::string> class_names{};
     std::optional<double> above;
@@ -39,10 +40,12 @@ struct ZoneQuestion {
 struct ZoneAnswer {
     double map_area_m2 = 0;      ///< of the part on the grid
     double surface_area_m2 = 0;  ///< the same along the slopes
-    double nodata_share = 0;     ///< of the zone, where the first layer has no value or the grid has ended
+    double nodata_share =
+        0;  ///< of the zone, where the first layer has no value or the grid has ended
     std::map<std::int32_t, double> class_shares{};  ///< of the part that has a class
     std::vector<std::vector<ZoneFigures>> figures;  ///< by layer and band
-    std::vector<std::vector<double>> uncertainty;   ///< by layer and band, of the mean; NaN where not known
+    std::vector<std::vector<double>>
+        uncertainty;  ///< by layer and band, of the mean; NaN where not known
 
     struct ClassShare {
         std::int32_t code = 0;
@@ -61,7 +64,8 @@ struct ZoneOptions {
 /// out     in the zones' order; the same bits whatever the threads
 /// memory  some planes a thread, and the zones that the row of blocks at work touches
 /// errors  Error(input) when a raster cannot be read
-[[nodiscard]] std::vector<ZoneAnswer> zone_answers(const ZoneQuestion& question, const std::vector<Polygon>& zones,
+[[nodiscard]] std::vector<ZoneAnswer> zone_answers(const ZoneQuestion& question,
+                                                   const std::vector<Polygon>& zones,
                                                    const ZoneOptions& options);
 
 }  // namespace sunbudget

@@ -54,11 +54,12 @@ struct Execution {
 ///
 /// errors  Error(input) of a read that failed, with the layer of the lattice it happened in;
 ///         Error(output); Error(temporary) after a stop signal
-[[nodiscard]] Execution execute(const Run& run, const EngineOptions& options, const OutputSet& outputs);
+[[nodiscard]] Execution execute(const Run& run, const EngineOptions& options,
+                                const OutputSet& outputs);
 
 /// Figures of the run's zones from its finished layers, staged as zones.csv and zones.gpkg, and of its changes as changes.csv; the names of those
 /// files, none where the run has no zones. The notes go into `execution`.
-[[nodiscard]] std::vector<std::string> write_zones(const Run& run, const EngineOptions& options, const OutputSet& outputs,
-                                                   Execution& execution);
+[[nodiscard]] std::vector<std::string> write_zones(const Run& run, const EngineOptions& options,
+                                                   const OutputSet& outputs, Execution& execution);
 
 }  // namespace sunbudget

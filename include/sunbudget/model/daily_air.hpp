@@ -40,7 +40,8 @@ struct DailyNet {
 ///                    humidity and relative sunlight are kept
 /// errors  none; NaN in gives NaN out
 /// source  physics/fao56_balance.hpp; the move to another height is none of the papers'
-[[nodiscard]] double daily_net_longwave_w_m2(DailyMethod method, const DailyAir& day, double rise_m, double lapse_k_m);
+[[nodiscard]] double daily_net_longwave_w_m2(DailyMethod method, const DailyAir& day, double rise_m,
+                                             double lapse_k_m);
 
 /// Clear-sky light of a day after both papers, Rso = (0.75 + 2e-5 z) Ra.
 [[nodiscard]] double daily_clear_mj_m2(const CivilDate& date, double latitude_rad, double height_m);
@@ -66,7 +67,8 @@ struct DailyRecord {
 /// A day needs 90 % of its hours, and of its light.
 ///
 /// errors  Error(input) where the table cannot give what the methods need
-[[nodiscard]] DailyRecord daily_air(const WeatherRecord& record, const Station& station, const TimePlan& times,
+[[nodiscard]] DailyRecord daily_air(const WeatherRecord& record, const Station& station,
+                                    const TimePlan& times,
                                     const std::function<double(const CivilDate&)>& otherwise);
 
 }  // namespace sunbudget

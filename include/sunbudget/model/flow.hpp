@@ -19,8 +19,10 @@ class Sink {
   public:
     virtual ~Sink() = default;
     /// `layer` counts the run's layers; planes cover the window.
-    virtual void put(std::size_t layer, std::size_t band, const Window& window, const Plane<float>& plane) = 0;
-    virtual void put(std::size_t layer, std::size_t band, const Window& window, const Plane<std::uint16_t>& plane) = 0;
+    virtual void put(std::size_t layer, std::size_t band, const Window& window,
+                     const Plane<float>& plane) = 0;
+    virtual void put(std::size_t layer, std::size_t band, const Window& window,
+                     const Plane<std::uint16_t>& plane) = 0;
 };
 
 class Probe;

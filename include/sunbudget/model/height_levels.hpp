@@ -17,8 +17,8 @@ class HeightLevels {
     /// Levels 1 to `levels` around the grid, as far as `sight` reaches and the rasters lie.
     ///
     /// errors  Error(output) when the scratch files cannot be written
-    HeightLevels(std::span<const Source> sources, const Grid& grid, int levels, double step_m, const Sight& sight,
-                 const std::filesystem::path& scratch_folder);
+    HeightLevels(std::span<const Source> sources, const Grid& grid, int levels, double step_m,
+                 const Sight& sight, const std::filesystem::path& scratch_folder);
     ~HeightLevels();
 
     [[nodiscard]] int levels() const;

@@ -24,8 +24,9 @@ struct OpenLight {
     std::array<double, 3> circumsolar_w_m2{};  ///< sky light that comes with the sun
     double diffuse_w_m2 = 0;                   ///< all sky light, on the horizontal
     double horizon_w_m2 = 0;                   ///< sky light from the rim of the sky, see SkyParts
-    double sunlit_h_a_day = 0;                 ///< hours with the sun up for each 24 h of the period; 24 or 0 at an instant
-    double thrown_back_w_m2 = 0;               ///< what waits for the ground's albedo, see SkyMoment
+    double sunlit_h_a_day =
+        0;  ///< hours with the sun up for each 24 h of the period; 24 or 0 at an instant
+    double thrown_back_w_m2 = 0;  ///< what waits for the ground's albedo, see SkyMoment
     double thrown_back_twice_w_m2 = 0;
 
     /// Of the beam, on the horizontal.
@@ -42,10 +43,11 @@ class PointLight {
     PointLight(PointLight&&) noexcept;
 
     [[nodiscard]] std::size_t bands() const;
-    [[nodiscard]] OpenLight at(std::size_t band, double latitude_rad, double longitude_rad, double height_m) const;
-    /// The share that one month (0: all of them) has in the band's light, under another sky.
-    [[nodiscard]] OpenLight at(std::size_t band, int month, const Sky& sky, double latitude_rad, double longitude_rad,
+    [[nodiscard]] OpenLight at(std::size_t band, double latitude_rad, double longitude_rad,
                                double height_m) const;
+    /// The share that one month (0: all of them) has in the band's light, under another sky.
+    [[nodiscard]] OpenLight at(std::size_t band, int month, const Sky& sky, double latitude_rad,
+                               double longitude_rad, double height_m) const;
     [[nodiscard]] const Sky& sky() const;
     /// The months that a band has days in, in order; 0 alone for an instant, whose month hangs on the place.
     [[nodiscard]] std::vector<int> months_of(std::size_t band) const;
@@ -53,8 +55,8 @@ class PointLight {
     [[nodiscard]] std::size_t most_suns(std::size_t first_band, std::size_t bands) const;
     /// The sun's way over the place in one band: what the shadows are worked out with. Beam, light from
     /// around the sun and hours (for each 24 h of the period) add up to those of at().
-    [[nodiscard]] std::vector<SunStep> path(std::size_t band, double latitude_rad, double longitude_rad,
-                                            double height_m) const;
+    [[nodiscard]] std::vector<SunStep> path(std::size_t band, double latitude_rad,
+                                            double longitude_rad, double height_m) const;
 
   private:
     struct Work;
@@ -66,17 +68,25 @@ class PointLight {
 class LightField {
   public:
     enum class Part {
-        beam_east, beam_north, beam_up,
-        circumsolar_east, circumsolar_north, circumsolar_up,
-        diffuse, horizon, sunlit_h_a_day,
-        thrown_back, thrown_back_twice,
+        beam_east,
+        beam_north,
+        beam_up,
+        circumsolar_east,
+        circumsolar_north,
+        circumsolar_up,
+        diffuse,
+        horizon,
+        sunlit_h_a_day,
+        thrown_back,
+        thrown_back_twice,
     };
 
     /// `constant_height_m` is set where no elevation raster is read. Without `vectors` only beam_up and
     /// diffuse are there to be asked for, at less cost. With `varied` one parameter of the sky comes from a
     /// raster, which outlives the field; `sky` has its mean.
     LightField(const TimePlan& times, const Sky& sky, const Grid& grid, int threads,
-               std::optional<double> constant_height_m, bool vectors, const SkyRaster* varied = nullptr);
+               std::optional<double> constant_height_m, bool vectors,
+               const SkyRaster* varied = nullptr);
     ~LightField();
 
     /// One window's share.
@@ -97,9 +107,11 @@ class LightField {
         std::unique_ptr<Parts> parts_;
     };
     /// As SmoothField::prepare. NaN where the projection has no answer, or the sky's raster no value.
-    [[nodiscard]] Block prepare(const Window& window, const Window& frame, const Plane<float>& heights_m, int thread);
+    [[nodiscard]] Block prepare(const Window& window, const Window& frame,
+                                const Plane<float>& heights_m, int thread);
     /// A block is filled by one thread at a time.
-    void fill(const Block& block, std::size_t band, Part part, const Plane<float>& heights_m, Plane<float>& out) const;
+    void fill(const Block& block, std::size_t band, Part part, const Plane<float>& heights_m,
+              Plane<float>& out) const;
     /// Whether the part is there to be asked for.
     [[nodiscard]] bool has(Part part) const;
 

@@ -25,8 +25,8 @@ class LightShares {
 
   private:
     std::vector<Piece> pieces_;
-    std::vector<UtcSeconds> borders_;      ///< between a piece's reach and the next's
-    std::vector<LightShare> integrals_;    ///< from the first border to each, times seconds
+    std::vector<UtcSeconds> borders_;    ///< between a piece's reach and the next's
+    std::vector<LightShare> integrals_;  ///< from the first border to each, times seconds
 
     [[nodiscard]] std::size_t index_of(UtcSeconds utc) const;
     [[nodiscard]] LightShare integral_to(UtcSeconds utc) const;

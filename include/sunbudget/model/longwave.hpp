@@ -21,8 +21,9 @@ struct AirMoment {
     double temperature_k = std::numeric_limits<double>::quiet_NaN();
     double vapour_pressure_hpa = std::numeric_limits<double>::quiet_NaN();
     CloudTerms cloud;
-    double longwave_down_w_m2 = std::numeric_limits<double>::quiet_NaN();  ///< measured: stands for the formula
-    double surface_k = std::numeric_limits<double>::quiet_NaN();           ///< of the ground
+    double longwave_down_w_m2 =
+        std::numeric_limits<double>::quiet_NaN();  ///< measured: stands for the formula
+    double surface_k = std::numeric_limits<double>::quiet_NaN();  ///< of the ground
 };
 
 struct AirRow {
@@ -40,12 +41,14 @@ struct Longwave {
     std::vector<AirRow> rows;            ///< of a weather table, in order
     std::optional<double> height_m;      ///< where both hold; nothing: at every height
     std::array<double, 12> lapse_k_m{};
-    double surface_above_air_k = std::numeric_limits<double>::quiet_NaN();  ///< set: the ground follows the air
+    double surface_above_air_k =
+        std::numeric_limits<double>::quiet_NaN();  ///< set: the ground follows the air
     // In the place of the numbers, as the pixels have them.
     std::optional<Source> temperature_k;
     std::optional<Source> humidity;
     HumidityAs humidity_as = HumidityAs::relative;
-    std::array<double, 12> humidity_numbers{};  ///< told that way, beside a raster of the temperature alone
+    std::array<double, 12>
+        humidity_numbers{};  ///< told that way, beside a raster of the temperature alone
     // In the place of all that: the net of whole days.
     std::optional<DailyNet> daily;
 
@@ -54,9 +57,10 @@ struct Longwave {
 
 /// A band's longwave over level open ground: of an instant, or means over a period.
 struct OpenLongwave {
-    double sky_w_m2 = 0;            ///< under a daily method the net longwave, and the others but air_k are 0
-    double air_black_w_m2 = 0;      ///< sigma T^4 of the air
-    double surface_black_w_m2 = 0;  ///< of the ground, where the run knows its temperature without looking at pixels
+    double sky_w_m2 = 0;  ///< under a daily method the net longwave, and the others but air_k are 0
+    double air_black_w_m2 = 0;  ///< sigma T^4 of the air
+    double surface_black_w_m2 =
+        0;  ///< of the ground, where the run knows its temperature without looking at pixels
     double air_k = 0;
     double surface_k = 0;
     static constexpr std::size_t values = 5;
@@ -75,7 +79,8 @@ class PointLongwave {
     /// NaN where the record has too little.
     [[nodiscard]] OpenLongwave at(std::size_t band, double longitude_rad, double height_m) const;
     /// Of the part of the band that is covered, however small; 0 where none is.
-    [[nodiscard]] OpenLongwave of_what_there_is(std::size_t band, double longitude_rad, double height_m) const;
+    [[nodiscard]] OpenLongwave of_what_there_is(std::size_t band, double longitude_rad,
+                                                double height_m) const;
     /// The numbers that hold for a band as a whole, their means by the days of each month in it.
     [[nodiscard]] AirMoment mean_numbers(std::size_t band) const;
     [[nodiscard]] double mean_humidity(std::size_t band) const;
@@ -107,8 +112,10 @@ class LongwaveField {
     ~LongwaveField();
 
     using Block = SmoothField::Block;
-    [[nodiscard]] Block prepare(const Window& window, const Window& frame, const Plane<float>& heights_m, int thread);
-    static void fill(const Block& block, std::size_t band, Part part, const Plane<float>& heights_m, Plane<float>& out);
+    [[nodiscard]] Block prepare(const Window& window, const Window& frame,
+                                const Plane<float>& heights_m, int thread);
+    static void fill(const Block& block, std::size_t band, Part part, const Plane<float>& heights_m,
+                     Plane<float>& out);
     [[nodiscard]] const PointLongwave& point() const;
 
   private:

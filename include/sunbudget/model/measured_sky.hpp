@@ -21,19 +21,20 @@ inline constexpr double month_needs = 0.8;
 
 /// What a record makes of a run's light, in figures.
 struct MeasuredReport {
-    std::string from;                   ///< "global and diffuse", "cloud"
-    std::size_t days = 0;               ///< of the run, with a sun over the station
-    std::size_t days_missing = 0;       ///< by the rule
-    std::size_t days_with_gaps = 0;     ///< filled by their own mean
-    double gap_h = 0;                   ///< sunlit hours without a value, missing days included
-    std::vector<TimeSpan> first_gaps;   ///< of them, ten at most
-    std::size_t split_intervals = 0;    ///< where sky light was worked out from the global
+    std::string from;                  ///< "global and diffuse", "cloud"
+    std::size_t days = 0;              ///< of the run, with a sun over the station
+    std::size_t days_missing = 0;      ///< by the rule
+    std::size_t days_with_gaps = 0;    ///< filled by their own mean
+    double gap_h = 0;                  ///< sunlit hours without a value, missing days included
+    std::vector<TimeSpan> first_gaps;  ///< of them, ten at most
+    std::size_t split_intervals = 0;   ///< where sky light was worked out from the global
     /// Global against beam on the horizontal plus diffuse, where all three are measured and the sun is above 5 degrees.
     struct {
         std::size_t intervals = 0;
         double global_mean_w_m2 = 0, difference_mean_w_m2 = 0, difference_rms_w_m2 = 0;
     } closure;
-    double left_out_share = 0;  ///< of the measured light: more than any sky gives at its sun (sensors at low sun)
+    double left_out_share =
+        0;  ///< of the measured light: more than any sky gives at its sun (sensors at low sun)
 };
 
 /// The light of a run as a station measured it.
@@ -53,8 +54,8 @@ struct MeasuredSky {
 ///
 /// errors  Error(input) when the record has neither global, nor beam and diffuse, nor cloud; when
 ///         `stop_at_gaps` and the sun shines on a gap; when no band has enough
-[[nodiscard]] MeasuredSky measured_sky(const WeatherRecord& record, const Station& station, const Sky& clear,
-                                       const TimePlan& times, bool stop_at_gaps);
+[[nodiscard]] MeasuredSky measured_sky(const WeatherRecord& record, const Station& station,
+                                       const Sky& clear, const TimePlan& times, bool stop_at_gaps);
 
 /// The record has what measured_sky needs.
 [[nodiscard]] bool has_light(const WeatherRecord& record);

@@ -32,13 +32,13 @@ namespace sunbudget {
 /// Albedo from a land-cover raster and a class table.
 struct CoverSurface {
     Source codes;
-    CodeValues albedo;          ///< of every code of the table, and of the default class's codes
+    CodeValues albedo;  ///< of every code of the table, and of the default class's codes
     CodeValues albedo_uncertainty;  ///< of those whose range the table has
-    CodeValues quality;         ///< the `quality` layer's source number for each code
+    CodeValues quality;             ///< the `quality` layer's source number for each code
     CodeValues emissivity;
     CodeValues built_emissivity;  ///< of built kinds alone
     CodeValues dry;               ///< 1 for dry built and bare kinds, 0 for others
-    bool averaged = false;      ///< the grid is coarser: class albedos are averaged
+    bool averaged = false;        ///< the grid is coarser: class albedos are averaged
 };
 
 /// Albedo as given: a raster, or one number for all.
@@ -57,12 +57,12 @@ struct ReflectanceBand {
 /// What is known of an image besides its pixels.
 struct ImageFacts {
     std::string sensor;
-    std::string scene;                        ///< the product's id; empty where unknown
+    std::string scene;  ///< the product's id; empty where unknown
     std::optional<UtcSeconds> acquired_utc;
     std::optional<CivilDate> date;            ///< where the time is not known
     std::optional<double> sun_elevation_deg;  ///< in the middle of the scene
     std::optional<double> sun_azimuth_deg;
-    std::vector<std::string> rejected;        ///< names of the quality tests
+    std::vector<std::string> rejected;  ///< names of the quality tests
 };
 
 /// Albedo from an image: weighted reflectance where the image can be used, else the fill's.
@@ -86,7 +86,7 @@ struct ChangedLayer {
 struct OutputLayer {
     const Layer* layer = nullptr;
     LayerFile file;
-    std::vector<double> factors;  ///< from W m-2 to the stored unit, one a band
+    std::vector<double> factors;            ///< from W m-2 to the stored unit, one a band
     std::optional<ChangedLayer> changed{};  ///< nothing: of the run as it is
 };
 
@@ -95,8 +95,8 @@ struct InputFile {
     std::string role;  ///< the plan's key: "surface.cover.raster"
     std::string name;  ///< without folders
     std::string digest;
-    std::vector<std::string> notes;  ///< grid, alignment, scale, nodata: one line each
-    double coverage = 1;             ///< share of the grid's pixels it covers
+    std::vector<std::string> notes;          ///< grid, alignment, scale, nodata: one line each
+    double coverage = 1;                     ///< share of the grid's pixels it covers
     std::shared_ptr<const Source> source{};  ///< nothing for what is no raster
 };
 
@@ -133,7 +133,7 @@ struct RunLight {
     /// clear sky's light.
     std::vector<Source> rasters;
     bool rasters_are_cloud = false;
-    std::vector<double> overcast;       ///< light under a closed cover, by band
+    std::vector<double> overcast;  ///< light under a closed cover, by band
 };
 
 /// A report for people, once the layers are written.
@@ -153,10 +153,10 @@ struct Run {
     std::variant<std::monostate, CoverSurface, GivenSurface, ReflectanceSurface> surface;
     std::optional<Terrain> terrain;  ///< without it the ground is level and open
     double constant_height_m = 0;    ///< then
-    Sky sky;  ///< with the means of what comes from a raster
+    Sky sky;                         ///< with the means of what comes from a raster
     std::optional<SkyRaster> sky_raster;
     double light_uncertainty = 0.07;  ///< relative standard uncertainty, the same at all times
-    std::shared_ptr<const RunWeather> weather;  ///< nothing without a table
+    std::shared_ptr<const RunWeather> weather;            ///< nothing without a table
     std::array<bool, weather_quantities> columns_used{};  ///< of that table
     RunLight light;
     Heat heat;
@@ -176,7 +176,9 @@ struct Run {
     std::vector<std::string> warnings;
 
     void use(Weather quantity) { columns_used[static_cast<std::size_t>(quantity)] = true; }
-    [[nodiscard]] bool has_surface() const { return !std::holds_alternative<std::monostate>(surface); }
+    [[nodiscard]] bool has_surface() const {
+        return !std::holds_alternative<std::monostate>(surface);
+    }
 };
 
 }  // namespace sunbudget

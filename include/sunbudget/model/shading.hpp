@@ -21,7 +21,8 @@ class Probe;
 /// blocks, sorted once.
 class SharedTerrain {
   public:
-    SharedTerrain(const Terrain& terrain, const Grid& grid, const std::filesystem::path& scratch_folder);
+    SharedTerrain(const Terrain& terrain, const Grid& grid,
+                  const std::filesystem::path& scratch_folder);
     ~SharedTerrain();
 
     [[nodiscard]] const Terrain& terrain() const { return terrain_; }
@@ -31,7 +32,9 @@ class SharedTerrain {
     /// one for each region made steps of 0.2 W m-2 at their borders.
     [[nodiscard]] double middle_height_m() const { return middle_height_m_; }
     /// The sectors of the region a block lies in. What a block gets does not depend on who asks first.
-    [[nodiscard]] std::shared_ptr<const SunSectors> sectors(const Window& block, std::size_t first_band, std::size_t bands,
+    [[nodiscard]] std::shared_ptr<const SunSectors> sectors(const Window& block,
+                                                            std::size_t first_band,
+                                                            std::size_t bands,
                                                             const LightField& light, int thread);
 
   private:
@@ -80,7 +83,8 @@ class BlockShader {
     /// Slopes, sky view and the shaded sums of some bands (none: slopes and sky view alone).
     ///
     /// block   at most 256 pixels a side, inside one block of the lattice
-    void shade(const Window& block, std::size_t first_band, std::size_t bands, bool sky_view, ShadedBlock& out);
+    void shade(const Window& block, std::size_t first_band, std::size_t bands, bool sky_view,
+               ShadedBlock& out);
 
     /// Heights of a window as the run has them; NaN where there is no ground.
     void heights(const Window& window, Plane<float>& heights_m);

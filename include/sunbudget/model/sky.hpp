@@ -42,9 +42,10 @@ struct Sky {
     /// NaN where the model has none, and for a ground albedo that the run's own takes the place of.
     std::array<MonthlyNumbers, sky_parameter_count> parameters;
     DiffuseModel diffuse = DiffuseModel::hay_davies1980;
-    std::shared_ptr<const LightShares> measured;           ///< of the clear sky's light; nothing: all of it
-    std::shared_ptr<const AirPressure> pressure;           ///< nothing: the standard's
-    std::optional<std::array<LightShare, 12>> mean_cloud;  ///< by month, a mixture of clear and overcast skies
+    std::shared_ptr<const LightShares> measured;  ///< of the clear sky's light; nothing: all of it
+    std::shared_ptr<const AirPressure> pressure;  ///< nothing: the standard's
+    std::optional<std::array<LightShare, 12>>
+        mean_cloud;  ///< by month, a mixture of clear and overcast skies
 
     /// The model with the defaults of its row.
     explicit Sky(ClearModel model = ClearModel::esra2000);
@@ -53,7 +54,9 @@ struct Sky {
         return parameters[static_cast<std::size_t>(parameter)];
     }
     /// What the standard's pressure is to be multiplied with.
-    [[nodiscard]] double pressure_factor(UtcSeconds utc, int month) const { return pressure ? pressure->factor(utc, month) : 1; }
+    [[nodiscard]] double pressure_factor(UtcSeconds utc, int month) const {
+        return pressure ? pressure->factor(utc, month) : 1;
+    }
     [[nodiscard]] double of(SkyParameter parameter, int month) const {
         return parameters[static_cast<std::size_t>(parameter)][static_cast<std::size_t>(month - 1)];
     }

@@ -26,10 +26,10 @@ class SmoothField {
                                         std::span<double> values)>;
 
     struct Shape {
-        int width = 0;            ///< of the raster, pixels
+        int width = 0;  ///< of the raster, pixels
         int height = 0;
-        std::size_t values = 1;   ///< how many the function writes
-        double tolerance = 0;     ///< in the values' own unit
+        std::size_t values = 1;                   ///< how many the function writes
+        double tolerance = 0;                     ///< in the values' own unit
         std::optional<double> constant_height_m;  ///< set: the height never varies
     };
 
@@ -42,8 +42,8 @@ class SmoothField {
     /// The cells under a window of at most 256 x 256 pixels that does not cross a multiple of 256.
     /// `heights_m` covers `frame`, which holds the window, and decides which heights are prepared;
     /// it is not used where the height is constant.
-    [[nodiscard]] Block prepare(const Window& window, const Window& frame, const Plane<float>& heights_m,
-                                int thread);
+    [[nodiscard]] Block prepare(const Window& window, const Window& frame,
+                                const Plane<float>& heights_m, int thread);
 
   private:
     struct Work;

@@ -29,14 +29,17 @@ class SunSectors {
         bool empty = true;
 
         /// shape   sums by band
-        void add_to(const HorizonPair& horizon, const NormalRow& normal, std::span<const BeamSums> sums) const noexcept;
+        void add_to(const HorizonPair& horizon, const NormalRow& normal,
+                    std::span<const BeamSums> sums) const noexcept;
     };
 
     /// Bands from first_band on, around a circle of `directions` azimuths; the first is north.
-    SunSectors(const PointLight& light, const Geodetic& place, double height_m, std::size_t first_band,
-               std::size_t bands, int directions);
+    SunSectors(const PointLight& light, const Geodetic& place, double height_m,
+               std::size_t first_band, std::size_t bands, int directions);
 
-    [[nodiscard]] const Sector& after(int direction) const { return sectors_[static_cast<std::size_t>(direction)]; }
+    [[nodiscard]] const Sector& after(int direction) const {
+        return sectors_[static_cast<std::size_t>(direction)];
+    }
     /// About what it takes in memory.
     [[nodiscard]] std::size_t bytes() const;
     [[nodiscard]] const std::vector<WholeSun>& whole() const { return whole_; }
@@ -57,7 +60,7 @@ struct FewSuns {
     std::vector<OwnSun> suns;
     std::vector<WholeSun> whole;  ///< by band
 };
-[[nodiscard]] FewSuns few_suns(const PointLight& light, const Geodetic& place, double height_m, std::size_t first_band,
-                               std::size_t bands);
+[[nodiscard]] FewSuns few_suns(const PointLight& light, const Geodetic& place, double height_m,
+                               std::size_t first_band, std::size_t bands);
 
 }  // namespace sunbudget

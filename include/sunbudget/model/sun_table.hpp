@@ -22,16 +22,16 @@ struct SunPlace {
 /// The sun and its clear-sky light at one moment.
 struct SunMoment {
     UtcSeconds utc = 0;
-    double elevation_rad = 0;           ///< true, of the sun's centre
+    double elevation_rad = 0;  ///< true, of the sun's centre
     double elevation_refracted_rad = 0;
-    double azimuth_rad = 0;             ///< clockwise from true north
+    double azimuth_rad = 0;  ///< clockwise from true north
     double distance_au = 1;
-    std::optional<double> air_mass;     ///< relative; nothing with the sun below the horizon
-    double extraterrestrial_w_m2 = 0;   ///< on a plane facing the sun
-    double beam_w_m2 = 0;               ///< on a plane facing the sun
-    double diffuse_w_m2 = 0;            ///< on the horizontal
-    double global_w_m2 = 0;             ///< on the horizontal
-    double on_slope_w_m2 = 0;           ///< direct, diffuse and reflected, per square metre of the slope
+    std::optional<double> air_mass;    ///< relative; nothing with the sun below the horizon
+    double extraterrestrial_w_m2 = 0;  ///< on a plane facing the sun
+    double beam_w_m2 = 0;              ///< on a plane facing the sun
+    double diffuse_w_m2 = 0;           ///< on the horizontal
+    double global_w_m2 = 0;            ///< on the horizontal
+    double on_slope_w_m2 = 0;  ///< direct, diffuse and reflected, per square metre of the slope
 };
 
 [[nodiscard]] SunMoment sun_moment(const SunPlace& place, const Zone& zone, UtcSeconds utc);
@@ -40,7 +40,8 @@ struct SunMoment {
 struct SunDayRow {
     CivilDate date;
     std::optional<UtcSeconds> sunrise, transit, sunset;  ///< of the sun's centre, no refraction
-    std::optional<UtcSeconds> sunrise_apparent, sunset_apparent;  ///< of its upper limb, with mean refraction
+    std::optional<UtcSeconds> sunrise_apparent,
+        sunset_apparent;  ///< of its upper limb, with mean refraction
     double day_length_s = 0;
     double transit_elevation_rad = 0;  ///< true elevation at the transit
     double extraterrestrial_j_m2 = 0;  ///< horizontal
@@ -50,10 +51,10 @@ struct SunDayRow {
 };
 
 /// Days [from, to], both included, light summed at `step_s`.
-[[nodiscard]] std::vector<SunDayRow> sun_days(const SunPlace& place, const Zone& zone, CivilDate from, CivilDate to,
-                                              double step_s);
+[[nodiscard]] std::vector<SunDayRow> sun_days(const SunPlace& place, const Zone& zone,
+                                              CivilDate from, CivilDate to, double step_s);
 /// Moments every `step_s` from the start of `from` to the end of `to`.
-[[nodiscard]] std::vector<SunMoment> sun_moments(const SunPlace& place, const Zone& zone, CivilDate from, CivilDate to,
-                                                 double step_s);
+[[nodiscard]] std::vector<SunMoment> sun_moments(const SunPlace& place, const Zone& zone,
+                                                 CivilDate from, CivilDate to, double step_s);
 
 }  // namespace sunbudget

@@ -21,7 +21,8 @@ class SurfaceReader {
 
     /// Standard uncertainty of the albedo that `read` gave for the window, with its flags: NaN where there is no
     /// albedo or nobody knows. Classes that are averaged are taken to err alike.
-    void uncertainty(const Window& window, const Plane<float>& albedo, const Plane<std::uint16_t>& flags, Plane<float>& uncertainty);
+    void uncertainty(const Window& window, const Plane<float>& albedo,
+                     const Plane<std::uint16_t>& flags, Plane<float>& uncertainty);
 
     /// Infinite numbers met in the inputs so far.
     [[nodiscard]] std::uint64_t infinities() const;

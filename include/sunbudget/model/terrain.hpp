@@ -17,7 +17,7 @@ struct Terrain {
     struct Flat {};           ///< planes level everywhere: roofs and streets of a surface model
     struct FromElevation {};  ///< planes from the elevation itself
 
-    std::vector<Source> elevation;  ///< what shades; the first that has a value gives it
+    std::vector<Source> elevation;         ///< what shades; the first that has a value gives it
     std::shared_ptr<const Change> raised;  ///< what has become of it; mostly nothing
     std::variant<FromElevation, Flat, std::vector<Source>> slope_from;
     int directions = 64;

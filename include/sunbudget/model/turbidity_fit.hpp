@@ -28,7 +28,8 @@ struct SunHour {
 /// The hours of a record: rows of at most an hour, the sun always above `lowest_elevation_rad`, every row of
 /// the hour measured.
 /// errors  Error(input) for rows longer than an hour and for a record without global and without beam
-[[nodiscard]] std::vector<SunHour> sun_hours(const WeatherRecord& record, const Station& station, double lowest_elevation_rad);
+[[nodiscard]] std::vector<SunHour> sun_hours(const WeatherRecord& record, const Station& station,
+                                             double lowest_elevation_rad);
 
 /// Means of an hour under esra2000.
 struct HourLight {
@@ -39,11 +40,12 @@ struct HourLight {
 /// The turbidity from 1 to 9 under which esra2000 comes nearest (least squares) to the hours' global light, or
 /// to their beam, which tells it best of a single hour.
 enum class FitTo { global, beam };
-[[nodiscard]] double fitted_turbidity(std::span<const SunHour> hours, double pressure_ratio, FitTo to);
+[[nodiscard]] double fitted_turbidity(std::span<const SunHour> hours, double pressure_ratio,
+                                      FitTo to);
 
 /// Turbidity of a month of any year.
 struct MonthTurbidity {
-    double turbidity = 0;  ///< median of the clear hours
+    double turbidity = 0;      ///< median of the clear hours
     double low = 0, high = 0;  ///< between them lie two thirds of the hours
     std::size_t hours = 0, days = 0;
 };

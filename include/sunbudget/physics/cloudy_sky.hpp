@@ -45,11 +45,12 @@ struct LightShare {
 
 /// Light of a row of pixels under a clear sky, to be dimmed.
 struct CloudyRow {
-    std::span<const float> index;                               ///< clear-sky index
-    std::span<const float> open_direct_w_m2, open_diffuse_w_m2; ///< on open level ground, clear sky
-    std::span<const float> sky_view;                            ///< empty: all of the sky is in view
-    std::span<float> direct_w_m2, diffuse_w_m2;                 ///< on the ground, in and out
-    std::span<float> reflected_w_m2;                            ///< in and out; may be empty
+    std::span<const float> index;  ///< clear-sky index
+    std::span<const float> open_direct_w_m2,
+        open_diffuse_w_m2;                       ///< on open level ground, clear sky
+    std::span<const float> sky_view;             ///< empty: all of the sky is in view
+    std::span<float> direct_w_m2, diffuse_w_m2;  ///< on the ground, in and out
+    std::span<float> reflected_w_m2;             ///< in and out; may be empty
 };
 
 /// Dims a row as clear_sky_index() says: beam and the clear sky's own light by their share of the time, the
@@ -64,7 +65,8 @@ void dim_row(const CloudyRow& row, double overcast) noexcept;
 ///
 /// in      sunshine over possible sunshine [0, 1]; the two coefficients
 /// source  Angstrom-Prescott as in FAO-56 eq. 35: a + b n/N, 0.25 and 0.50 where nothing is known
-[[nodiscard]] constexpr double angstrom_prescott(double sunshine_share, double a = 0.25, double b = 0.50) noexcept {
+[[nodiscard]] constexpr double angstrom_prescott(double sunshine_share, double a = 0.25,
+                                                 double b = 0.50) noexcept {
     return a + b * sunshine_share;
 }
 
@@ -101,6 +103,7 @@ struct SplitInput {
 /// source  our combination; measured in tests/model/measured_day_test.cpp
 [[nodiscard]] double hourly_diffuse_w_m2(const SplitInput& known) noexcept;
 /// The same of a day: Erbs et al. daily.
-[[nodiscard]] double daily_diffuse_w_m2(const SplitInput& known, double sunset_hour_angle_rad) noexcept;
+[[nodiscard]] double daily_diffuse_w_m2(const SplitInput& known,
+                                        double sunset_hour_angle_rad) noexcept;
 
 }  // namespace sunbudget

@@ -15,7 +15,8 @@ namespace sunbudget {
 /// shape   two rows of the same length, which may be one
 /// nodata  NaN through
 /// errors  float: within 1e-5 of the above from 200 to 330 K
-void saturation_vapour_pressure(std::span<const float> temperature_k, std::span<float> pressure_hpa) noexcept;
+void saturation_vapour_pressure(std::span<const float> temperature_k,
+                                std::span<float> pressure_hpa) noexcept;
 
 /// The temperature at which air of that vapour pressure is saturated: the exact inverse of the above.
 ///

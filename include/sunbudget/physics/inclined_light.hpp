@@ -16,8 +16,8 @@ namespace sunbudget {
 ///
 /// which is S where the places agree, 0 in full shadow, and P_up exactly on open level ground.
 struct SunlightRow {
-    std::span<const float> shaded;        ///< S
-    std::span<const float> hours;         ///< in the sun
+    std::span<const float> shaded;                        ///< S
+    std::span<const float> hours;                         ///< in the sun
     float whole_east = 0, whole_north = 0, whole_up = 0;  ///< V
     float whole_hours = 0;
     std::span<const float> east, north, up;  ///< P, each pixel's own
@@ -40,14 +40,17 @@ void sunlight(const SunlightRow& row, const NormalRow& normal, std::span<float> 
 struct SkyLightRow {
     std::span<const float> sky_view, diffuse, rim, circumsolar, circumsolar_up;
 };
-void skylight(const SkyLightRow& row, std::span<const float> normal_up, std::span<float> out) noexcept;
+void skylight(const SkyLightRow& row, std::span<const float> normal_up,
+              std::span<float> out) noexcept;
 
 /// Light sent up by the ground in view: (1 - sky view) * albedo seen * global on open level ground.
-void light_from_ground(std::span<const float> sky_view, std::span<const float> albedo_seen, std::span<const float> direct_open,
-                       std::span<const float> diffuse_open, std::span<float> out) noexcept;
+void light_from_ground(std::span<const float> sky_view, std::span<const float> albedo_seen,
+                       std::span<const float> direct_open, std::span<const float> diffuse_open,
+                       std::span<float> out) noexcept;
 
 /// Share of the sunlit time in the sun times the open ground's own: hours / whole_hours * open.
-void time_in_sun(std::span<const float> hours, float whole_hours, std::span<const float> open, std::span<float> out) noexcept;
+void time_in_sun(std::span<const float> hours, float whole_hours, std::span<const float> open,
+                 std::span<float> out) noexcept;
 
 /// Adds the light that goes to and fro between ground and sky to the sky's light on level ground.
 ///

@@ -9,6 +9,7 @@ namespace sunbudget {
 
 /// The resolved run for people: grid, inputs and how they map onto it, classes, time, methods with
 /// sources, layers, what was assumed, and what the run will take.
-[[nodiscard]] std::string check_text(const Run& run, const Estimate& estimate, bool scanned_everything);
+[[nodiscard]] std::string check_text(const Run& run, const Estimate& estimate,
+                                     bool scanned_everything);
 
 }  // namespace sunbudget

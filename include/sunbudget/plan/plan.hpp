@@ -206,7 +206,8 @@ using PlanSkyNumbers = std::variant<Monthly, PlanRaster>;
 
 struct PlanSky {
     Maybe<std::string> model;
-    std::array<Maybe<PlanSkyNumbers>, sky_parameter_count> parameters;  ///< in the order of SkyParameter
+    std::array<Maybe<PlanSkyNumbers>, sky_parameter_count>
+        parameters;  ///< in the order of SkyParameter
     Maybe<std::string> diffuse;
     Maybe<double> uncertainty;  ///< relative, of the light
 
@@ -285,13 +286,16 @@ struct PlanWeather {
     Maybe<PlanPressures> pressure;  ///< numbers alone
     Maybe<PressureAt> pressure_at;
     friend bool operator==(const PlanWeather& a, const PlanWeather& b) {
-        return a.table == b.table && a.columns == b.columns && a.units == b.units && a.flags == b.flags &&
-               a.good_flags == b.good_flags && a.missing == b.missing && a.separator == b.separator &&
-               a.decimal == b.decimal && a.header == b.header && a.skip == b.skip && a.comment == b.comment &&
-               a.time_form == b.time_form && a.stamp == b.stamp && a.interval_s == b.interval_s && a.zone == b.zone &&
+        return a.table == b.table && a.columns == b.columns && a.units == b.units &&
+               a.flags == b.flags && a.good_flags == b.good_flags && a.missing == b.missing &&
+               a.separator == b.separator && a.decimal == b.decimal && a.header == b.header &&
+               a.skip == b.skip && a.comment == b.comment && a.time_form == b.time_form &&
+               a.stamp == b.stamp && a.interval_s == b.interval_s && a.zone == b.zone &&
                a.years == b.years && a.gaps == b.gaps && a.station == b.station &&
-               a.station_elevation == b.station_elevation && a.air_temperature == b.air_temperature &&
-               a.air_temperature_max == b.air_temperature_max && a.air_temperature_min == b.air_temperature_min &&
+               a.station_elevation == b.station_elevation &&
+               a.air_temperature == b.air_temperature &&
+               a.air_temperature_max == b.air_temperature_max &&
+               a.air_temperature_min == b.air_temperature_min &&
                a.relative_humidity == b.relative_humidity && a.dew_point == b.dew_point &&
                a.vapour_pressure == b.vapour_pressure && a.lapse == b.lapse && a.wind == b.wind &&
                a.pressure == b.pressure && a.pressure_at == b.pressure_at;
@@ -323,12 +327,13 @@ struct PlanSurfaceRaster {
     std::string unit;                       ///< K or degC; empty: as the product or the file says
     std::optional<double> scale;
     std::optional<double> offset;
-    std::string time;                       ///< an instant with its offset; empty: as the product says
+    std::string time;  ///< an instant with its offset; empty: as the product says
     RasterCovers covers = RasterCovers::instant;
     friend bool operator==(const PlanSurfaceRaster&, const PlanSurfaceRaster&) = default;
 };
 struct PlanSurfaceTemperature {
-    std::variant<Monthly, SurfaceTable, PlanSurfaceRaster, PlanDifference, HeatSource> value;  ///< numbers in K
+    std::variant<Monthly, SurfaceTable, PlanSurfaceRaster, PlanDifference, HeatSource>
+        value;  ///< numbers in K
     friend bool operator==(const PlanSurfaceTemperature&, const PlanSurfaceTemperature&) = default;
 };
 
@@ -366,12 +371,13 @@ struct PlanOutputs {
 struct PlanZones {
     Place place;
     Given<PlanPath> file;
-    Maybe<std::string> layer;  ///< of the file
-    Maybe<std::string> id;     ///< a field, or "fid"
+    Maybe<std::string> layer;            ///< of the file
+    Maybe<std::string> id;               ///< a field, or "fid"
     std::vector<Given<LayerId>> layers;  ///< each once; empty: every layer of the run
     Maybe<double> above;
     friend bool operator==(const PlanZones& a, const PlanZones& b) {
-        return a.file == b.file && a.layer == b.layer && a.id == b.id && a.layers == b.layers && a.above == b.above;
+        return a.file == b.file && a.layer == b.layer && a.id == b.id && a.layers == b.layers &&
+               a.above == b.above;
     }
 };
 
@@ -383,7 +389,8 @@ struct PlanWhere {
     Maybe<std::string> query;  ///< an SQL WHERE clause
     Maybe<std::vector<int>> classes;
     friend bool operator==(const PlanWhere& a, const PlanWhere& b) {
-        return a.file == b.file && a.layer == b.layer && a.query == b.query && a.classes == b.classes;
+        return a.file == b.file && a.layer == b.layer && a.query == b.query &&
+               a.classes == b.classes;
     }
 };
 
@@ -419,8 +426,9 @@ struct PlanChange {
     Maybe<double> lifetime;
     Maybe<double> cost;
     friend bool operator==(const PlanChange& a, const PlanChange& b) {
-        return a.name == b.name && a.where == b.where && a.albedo == b.albedo && a.to_class == b.to_class && a.emissivity == b.emissivity &&
-               a.height == b.height && a.treatable == b.treatable && a.lifetime == b.lifetime && a.cost == b.cost;
+        return a.name == b.name && a.where == b.where && a.albedo == b.albedo &&
+               a.to_class == b.to_class && a.emissivity == b.emissivity && a.height == b.height &&
+               a.treatable == b.treatable && a.lifetime == b.lifetime && a.cost == b.cost;
     }
 };
 
@@ -457,9 +465,10 @@ struct Plan {
     /// Same values; where they stand does not matter.
     friend bool operator==(const Plan& a, const Plan& b) {
         return a.title == b.title && a.grid == b.grid && a.surface == b.surface &&
-               a.terrain == b.terrain && a.sky == b.sky && a.weather == b.weather && a.longwave == b.longwave &&
-               a.surface_temperature == b.surface_temperature && a.time == b.time &&
-               a.outputs == b.outputs && a.zones == b.zones && a.changes == b.changes && a.report == b.report && a.engine == b.engine;
+               a.terrain == b.terrain && a.sky == b.sky && a.weather == b.weather &&
+               a.longwave == b.longwave && a.surface_temperature == b.surface_temperature &&
+               a.time == b.time && a.outputs == b.outputs && a.zones == b.zones &&
+               a.changes == b.changes && a.report == b.report && a.engine == b.engine;
     }
 };
 

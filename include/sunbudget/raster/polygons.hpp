@@ -37,11 +37,11 @@ struct PolygonFile {
 /// One feature on a grid.
 struct Polygon {
     std::int64_t fid = 0;
-    std::string id;   ///< the chosen field as text, else the fid
-    Rings rings;      ///< in pixels of the grid
+    std::string id;  ///< the chosen field as text, else the fid
+    Rings rings;     ///< in pixels of the grid
     double area_px = 0;
     double left = 0, top = 0, right = 0, bottom = 0;  ///< around the rings
-    std::vector<double> numbers;  ///< the fields asked for; NaN where null
+    std::vector<double> numbers;                      ///< the fields asked for; NaN where null
 };
 
 /// Fills in area and bounds from the rings.
@@ -61,7 +61,8 @@ struct Polygons {
 /// course in the grid's CRS; invalid shapes are repaired and named in the notes; features without an area, or without
 /// a place in the grid's CRS, are left out and named.
 /// Throws Error(input) as inspect_polygons does, and for fields that are not there or hold no numbers.
-[[nodiscard]] Polygons read_polygons(const PolygonName& name, const Grid& grid, const PolygonsWanted& wanted);
+[[nodiscard]] Polygons read_polygons(const PolygonName& name, const Grid& grid,
+                                     const PolygonsWanted& wanted);
 
 /// A column of a table of figures for features.
 struct FeatureColumn {
@@ -80,8 +81,8 @@ struct FeatureRow {
 ///
 /// in      row  gives row i of `rows`, any order; several rows may share a feature
 /// errors  Error(output)
-void write_features(const std::filesystem::path& file, const PolygonName& shapes, const std::string& layer,
-                    std::span<const FeatureColumn> columns, std::size_t rows,
-                    const std::function<FeatureRow(std::size_t)>& row);
+void write_features(const std::filesystem::path& file, const PolygonName& shapes,
+                    const std::string& layer, std::span<const FeatureColumn> columns,
+                    std::size_t rows, const std::function<FeatureRow(std::size_t)>& row);
 
 }  // namespace sunbudget

@@ -59,15 +59,19 @@ struct Layer {
     bool needs_albedo = false;
     bool needs_terrain = false;
     bool of_changes = false;  ///< comes with a change; no plan asks for it by name
-    bool needs_air = false;         ///< temperature and humidity
+    bool needs_air = false;   ///< temperature and humidity
     bool needs_surface_temperature = false;
     bool needs_emissivity = false;
     bool needs_albedo_uncertainty = false;
 
     /// Made from air, emissivity or the ground's temperature.
-    [[nodiscard]] bool is_heat() const { return needs_air || needs_surface_temperature || needs_emissivity; }
+    [[nodiscard]] bool is_heat() const {
+        return needs_air || needs_surface_temperature || needs_emissivity;
+    }
     /// One band a period; otherwise one band.
-    [[nodiscard]] bool needs_time() const { return needs_sun || needs_air || needs_surface_temperature; }
+    [[nodiscard]] bool needs_time() const {
+        return needs_sun || needs_air || needs_surface_temperature;
+    }
 };
 
 /// In the order of LayerId.
