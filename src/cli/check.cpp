@@ -3,6 +3,8 @@
 #include <chrono>
 #include <memory>
 
+#include <CLI/App.hpp>
+
 #include "context.hpp"
 #include "sunbudget/engine/estimate.hpp"
 #include "sunbudget/plan/check.hpp"
@@ -21,11 +23,7 @@ void add_check(CLI::App& app) {
     auto* command = app.add_subcommand(
         "check", "Validate a plan and its inputs, show the resolved run and what it will take");
     command->add_option("PLAN", flags->plan, "The plan file")->required();
-    command->add_option("--set", flags->set, "Change a key of the plan; may be repeated")
-        ->type_name("key.path=value")
-        ->expected(1)
-        ->take_all()
-        ->allow_extra_args(false);
+    add_set_flag(*command, flags->set);
     command->add_flag("--full", flags->full,
                       "Count the classes of every pixel, not of a sample of blocks");
     add_common_flags(*command, flags->common);

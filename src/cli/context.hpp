@@ -6,10 +6,12 @@
 #include <string>
 #include <vector>
 
-#include <CLI/App.hpp>
-
 #include "sunbudget/plan/plan.hpp"
 #include "terminal.hpp"
+
+namespace CLI {
+class App;
+}
 
 namespace sunbudget {
 
@@ -26,6 +28,9 @@ struct Common {
 };
 
 void add_common_flags(CLI::App& command, Common& common);
+/// --set, for changes of a plan's keys.
+void add_set_flag(CLI::App& command, std::vector<std::string>& set,
+                  const std::string& text = "Change a key of the plan; may be repeated");
 
 /// Prepares this process for reading rasters: GDAL's set-up and cache.
 void prepare(const Common& common);

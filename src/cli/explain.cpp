@@ -3,6 +3,8 @@
 #include <cmath>
 #include <memory>
 
+#include <CLI/App.hpp>
+
 #include "context.hpp"
 #include "sunbudget/base/text.hpp"
 #include "sunbudget/plan/resolve.hpp"
@@ -87,11 +89,7 @@ void add_explain(CLI::App& app) {
         ->add_option("--crs", flags->crs,
                      "What --at is in: EPSG:4326 for longitude,latitude [the grid's CRS]")
         ->type_name("EPSG:N");
-    command->add_option("--set", flags->set, "Change a key of the plan; may be repeated")
-        ->type_name("key.path=value")
-        ->expected(1)
-        ->take_all()
-        ->allow_extra_args(false);
+    add_set_flag(*command, flags->set);
     command->add_flag("--json", flags->json,
                       "As JSON: every term of every period, units in the names");
     add_common_flags(*command, flags->common);

@@ -7,6 +7,8 @@
 #include <iterator>
 #include <memory>
 
+#include <CLI/App.hpp>
+
 #include "context.hpp"
 #include "sunbudget/base/parallel.hpp"
 #include "sunbudget/base/text.hpp"
@@ -50,6 +52,14 @@ void add_common_flags(CLI::App& command, Common& common) {
     command.add_flag("--quiet", common.quiet, "Warnings and errors only; no progress bar");
     command.add_flag("--allow-network", common.allow_network,
                      "Let inputs name GDAL's network and archive paths");
+}
+
+void add_set_flag(CLI::App& command, std::vector<std::string>& set, const std::string& text) {
+    command.add_option("--set", set, text)
+        ->type_name("key.path=value")
+        ->expected(1)
+        ->take_all()
+        ->allow_extra_args(false);
 }
 
 void prepare(const Common& common) {
@@ -167,13 +177,8 @@ void add_run(CLI::App& app) {
     command->add_option("PLAN", flags->plan, "The plan file")->required();
     command->add_option("--out", flags->run.out, "Output folder, instead of the plan's")
         ->type_name("DIR");
-    command
-        ->add_option("--set", flags->set,
-                     "Change a key of the plan: time.step=\"5 min\"; may be repeated")
-        ->type_name("key.path=value")
-        ->expected(1)
-        ->take_all()
-        ->allow_extra_args(false);
+    add_set_flag(*command, flags->set,
+                 "Change a key of the plan: time.step=\"5 min\"; may be repeated");
     command->add_flag(
         "--fresh", flags->run.fresh,
         "Do it again where the folder holds a complete run; replace another run's results");

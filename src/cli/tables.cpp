@@ -2,6 +2,8 @@
 
 #include <memory>
 
+#include <CLI/App.hpp>
+
 #include "context.hpp"
 #include "sunbudget/tables/print.hpp"
 

@@ -4,6 +4,8 @@
 #include <filesystem>
 #include <memory>
 
+#include <CLI/App.hpp>
+
 #include "context.hpp"
 #include "sunbudget/base/text.hpp"
 #include "sunbudget/decide/zone_table.hpp"

@@ -5,7 +5,6 @@
 
 #include "resolve_parts.hpp"
 #include "sunbudget/base/digest.hpp"
-#include "sunbudget/raster/finish.hpp"
 #include "sunbudget/raster/grid_build.hpp"
 
 namespace sunbudget {
@@ -45,14 +44,15 @@ class ChangeResolver {
         find_albedo();
         find_heat();
         find_classes();
-        add(change_);
+        const auto text = described();
+        add_change(run_, change_, text);
         for (const auto& [case_name, albedo] : cases_) {
             auto other = change_;
             other.case_name = case_name;
             set_albedo(other, albedo);
-            add(std::move(other));
+            add_change(run_, std::move(other), text);
         }
-        run_.assumptions.push_back(described());
+        run_.assumptions.push_back(text);
     }
 
   private:
@@ -66,8 +66,8 @@ class ChangeResolver {
     [[nodiscard]] static CodeValues changed(const Change& change, ClassValues values,
                                             double treated);
     void set_albedo(Change& change, double albedo) const;
-    void add(Change change);
-    void add_layer(std::size_t base, std::size_t change, bool saved);
+    [[nodiscard]] std::string albedo_words() const;
+    [[nodiscard]] std::string height_words() const;
     [[nodiscard]] std::string described() const;
 
     const Plan& plan_;
@@ -194,9 +194,7 @@ void ChangeResolver::find_classes() {
                 Cause::usage,
                 fmt::format("the table {} has no class {} with an albedo", table_->name(), code),
                 {}, fmt::format("see \"sunbudget tables {}\"", table_->name()));
-    const auto* cover = std::get_if<CoverSurface>(&run_.surface);
-    const auto* image = std::get_if<ReflectanceSurface>(&run_.surface);
-    if (cover == nullptr) cover = &*image->fill;
+    const auto* cover = cover_of(run_);
     auto listed = class_albedo_;
     for (auto& [code, value] : listed)
         value = std::ranges::find(wanted, code) != wanted.end() ? 1.0f : 0.0f;
@@ -226,114 +224,31 @@ void ChangeResolver::set_albedo(Change& change, double albedo) const {
     change.classes->albedo_after = changed(change, class_albedo_, albedo);
 }
 
-/// Whether a layer shows the change, and whether what is saved of it has a meaning.
-struct Shows {
-    bool after = false, saved = false;
-};
-
-Shows shows(const Change& change, const Layer& layer, const Run& run) {
-    if (!change.case_name.empty()) return {false, layer.id == LayerId::net_shortwave};
-    const auto both = [](bool shown) { return Shows{shown, shown}; };
-    const bool terrain = run.terrain.has_value(), raised = change.height.has_value();
-    const bool ground_lights_sky = waits_for_ground(run.sky);
-    const bool lights = raised || change.albedo, emits = change.emissivity.has_value();
-    const bool balanced = run.heat.surface == SurfaceFrom::balance;
-    const bool warms = raised || emits || (balanced && (change.albedo || change.dry));
-    switch (layer.id) {
-        case LayerId::albedo:
-            return {change.albedo.has_value(), false};
-        case LayerId::emissivity:
-            return {emits, false};
-        case LayerId::sri:
-            return {lights || emits || change.dry, false};
-        case LayerId::net_shortwave:
-            return both(lights);
-        case LayerId::insolation:
-            return both(lights && (terrain || ground_lights_sky));
-        case LayerId::reflected:
-            return both(lights && terrain);
-        case LayerId::diffuse:
-            return both(raised || (lights && ground_lights_sky));
-        case LayerId::direct:
-        case LayerId::sunlit_hours:
-        case LayerId::longwave_down:
-            return both(raised);
-        case LayerId::longwave_up:
-        case LayerId::net_longwave:
-            return both(warms);
-        case LayerId::net_radiation:
-            return both(lights || warms);
-        case LayerId::surface_temperature:
-            return both(balanced ? warms : raised && run.heat.surface == SurfaceFrom::air);
-        case LayerId::sky_view:
-            return {raised, false};
-        default:
-            return {};
-    }
+std::string ChangeResolver::albedo_words() const {
+    auto text = fmt::format("albedo {:.6g}", *change_.albedo);
+    if (wanted_.albedo && !wanted_.albedo->aged)
+        text += fmt::format(", aged from {} after 0.20 + 0.70 (initial - 0.20)",
+                            shortest(**wanted_.albedo->initial));
+    if (wanted_.to_class) text += fmt::format(" of class {}", **wanted_.to_class);
+    return text;
 }
 
-void ChangeResolver::add(Change change) {
-    const auto number = run_.changes.size();
-    run_.changes.push_back(std::move(change));
-    const auto& added = run_.changes.back();
-    if (added.case_name.empty()) {
-        auto treated = output_layer(layer(LayerId::treated), run_);
-        treated.file.name += "__" + added.name;
-        treated.changed = ChangedLayer{number, false, 0};
-        run_.layers.push_back(std::move(treated));
-    }
-    const auto count = run_.layers.size();
-    for (std::size_t n = 0; n < count; ++n) {
-        if (run_.layers[n].changed) continue;
-        const auto [after, saved] = shows(added, *run_.layers[n].layer, run_);
-        if (after) add_layer(n, number, false);
-        if (saved) add_layer(n, number, true);
-    }
-}
-
-void ChangeResolver::add_layer(std::size_t base, std::size_t change, bool saved) {
-    auto added = run_.layers[base];
-    const auto& made = run_.changes[change];
-    added.changed = ChangedLayer{change, saved, base};
-    auto& file = added.file;
-    file.name += "__" + made.name;
-    if (saved) file.name += made.case_name.empty() ? "__saved" : "__saved_" + made.case_name;
-    file.metadata["change"] = described();
-    if (!made.case_name.empty())
-        file.metadata["case"] = fmt::format("{} albedo, {:.6g}", made.case_name, *made.albedo);
-    if (saved) {
-        file.metadata["layer"] =
-            "what the change saves: before less after; negative where there is more after";
-        if (added.layer->quantity == Quantity::temperature) file.unit = "K";  // a difference
-        for (auto& band : file.bands) band.metadata.erase("standard_name");
-    }
-    check_layer(file);
-    run_.layers.push_back(std::move(added));
+std::string ChangeResolver::height_words() const {
+    const auto& height = *change_.height;
+    if (height.add_m) return "heights " + shortest(*height.add_m) + " m more";
+    if (height.add_numbers) return "heights more by " + **wanted_.height->attribute;
+    return "heights of " + (**wanted_.height->raster).path.file.filename().string();
 }
 
 std::string ChangeResolver::described() const {
-    std::string text = "change " + change_.name + ": ";
     std::vector<std::string> parts;
-    if (change_.albedo) {
-        parts.push_back(fmt::format("albedo {:.6g}", *change_.albedo));
-        if (wanted_.albedo && !wanted_.albedo->aged)
-            parts.back() += fmt::format(", aged from {} after 0.20 + 0.70 (initial - 0.20)",
-                                        shortest(**wanted_.albedo->initial));
-        if (wanted_.to_class) parts.back() += fmt::format(" of class {}", **wanted_.to_class);
-    }
+    if (change_.albedo) parts.push_back(albedo_words());
     if (change_.emissivity) {
         parts.push_back("emissivity " + shortest(*change_.emissivity));
         if (!wanted_.emissivity) parts.back() += fmt::format(" of class {}", **wanted_.to_class);
     }
-    if (change_.height) {
-        const auto& height = *change_.height;
-        parts.push_back(height.add_m ? "heights " + shortest(*height.add_m) + " m more"
-                        : height.add_numbers
-                            ? "heights more by " + **wanted_.height->attribute
-                            : "heights of " +
-                                  (**wanted_.height->raster).path.file.filename().string());
-    }
-    text += joined(parts, "; ");
+    if (change_.height) parts.push_back(height_words());
+    auto text = "change " + change_.name + ": " + joined(parts, "; ");
     if (change_.treatable < 1)
         text += fmt::format("; on {} % of the place", shortest(change_.treatable * 100));
     if (change_.where)

@@ -36,6 +36,9 @@ void add_input(Run& run, const std::string& role, const Source& source);
 /// The middle of the grid, or 0, 0 where its projection has no answer there.
 [[nodiscard]] Geodetic middle_of(const Grid& grid);
 
+/// The land cover that is the surface, or that fills what an image does not show; or none.
+[[nodiscard]] const CoverSurface* cover_of(const Run& run);
+
 /// What the files of an image's albedo say of it.
 [[nodiscard]] std::map<std::string, std::string> reflectance_metadata(
     const ReflectanceSurface& surface);
@@ -81,6 +84,8 @@ void resolve_layers(const Plan& plan, Run& run, RunProblems& problems);
 /// After the layers, to which it adds those of the changes.
 void resolve_changes(const Plan& plan, const ResolveOptions& options, Run& run,
                      RunProblems& problems);
+/// Adds a change, or a case of it, and the layers that show it.
+void add_change(Run& run, Change change, const std::string& described);
 /// Adds the slope to the layers where zones need it.
 void resolve_zones(const Plan& plan, Run& run, RunProblems& problems);
 

@@ -214,6 +214,12 @@ void resolve_given(const PlanAlbedo& plan, const ResolveOptions& options, Run& r
 
 }  // namespace
 
+const CoverSurface* cover_of(const Run& run) {
+    if (const auto* cover = std::get_if<CoverSurface>(&run.surface)) return cover;
+    const auto* image = std::get_if<ReflectanceSurface>(&run.surface);
+    return image != nullptr && image->fill ? &*image->fill : nullptr;
+}
+
 void resolve_surface(const Plan& plan, const ResolveOptions& options, Run& run,
                      RunProblems& problems) {
     if (plan.surface.cover) resolve_cover(*plan.surface.cover, options, run, problems);

@@ -9,53 +9,11 @@
 #include "names.hpp"
 #include "sunbudget/base/digest.hpp"
 #include "sunbudget/base/text.hpp"
-#include "tree.hpp"
+#include "yaml_text.hpp"
 
 namespace sunbudget {
 
 namespace {
-
-// ---- scalars ----
-
-// Only what no YAML reader, old or new, could take for anything but this text goes without quotes.
-bool is_plain(std::string_view text) {
-    constexpr std::array<std::string_view, 10> words{"null", "true", "false", "yes", "no",
-                                                     "on",   "off",  "y",     "n",   "~"};
-    const auto is_safe = [](char c) {
-        return std::isalnum(static_cast<unsigned char>(c)) != 0 ||
-               static_cast<unsigned char>(c) >= 0x80 ||
-               std::string_view(" _./+-:").find(c) != std::string_view::npos;
-    };
-    if (text.empty() || !std::ranges::all_of(text, is_safe)) return false;
-    if (std::string_view(" +-:").find(text.front()) != text.npos) return false;
-    if (text.back() == ' ' || text.back() == ':' || text.find(": ") != text.npos) return false;
-    return plain_kind(text) == Plain::text &&
-           std::ranges::find(words, lower_case(text)) == words.end();
-}
-
-std::string double_quoted(std::string_view text) {
-    std::string quoted = "\"";
-    for (const char c : text) {
-        if (c == '"' || c == '\\') quoted += '\\';
-        quoted += c;
-    }
-    return quoted + "\"";
-}
-
-Node scalar(std::string text, bool quoted) {
-    Node node;
-    node.shape = Node::Shape::scalar;
-    node.text = std::move(text);
-    node.quoted = quoted;
-    return node;
-}
-Node text_node(std::string text) {
-    const bool quoted = !is_plain(text);
-    return scalar(std::move(text), quoted);
-}
-Node number_node(double value) {
-    return scalar(shortest(value), false);
-}
 
 std::string clock_text(double seconds_of_day) {
     const auto minutes = static_cast<int>(seconds_of_day / 60);
@@ -86,8 +44,6 @@ std::string duration_text(int duration_s) {
     if (duration_s % 60 == 0) return std::to_string(duration_s / 60) + " min";
     return std::to_string(duration_s) + " s";
 }
-
-// ---- the visitor ----
 
 struct Style {
     std::filesystem::path folder;  ///< paths are written from here; empty: as given
@@ -321,52 +277,16 @@ Node Writer::node_of(const PlanSurfaceTemperature& surface) const {
 }
 
 Node Writer::node_of(const NamedPeriod& period) const {
-    Node node;
-    node.shape = Node::Shape::map;
-    const auto put = [&](const char* name, Node value) {
-        value.key = name;
-        node.children.push_back(std::move(value));
-    };
-    put("name", node_of(period.name));
-    put("from", node_of(period.from));
-    put("to", node_of(period.to));
-    return node;
-}
-
-// ---- the text ----
-
-std::string flow(const Node& node) {
-    if (node.shape == Node::Shape::scalar)
-        return node.quoted ? double_quoted(node.text) : node.text;
-    std::vector<std::string> parts;
-    for (const auto& child : node.children)
-        parts.push_back((child.key.empty() ? "" : child.key + ": ") + flow(child));
-    const auto inside = joined(parts, ", ");
-    return node.shape == Node::Shape::list ? "[" + inside + "]" : "{" + inside + "}";
-}
-
-void print(const Node& map, const std::string& indent, std::string& text) {
-    for (const auto& child : map.children) {
-        text += indent + child.key + ":";
-        if (child.shape == Node::Shape::map) {
-            text += "\n";
-            print(child, indent + "  ", text);
-        } else if (!child.children.empty() && child.children[0].shape == Node::Shape::map) {
-            text += "\n";
-            for (const auto& item : child.children) text += indent + "  - " + flow(item) + "\n";
-        } else {
-            text += " " + flow(child) + "\n";
-        }
-    }
+    return map_of({{"name", node_of(period.name)},
+                   {"from", node_of(period.from)},
+                   {"to", node_of(period.to)}});
 }
 
 std::string written(const Plan& plan, Style style) {
     Writer writer(std::move(style));
     writer.add("sunbudget", number_node(1));
     visit_plan(plan, writer);
-    std::string text;
-    print(writer.root(), "", text);
-    return text;
+    return yaml_of(writer.root());
 }
 
 }  // namespace

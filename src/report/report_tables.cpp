@@ -7,6 +7,7 @@
 
 #include "charts.hpp"
 #include "html.hpp"
+#include "layer_words.hpp"
 #include "quality_counts.hpp"
 #include "sunbudget/base/text.hpp"
 #include "sunbudget/report/run_json.hpp"
@@ -93,21 +94,6 @@ std::string section(const std::string& id, const std::string& title, const std::
         "<section id=\"{0}\" aria-labelledby=\"{0}-title\">\n<h2 "
         "id=\"{0}-title\">{1}</h2>\n{2}</section>\n",
         id, title, content);
-}
-
-std::string words_for(const std::string& layer) {
-    const auto spaced = [](std::string text) {
-        std::ranges::replace(text, '_', ' ');
-        return text;
-    };
-    const auto mark = layer.find("__");
-    if (mark == layer.npos) return spaced(layer);
-    constexpr std::string_view saved = "__saved";
-    auto change = layer.substr(mark + 2);
-    const auto base = spaced(layer.substr(0, mark));
-    const auto at = change.find(saved);
-    if (at == change.npos) return base + " with " + change;
-    return base + " saved by " + change.substr(0, at) + spaced(change.substr(at + saved.size()));
 }
 
 std::string figures_section(const Run& run, const Execution& execution) {

@@ -20,7 +20,4 @@ namespace sunbudget {
 [[nodiscard]] std::string section(const std::string& id, const std::string& title,
                                   const std::string& content);
 
-/// "net shortwave" of net_shortwave; of a change "net shortwave with pale-roofs", "... saved by pale-roofs".
-[[nodiscard]] std::string words_for(const std::string& layer);
-
 }  // namespace sunbudget

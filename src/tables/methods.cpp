@@ -343,6 +343,13 @@ std::vector<std::string> method_names(std::string_view family) {
     return names;
 }
 
+std::vector<std::string> methods_with(std::string_view family, std::string_view parameter) {
+    std::vector<std::string> names;
+    for (const auto& row : table())
+        if (row.family == family && row.parameter(parameter) != nullptr) names.push_back(row.name);
+    return names;
+}
+
 const Method& method(std::string_view family, std::string_view name) {
     for (const auto& row : table())
         if (row.family == family && row.name == name) return row;

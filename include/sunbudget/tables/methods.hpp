@@ -52,6 +52,9 @@ struct Method {
 [[nodiscard]] std::vector<std::string> method_families();
 /// Empty for a family that does not exist.
 [[nodiscard]] std::vector<std::string> method_names(std::string_view family);
+/// Those of a family that have the parameter.
+[[nodiscard]] std::vector<std::string> methods_with(std::string_view family,
+                                                    std::string_view parameter);
 /// Throws Error(usage) with a suggestion when the family has no such method.
 [[nodiscard]] const Method& method(std::string_view family, std::string_view name);
 

@@ -1,26 +1,20 @@
-#include "sunbudget/report/explain.hpp"
-
 #include <fmt/format.h>
 
 #include <algorithm>
 #include <cmath>
-#include <nlohmann/json.hpp>
 
+#include "explain_parts.hpp"
 #include "sun_way.hpp"
 #include "sunbudget/base/text.hpp"
 #include "sunbudget/base/units.hpp"
-#include "sunbudget/base/version.hpp"
 #include "sunbudget/raster/grid_build.hpp"
+#include "sunbudget/report/explain.hpp"
 #include "sunbudget/tables/quality.hpp"
 
 namespace sunbudget {
 
 namespace {
 
-using Json = nlohmann::ordered_json;
-
-/// Days whose sun is followed: a year of months, no more.
-constexpr std::size_t most_ways = 12;
 /// Periods that stand beside each other in text.
 constexpr std::size_t most_columns = 6;
 
@@ -32,49 +26,10 @@ std::string number(double value) {
                                                 : fmt::format("{}", value);
 }
 
-Json json_number(double value) {
-    return std::isnan(value) ? Json(nullptr) : Json(value);
-}
-
-std::string with_unit(const std::string& name, const std::string& unit) {
-    if (unit == "1" || (unit == "h" && name.ends_with("hours"))) return name;
-    if (unit == "degree") return name + "_deg";
-    auto suffix = lower_case(unit);
-    std::ranges::replace(suffix, '/', '_');
-    return name + "_" + suffix;
-}
-
-std::string band_name(const Run& run, std::size_t band) {
-    return run.times->instant ? format_utc(*run.times->instant) : run.times->periods[band].name;
-}
-
-const ClassUse* class_of(const Run& run, const InputPixel& input) {
-    if (input.file->role != "surface.cover.raster" || !input.value) return nullptr;
-    const auto found =
-        std::ranges::find(run.classes, static_cast<int>(*input.value), &ClassUse::code);
-    return found == run.classes.end() ? nullptr : &*found;
-}
-
 std::string range_text(const ClassUse& use) {
     return use.albedo_low
                ? fmt::format(", range {} to {}", number(*use.albedo_low), number(*use.albedo_high))
                : std::string();
-}
-
-/// Weight and reflectance of each band of an image: their products and the constant add up to the albedo.
-struct WeightedBand {
-    std::string name;
-    double weight;
-    double reflectance;
-};
-std::vector<WeightedBand> weighted_bands(const Run& run, const PixelAccount& account) {
-    std::vector<WeightedBand> bands;
-    if (const auto* image = std::get_if<ReflectanceSurface>(&run.surface))
-        for (const auto& band : image->bands)
-            for (const auto& input : account.inputs)
-                if (input.file->source->info().name == band.reflectance.info().name && input.value)
-                    bands.push_back({band.name, band.weight, *input.value});
-    return bands;
 }
 
 std::string grid_place(const Run& run, const PixelAccount& account) {
@@ -83,8 +38,6 @@ std::string grid_place(const Run& run, const PixelAccount& account) {
     return fmt::format("{:.10g}, {:.10g} in {}", run.grid.easting(column, row),
                        run.grid.northing(column, row), crs_name(run.grid.crs_wkt));
 }
-
-// ---- text ----
 
 std::string heading(const std::string& text) {
     return "\n" + text + "\n";
@@ -256,137 +209,12 @@ std::string methods_text(const Run& run) {
     return text;
 }
 
-// ---- JSON ----
-
-Json inputs_json(const Run& run, const PixelAccount& account) {
-    Json list = Json::array();
-    for (const auto& input : account.inputs) {
-        Json json{{"role", input.file->role},
-                  {"name", input.file->name},
-                  {"digest", input.file->digest},
-                  {"alignment", input.file->source->alignment_text()}};
-        if (input.place)
-            json["file_pixel"] = {std::floor(input.place->column), std::floor(input.place->row)};
-        json["number_in_file"] = input.raw ? Json(*input.raw) : Json(nullptr);
-        json["value"] = input.value ? Json(*input.value) : Json(nullptr);
-        if (const auto* use = class_of(run, input)) json["class"] = use->name;
-        list.push_back(std::move(json));
-    }
-    for (const auto& file : run.inputs)
-        if (!file.source)
-            list.push_back({{"role", file.role}, {"name", file.name}, {"digest", file.digest}});
-    return list;
-}
-
-Json albedo_json(const Run& run, const PixelAccount& account) {
-    Json json{{"came_from", quality_meanings(account.quality)}};
-    for (const auto& band : weighted_bands(run, account))
-        json["bands"].push_back(
-            {{"name", band.name}, {"weight", band.weight}, {"reflectance", band.reflectance}});
-    if (const auto* image = std::get_if<ReflectanceSurface>(&run.surface)) {
-        json["constant"] = image->weights.constant;
-        json["fit_error"] = image->weights.fit_error;
-    }
-    return json;
-}
-
-Json moment_json(const SunMoment& moment, const std::optional<bool>& seen) {
-    Json json{{"time", format_utc(moment.utc)},
-              {"elevation_deg", deg_from_rad(moment.elevation_rad)},
-              {"elevation_refracted_deg", deg_from_rad(moment.elevation_refracted_rad)},
-              {"azimuth_deg", deg_from_rad(moment.azimuth_rad)}};
-    json["above_horizon"] = seen ? Json(*seen) : Json(nullptr);
-    return json;
-}
-
-Json sun_json(const Run& run, const PixelAccount& account) {
-    Json list = Json::array();
-    for (const auto& way : sun_ways(run, account, most_ways)) {
-        Json json{{"period", band_name(run, way.band)},
-                  {"day", format_date(way.day.date)},
-                  {"day_length_h", way.day.day_length_s / 3600}};
-        json["moments"] = Json::array();
-        for (std::size_t i = 0; i < way.moments.size(); ++i)
-            json["moments"].push_back(moment_json(way.moments[i], way.seen[i]));
-        list.push_back(std::move(json));
-    }
-    return list;
-}
-
-Json horizon_json(const PixelAccount& account) {
-    Json list = Json::array();
-    for (const auto& point : account.probe.horizon())
-        list.push_back({{"azimuth_deg", deg_from_rad(point.azimuth_rad)},
-                        {"elevation_deg", json_number(deg_from_rad(std::atan(point.tangent)))}});
-    return list;
-}
-
-Json periods_json(const Run& run, const PixelAccount& account) {
-    Json list = Json::array();
-    for (std::size_t band = 0; run.times && band < run.times->bands(); ++band)
-        list.push_back({{"period", band_name(run, band)}});
-    for (const auto& term : account.probe.terms())
-        if (term.band)
-            list[*term.band]["terms"][with_unit(term.name, term.unit)] = json_number(term.value);
-    return list;
-}
-
-Json layers_json(const Run& run, const PixelAccount& account) {
-    Json json = Json::object();
-    for (std::size_t n = 0; n < run.layers.size(); ++n) {
-        const auto& file = run.layers[n].file;
-        Json bands = Json::array();
-        for (std::size_t band = 0; band < file.bands.size(); ++band)
-            bands.push_back({{"band", file.bands[band].description},
-                             {"value", json_number(account.layers[n][band])}});
-        json[file.name] = {{"unit", file.unit}, {"bands", std::move(bands)}};
-    }
-    return json;
-}
-
-Json terms_json(const PixelAccount& account) {
-    Json json = Json::object();
-    for (const auto& term : account.probe.terms())
-        if (!term.band) json[with_unit(term.name, term.unit)] = json_number(term.value);
-    return json;
-}
-
-Json methods_json(const Run& run) {
-    Json list = Json::array();
-    for (const auto* method : run.methods)
-        list.push_back(
-            {{"family", method->family}, {"name", method->name}, {"source", method->source}});
-    return list;
-}
-
 }  // namespace
 
 std::string explain_text(const Run& run, const PixelAccount& account) {
     return place_text(run, account) + inputs_text(run, account) + albedo_text(run, account) +
            sun_text(run, account) + terms_text(run, account) + layers_text(run, account) +
            methods_text(run);
-}
-
-std::string explain_json(const Run& run, const PixelAccount& account) {
-    Json json{
-        {"program", "sunbudget"}, {"version", program_version()}, {"plan_digest", run.plan_digest}};
-    json["pixel"] = {{"column", account.probe.column()},
-                     {"row", account.probe.row()},
-                     {"crs", crs_name(run.grid.crs_wkt)}};
-    if (account.place) {
-        json["pixel"]["latitude_deg"] = deg_from_rad(account.place->latitude_rad);
-        json["pixel"]["longitude_deg"] = deg_from_rad(account.place->longitude_rad);
-    }
-    json["inputs"] = inputs_json(run, account);
-    if (run.has_surface()) json["albedo"] = albedo_json(run, account);
-    json["sun"] = sun_json(run, account);
-    json["horizon"] = horizon_json(account);
-    json["terms"] = terms_json(account);
-    json["periods"] = periods_json(run, account);
-    json["layers"] = layers_json(run, account);
-    json["methods"] = methods_json(run);
-    json["assumptions"] = run.assumptions;
-    return json.dump(2, ' ', false, Json::error_handler_t::replace) + "\n";
 }
 
 }  // namespace sunbudget

@@ -1,0 +1,122 @@
+#include <fmt/format.h>
+
+#include <algorithm>
+#include <cmath>
+
+#include "heat_parts.hpp"
+#include "sunbudget/base/text.hpp"
+
+namespace sunbudget {
+
+namespace {
+
+/// The formula, the air, the ground's temperature where it comes in numbers, and the clouds.
+class LongwaveResolver : HeatPart {
+  public:
+    using HeatPart::HeatPart;
+    void resolve();
+
+  private:
+    [[nodiscard]] bool is_measured() const {
+        return plan_.longwave.method && **plan_.longwave.method == "measured";
+    }
+    void ground_numbers(Longwave& found) const;
+    void clouds(Longwave& found);
+};
+
+/// The ground's temperature, month by month.
+void LongwaveResolver::ground_numbers(Longwave& found) const {
+    const auto* months = std::get_if<Monthly>(&plan_.surface_temperature->value.value);
+    if (months == nullptr) return;
+    for (std::size_t month = 0; month < 12; ++month)
+        found.months[month].surface_k = (*months)[month];
+    for (auto& row : found.rows)
+        row.air.surface_k =
+            (*months)[static_cast<std::size_t>(Zone().local(row.span.begin).date.month - 1)];
+}
+
+void LongwaveResolver::clouds(Longwave& found) {
+    const auto law = plan_.longwave.cloud_method ? **plan_.longwave.cloud_method
+                                                 : method_names("longwave_cloud").front();
+    const Monthly* cloud = plan_.longwave.cloud ? &**plan_.longwave.cloud : nullptr;
+    if (cloud == nullptr && !run_.weather && plan_.sky.cloud) {
+        cloud = std::get_if<Monthly>(&**plan_.sky.cloud);
+        run_.assumptions.emplace_back(cloud != nullptr
+                                          ? "longwave.cloud: that of sky.cloud"
+                                          : "longwave.cloud: none, the sky counts as clear; "
+                                            "rasters of sky.cloud are of its light alone");
+    } else if (cloud == nullptr && !run_.weather) {
+        run_.assumptions.emplace_back("longwave.cloud: none, the sky counts as clear");
+    }
+    if (cloud == nullptr) return;
+    for (std::size_t month = 0; month < 12; ++month)
+        found.months[month].cloud =
+            cloud_terms(chosen<LongwaveCloud>("longwave_cloud", law), (*cloud)[month]);
+    for (auto& row : found.rows) {
+        const auto month = Zone().local((row.span.begin + row.span.end) / 2).date.month;
+        row.air.cloud = found.months[static_cast<std::size_t>(month - 1)].cloud;
+    }
+    run_.methods.push_back(&method("longwave_cloud", law));
+}
+
+void LongwaveResolver::resolve() {
+    const auto place = plan_.weather ? plan_.weather->place : Place{};
+    problems_.attempt(place, [&] {
+        // What was wrong with the weather or the time is said already.
+        if (!run_.times || !plan_.weather || (plan_.weather->table && !run_.weather)) return;
+        Longwave found;
+        const auto formula = plan_.longwave.method && !is_measured()
+                                 ? **plan_.longwave.method
+                                 : method_names("longwave").front();
+        found.formula = chosen<LongwaveFormula>("longwave", formula);
+        if (const auto& ground = plan_.surface_temperature)
+            if (const auto* above = std::get_if<PlanDifference>(&ground->value.value))
+                found.surface_above_air_k = above->k;
+        resolve_longwave_air(plan_, options_, run_, problems_, found);
+        if (plan_.surface_temperature) ground_numbers(found);
+        clouds(found);
+        if (!run_.weather && is_measured())
+            throw Error(Cause::usage, "there is no weather table with measured longwave", {},
+                        "choose a formula");
+        run_.methods.push_back(&method("longwave", formula));
+        if (run_.terrain)
+            run_.assumptions.emplace_back(
+                "longwave of the ground in view: a black body's at the pixel's own surface "
+                "temperature, where that is not known "
+                "or balanced at the air's");
+        run_.heat.longwave = std::move(found);
+        find_thin_bands(run_);
+    });
+}
+
+}  // namespace
+
+void find_thin_bands(Run& run) {
+    const auto& longwave = *run.heat.longwave;
+    if (longwave.rows.empty() && !longwave.daily) return;
+    const PointLongwave point(*run.times, longwave);
+    const double longitude_rad = middle_of(run.grid).longitude_rad;
+    std::vector<std::string> names;
+    for (std::size_t band = 0; band < run.times->bands(); ++band) {
+        const bool thin =
+            std::isnan(point.at(band, longitude_rad, longwave.height_m.value_or(0)).sky_w_m2);
+        run.heat.thin.push_back(thin);
+        if (thin)
+            names.push_back(run.times->instant ? format_utc(*run.times->instant)
+                                               : run.times->periods[band].name);
+    }
+    if (names.size() == run.times->bands())
+        throw Error(Cause::input,
+                    "too little is known of every period for longwave: " + joined(names, ", "), {},
+                    "choose a time that the weather table covers");
+    if (!names.empty())
+        run.warnings.push_back("longwave: no value where the weather table covers too little: " +
+                               joined(names, ", "));
+}
+
+void resolve_longwave(const Plan& plan, const ResolveOptions& options, Run& run,
+                      RunProblems& problems) {
+    LongwaveResolver(plan, options, run, problems).resolve();
+}
+
+}  // namespace sunbudget
