@@ -3,6 +3,7 @@
 #include <algorithm>
 #include <functional>
 
+#include "planes.hpp"
 #include "sunbudget/model/neighbourhood.hpp"
 #include "sunbudget/physics/height_patch.hpp"
 #include "sunbudget/raster/pyramid.hpp"
@@ -10,15 +11,6 @@
 namespace sunbudget {
 
 namespace {
-
-void resize(Plane<float>& plane, int width, int height) {
-    if (plane.width() != width || plane.height() != height) plane = Plane<float>(width, height);
-}
-
-void copy_plane(const Plane<float>& from, Plane<float>& to) {
-    resize(to, from.width(), from.height());
-    for (int r = 0; r < from.height(); ++r) std::ranges::copy(from.row(r), to.row(r).begin());
-}
 
 /// The layers of `change` that belong to layer `base` of the run as it is.
 ChangeOutputs outputs_of(const Run& run, std::size_t change, std::size_t base) {
@@ -44,7 +36,7 @@ Run carried_out(const Run& base, std::size_t change) {
 }  // namespace
 
 void subtract(const Plane<float>& before, const Plane<float>& after, Plane<float>& out) {
-    resize(out, before.width(), before.height());
+    fit(out, before.width(), before.height());
     for (int r = 0; r < out.height(); ++r)
         std::ranges::transform(before.row(r), after.row(r), out.row(r).begin(), std::minus<>());
 }
@@ -91,7 +83,7 @@ void Beside::some_bands(std::size_t first, std::size_t count, std::size_t lit,
     const auto prepare = [&](std::vector<Plane<float>>& planes) {
         planes.resize(std::max(planes.size(), lit));
         for (std::size_t i = 0; i < lit; ++i) {
-            resize(planes[i], window_.width, window_.height);
+            fit(planes[i], window_);
             planes[i].fill(std::numeric_limits<float>::quiet_NaN());
         }
     };
@@ -108,7 +100,7 @@ void Beside::see(const Window& block, const Window& window, const Plane<float>& 
                  const Plane<float>& mean) {
     for (auto& change : albedos) {
         if (!change.touched) continue;
-        resize(change.albedo_seen, window.width, window.height);
+        fit(change.albedo_seen, window);
         const auto patch = patch_window(block);
         const bool here = readers_[change.change].touches(patch);
         Plane<float> own_mean;
@@ -118,16 +110,14 @@ void Beside::see(const Window& block, const Window& window, const Plane<float>& 
             own_mean = mean_around(scratch_, near_steps);
         }
         for (int r = 0; r < block.height; ++r)
-            std::ranges::copy(
-                (here ? own_mean : mean).row(r),
-                change.albedo_seen.row(static_cast<int>(block.row - window.row) + r).begin() +
-                    (block.column - window.column));
+            std::ranges::copy((here ? own_mean : mean).row(r),
+                              over(change.albedo_seen, window, block, r).begin());
     }
 }
 
 void Beside::see(float albedo) {
     for (auto& change : albedos) {
-        resize(change.albedo_seen, window_.width, window_.height);
+        fit(change.albedo_seen, window_);
         change.albedo_seen.fill(albedo);
     }
 }
@@ -138,7 +128,7 @@ void Beside::put(std::size_t n, std::size_t band, const Plane<float>& before, co
         const auto& [after, saved] = outputs_[n][i];
         if (!after && !saved) continue;
         if (albedos[i].touched) {
-            resize(scratch_, window_.width, window_.height);
+            fit(scratch_, window_);
             for (int r = 0; r < window_.height; ++r) {
                 row(albedos[i], r, scratch_.row(r));
                 round_row(scratch_.row(r), run_.layers[n].file.quantum);

@@ -5,9 +5,10 @@
 #include <functional>
 #include <limits>
 
+#include "heat_ground.hpp"
+#include "planes.hpp"
 #include "sunbudget/physics/humidity.hpp"
 #include "sunbudget/physics/surface_balance.hpp"
-#include "sunbudget/tables/quality.hpp"
 
 namespace sunbudget {
 
@@ -15,32 +16,17 @@ namespace {
 
 constexpr float nan_value = std::numeric_limits<float>::quiet_NaN();
 
-void fit(Plane<float>& plane, const Window& window) {
-    if (plane.width() != window.width || plane.height() != window.height)
-        plane = Plane<float>(window.width, window.height);
-}
-
-const CoverSurface* cover_of(const Run& run) {
-    if (const auto* cover = std::get_if<CoverSurface>(&run.surface)) return cover;
-    const auto* image = std::get_if<ReflectanceSurface>(&run.surface);
-    return image != nullptr && image->fill ? &*image->fill : nullptr;
-}
-
-/// Of snow, whose NDVI is that of bare soil. Fresh and old snow 0.98 to 0.99, broadband (from memory of Warren,
-/// Rev. Geophys. 20, 1982, 67-89, and Dozier & Warren, Water Resour. Res. 18, 1982, 1424-1434).
-constexpr float snow_emissivity = 0.985F;
-
-/// Temperatures no ground has (a scene's clamped numbers under cloud) are no data.
-void keep_possible(std::span<float> kelvin) noexcept {
-    constexpr float coldest_k = 180, hottest_k = 380;
-    for (auto& value : kelvin) value = value >= coldest_k && value <= hottest_k ? value : nan_value;
-}
-
-/// A reader where there is a source.
-std::optional<Reader> reader_of(const std::optional<Source>& source) {
-    std::optional<Reader> reader;
-    if (source) reader.emplace(*source);
-    return reader;
+/// Vapour pressures from what is known of humidity.
+void vapour_row(HumidityAs as, std::span<const float> temperature_k, std::span<const float> humid,
+                std::span<float> vapour_hpa) {
+    if (as == HumidityAs::dew_point)
+        saturation_vapour_pressure(humid, vapour_hpa);
+    else if (as == HumidityAs::vapour_pressure)
+        std::ranges::copy(humid, vapour_hpa.begin());
+    else
+        saturation_vapour_pressure(temperature_k, vapour_hpa);
+    if (as == HumidityAs::relative)
+        std::ranges::transform(vapour_hpa, humid, vapour_hpa.begin(), std::multiplies<>());
 }
 
 }  // namespace
@@ -51,42 +37,24 @@ struct HeatFlow::State {
     LongwaveField* field;
     int thread;
     std::optional<PointLongwave> point;
-    std::optional<ChangeReader> change;  ///< one that has been carried out
-
-    std::optional<Reader> cover, emissivity_raster, red, nir, surface, surface_quality, temperature,
-        humidity;
+    std::optional<Reader> temperature, humidity;
+    HeatGround ground;
     Window window;
-    Plane<float> emissivity, dry, built, class_emissivity;
-    Plane<float> red_plane, nir_plane, surface_k, air_k, humid;
+    Plane<float> air_k, humid;  ///< as read
     const Plane<float>* heights_m = nullptr;
-    std::vector<Window> blocks;
     std::vector<LongwaveField::Block> prepared;
 
     HeatPlanes out;
     Plane<float> sky, air_black, surface_black, band_air_k;
 
-    State(const Run& r, LongwaveField* f, int t) : run(r), heat(r.heat), field(f), thread(t) {
-        if (const auto* classes = cover_of(run)) cover.emplace(classes->codes);
-        if (heat.emissivity) {
-            if (const auto* raster = std::get_if<Source>(&*heat.emissivity))
-                emissivity_raster.emplace(*raster);
-            if (const auto* ndvi = std::get_if<NdviEmissivity>(&*heat.emissivity)) {
-                red.emplace(ndvi->red);
-                nir.emplace(ndvi->nir);
-            }
-        }
-        surface = reader_of(heat.surface_k);
-        if (heat.surface_quality) surface_quality.emplace(heat.surface_quality->codes);
-        if (run.carried_out) change.emplace(*run.carried_out);
+    State(const Run& r, LongwaveField* f, int t)
+        : run(r), heat(r.heat), field(f), thread(t), ground(r) {
         if (!heat.longwave) return;
         point.emplace(*run.times, *heat.longwave);
         temperature = reader_of(heat.longwave->temperature_k);
         humidity = reader_of(heat.longwave->humidity);
     }
 
-    void read_emissivity(const Plane<std::uint16_t>& flags);
-    void read_dry();
-    void read_surface();
     void air_from_field(std::size_t band);
     void air_by_pixel(std::size_t band);
     void surface_by_pixel(const AirMoment& numbers);
@@ -98,67 +66,6 @@ struct HeatFlow::State {
 
 void keep_dry(std::span<const float> dry, std::span<float> values) noexcept {
     for (std::size_t i = 0; i < values.size(); ++i) values[i] = dry[i] >= 1 ? values[i] : nan_value;
-}
-
-void HeatFlow::State::read_emissivity(const Plane<std::uint16_t>& flags) {
-    if (!heat.emissivity) return;
-    fit(emissivity, window);
-    if (const auto* number = std::get_if<double>(&*heat.emissivity))
-        emissivity.fill(static_cast<float>(*number));
-    if (emissivity_raster) {
-        emissivity_raster->read(window, emissivity);
-        for (int r = 0; r < window.height; ++r)
-            for (auto& value : emissivity.row(r))
-                value = value >= 0 && value <= 1 ? value : nan_value;
-    }
-    if (std::holds_alternative<ClassEmissivity>(*heat.emissivity))
-        cover->read_values(window, cover_of(run)->emissivity, emissivity);
-    if (!red) return;
-    red->read(window, red_plane);
-    nir->read(window, nir_plane);
-    if (cover) {
-        cover->read_values(window, cover_of(run)->built_emissivity, built);
-        cover->read_values(window, cover_of(run)->emissivity, class_emissivity);
-    }
-    for (int r = 0; r < window.height; ++r) {
-        emissivity_from_ndvi(red_plane.row(r), nir_plane.row(r), emissivity.row(r));
-        const auto row = emissivity.row(r);
-        const auto flag = flags.row(r);
-        for (std::size_t i = 0; i < row.size(); ++i) {
-            // A cloud's NDVI says nothing of the ground below.
-            const bool seen = (flag[i] & quality::source_mask) == quality::reflectance;
-            if (!seen) row[i] = cover ? class_emissivity.row(r)[i] : nan_value;
-            if (seen && cover && !std::isnan(built.row(r)[i])) row[i] = built.row(r)[i];
-            if (seen && (flag[i] & quality::snow) != 0) row[i] = snow_emissivity;
-        }
-    }
-}
-
-void HeatFlow::State::read_dry() {
-    fit(dry, window);
-    if (cover)
-        cover->read_values(window, cover_of(run)->dry, dry);
-    else
-        dry.fill(nan_value);
-}
-
-/// A raster of the ground's temperature, without what clouds hide.
-void HeatFlow::State::read_surface() {
-    if (!surface) return;
-    surface->read(window, surface_k);
-    for (int r = 0; r < window.height; ++r) keep_possible(surface_k.row(r));
-    if (!surface_quality) return;
-    Plane<std::int32_t> codes;
-    surface_quality->read_codes(window, codes);
-    std::vector<RejectReason> reasons(static_cast<std::size_t>(window.width));
-    std::vector<std::uint16_t> flags(
-        reasons.size());  // those of the albedo's image are the layer quality's
-    for (int r = 0; r < window.height; ++r) {
-        std::ranges::fill(reasons, not_rejected);
-        apply_quality(codes.row(r), heat.surface_quality->tests, heat.surface_quality->missing,
-                      flags, reasons);
-        drop_rejected(reasons, surface_k.row(r));
-    }
 }
 
 /// What the sky sends down, and the air, from a few nodes.
@@ -199,16 +106,7 @@ void HeatFlow::State::air_by_pixel(std::size_t band) {
         if (!temperature && lapse_k_m != 0 && run.terrain)
             for (std::size_t i = 0; i < t.size(); ++i)
                 t[i] -= lapse_k_m * (heights_m->row(r)[i] - station_m);
-        const auto h = humid.row(r);
-        if (longwave.humidity_as == HumidityAs::dew_point)
-            saturation_vapour_pressure(h, vapour_hpa);
-        else if (longwave.humidity_as == HumidityAs::vapour_pressure)
-            std::copy(h.begin(), h.end(), vapour_hpa.begin());
-        else
-            saturation_vapour_pressure(t, vapour_hpa);
-        if (longwave.humidity_as == HumidityAs::relative)
-            std::transform(vapour_hpa.begin(), vapour_hpa.end(), h.begin(), vapour_hpa.begin(),
-                           std::multiplies<>());
+        vapour_row(longwave.humidity_as, t, humid.row(r), vapour_hpa);
         clear_longwave(longwave.formula, t, vapour_hpa, sky.row(r));
         cloudy_longwave(t, numbers.cloud, sky.row(r));
         black_body(t, air_black.row(r));
@@ -244,9 +142,9 @@ void HeatFlow::State::come_down(const Plane<float>& sky_view) {
     for (int r = 0; r < window.height; ++r) {
         const auto down = out.down.row(r);
         if (heat.surface == SurfaceFrom::raster) {
-            std::copy(surface_k.row(r).begin(), surface_k.row(r).end(),
+            std::copy(ground.surface_k().row(r).begin(), ground.surface_k().row(r).end(),
                       out.surface_k.row(r).begin());
-            black_body(surface_k.row(r), surface_black.row(r));
+            black_body(ground.surface_k().row(r), surface_black.row(r));
         }
         if (sky_view.empty()) {
             std::copy(sky.row(r).begin(), sky.row(r).end(), down.begin());
@@ -292,13 +190,7 @@ void HeatFlow::read(const Window& window, const std::vector<Window>& blocks,
     auto& s = *state_;
     s.window = window;
     s.heights_m = &heights_m;
-    s.read_emissivity(flags);
-    s.read_dry();
-    if (s.change) {
-        if (!s.emissivity.empty()) s.change->emissivity(window, s.emissivity);
-        s.change->dry(window, s.dry);
-    }
-    s.read_surface();
+    s.ground.read(window, flags);
     if (s.temperature) s.temperature->read(window, s.air_k);
     if (s.humidity) s.humidity->read(window, s.humid);
     s.prepared.clear();
@@ -308,10 +200,10 @@ void HeatFlow::read(const Window& window, const std::vector<Window>& blocks,
 }
 
 const Plane<float>& HeatFlow::emissivity() const {
-    return state_->emissivity;
+    return state_->ground.emissivity();
 }
 const Plane<float>& HeatFlow::dry() const {
-    return state_->dry;
+    return state_->ground.dry();
 }
 
 const Plane<float>& HeatFlow::air_k() const {
@@ -327,8 +219,8 @@ const HeatPlanes& HeatFlow::band(std::size_t band, const Plane<float>& sky_view,
     if (!s.heat.longwave) {
         // Only a raster of temperatures needs no air.
         fit(s.out.surface_k, s.window);
-        for (int r = 0; r < s.window.height && s.surface; ++r)
-            std::copy(s.surface_k.row(r).begin(), s.surface_k.row(r).end(),
+        for (int r = 0; r < s.window.height && s.ground.has_surface(); ++r)
+            std::copy(s.ground.surface_k().row(r).begin(), s.ground.surface_k().row(r).end(),
                       s.out.surface_k.row(r).begin());
         return s.out;
     }
@@ -341,7 +233,7 @@ const HeatPlanes& HeatFlow::band(std::size_t band, const Plane<float>& sky_view,
         return s.out;
     }
     s.come_down(sky_view);
-    s.go_up(s.emissivity, s.dry, net_shortwave, s.out);
+    s.go_up(s.ground.emissivity(), s.ground.dry(), net_shortwave, s.out);
     return s.out;
 }
 
@@ -354,11 +246,7 @@ void HeatFlow::beside(const Plane<float>& emissivity, const Plane<float>& dry,
 }
 
 std::uint64_t HeatFlow::infinities() const {
-    std::uint64_t count = 0;
-    for (const auto* reader :
-         {&state_->emissivity_raster, &state_->surface, &state_->temperature, &state_->humidity})
-        if (*reader) count += (*reader)->infinities();
-    return count;
+    return state_->ground.infinities() + infinities_of({&state_->temperature, &state_->humidity});
 }
 
 }  // namespace sunbudget

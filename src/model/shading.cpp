@@ -1,154 +1,17 @@
 #include "sunbudget/model/shading.hpp"
 
 #include <algorithm>
-#include <array>
 #include <cmath>
 #include <numbers>
 
+#include "block_frame.hpp"
+#include "planes.hpp"
 #include "sunbudget/model/probe.hpp"
 #include "sunbudget/physics/gradient.hpp"
 #include "sunbudget/physics/horizon.hpp"
 #include "sunbudget/physics/sky_view.hpp"
 
 namespace sunbudget {
-
-namespace {
-
-/// Suns are sorted once for a square of this size: over half of it, 0.1 degrees of the sun's height, the
-/// light itself is corrected to the pixel's own place.
-constexpr double region_m = 20000;
-/// Sorted suns that are kept: regions are visited one after the other, and twelve monthly tables of one
-/// take 8 MB.
-constexpr std::size_t sectors_kept_bytes = std::size_t{48} << 20;
-
-double side_m(const PixelMatrix& matrix) {
-    return std::max(length_of_m(matrix, 1, 0), length_of_m(matrix, 0, 1));
-}
-
-PixelMatrix between(const PixelMatrix& a, const PixelMatrix& b, double share) {
-    const auto mix = [share](double x, double y) { return x + share * (y - x); };
-    return {mix(a.east_per_column, b.east_per_column), mix(a.east_per_row, b.east_per_row),
-            mix(a.north_per_column, b.north_per_column), mix(a.north_per_row, b.north_per_row)};
-}
-
-/// The matrices at a block's corner pixels and middle.
-struct Frame {
-    std::array<PixelMatrix, 4> corner;  ///< upper left, upper right, lower left, lower right
-    PixelMatrix middle;
-    Geodetic place;
-
-    [[nodiscard]] PixelMatrix left(double share) const {
-        return between(corner[0], corner[2], share);
-    }
-    [[nodiscard]] PixelMatrix right(double share) const {
-        return between(corner[1], corner[3], share);
-    }
-};
-
-std::optional<Frame> frame_of(const Window& block, const Locator& locator) {
-    const double left = static_cast<double>(block.column) + 0.5,
-                 top = static_cast<double>(block.row) + 0.5;
-    const double right = left + block.width - 1, bottom = top + block.height - 1;
-    const std::array corners{locator.matrix(left, top), locator.matrix(right, top),
-                             locator.matrix(left, bottom), locator.matrix(right, bottom)};
-    const auto middle = locator.matrix((left + right) / 2, (top + bottom) / 2);
-    const auto place = locator.at((left + right) / 2, (top + bottom) / 2);
-    if (!middle || !place) return std::nullopt;
-    Frame frame{{}, *middle, *place};
-    // Where the globe's edge cuts a corner off, the middle's matrix serves there.
-    for (std::size_t i = 0; i < 4; ++i) frame.corner[i] = corners[i].value_or(*middle);
-    return frame;
-}
-
-/// Mean height of pixels spread evenly over the grid; 0 where none of them has one.
-double mean_height_m(const Terrain& terrain, const Grid& grid) {
-    constexpr long samples = 16;
-    ElevationReader reader(terrain);
-    Plane<float> height_m;
-    double sum = 0, count = 0;
-    for (long r = 0; r < samples; ++r)
-        for (long c = 0; c < samples; ++c) {
-            reader.read({(2 * c + 1) * grid.width / (2 * samples),
-                         (2 * r + 1) * grid.height / (2 * samples), 1, 1},
-                        height_m);
-            if (std::isnan(height_m.at(0, 0))) continue;
-            sum += static_cast<double>(height_m.at(0, 0));
-            ++count;
-        }
-    return count > 0 ? sum / count : 0;
-}
-
-}  // namespace
-
-SharedTerrain::SharedTerrain(const Terrain& terrain, const Grid& grid,
-                             const std::filesystem::path& scratch_folder)
-    : terrain_(terrain), grid_(grid), middle_height_m_(mean_height_m(terrain, grid)) {
-    const Locator locator(grid);
-    double step_m = 1e30, cell_m = 0;
-    // The finest cells of the grid decide how many levels the reach takes.
-    for (const double u : {0.02, 0.5, 0.98})
-        for (const double v : {0.02, 0.5, 0.98})
-            if (const auto matrix = locator.matrix(u * grid.width, v * grid.height)) {
-                step_m = std::min({step_m, length_of_m(*matrix, 1, 0), length_of_m(*matrix, 0, 1)});
-                cell_m = std::max(cell_m, side_m(*matrix));
-            }
-    if (cell_m == 0) step_m = cell_m = terrain.sight.reach_m;
-    while (region_px_ < 4096 && static_cast<double>(region_px_) * 2 * cell_m <= region_m)
-        region_px_ *= 2;
-    const int levels = std::min(levels_for(step_m, terrain.sight), HeightLevels::most_levels);
-    levels_ = std::make_unique<HeightLevels>(terrain.elevation, grid, levels, step_m, terrain.sight,
-                                             scratch_folder);
-}
-SharedTerrain::~SharedTerrain() = default;
-
-std::shared_ptr<const SunSectors> SharedTerrain::sectors(const Window& block,
-                                                         std::size_t first_band, std::size_t bands,
-                                                         const LightField& light, int thread) {
-    const Key key{block.column / region_px_, block.row / region_px_, first_band};
-    std::shared_ptr<Entry> entry;
-    {
-        const std::lock_guard hold(mutex_);
-        auto& found = regions_[key];
-        if (!found) {
-            found = std::make_shared<Entry>();
-            oldest_first_.push_back(key);
-        }
-        entry = found;
-    }
-    std::call_once(entry->once, [&] {
-        const long column =
-            std::min(key.column * region_px_ + region_px_ / 2, static_cast<long>(grid_.width - 1));
-        const long row =
-            std::min(key.row * region_px_ + region_px_ / 2, static_cast<long>(grid_.height - 1));
-        // A region in the middle of which the projection has no place takes the block's own.
-        const auto middle = light.locator(thread).at(static_cast<double>(column) + 0.5,
-                                                     static_cast<double>(row) + 0.5);
-        const auto place =
-            middle ? middle
-                   : light.locator(thread).at(static_cast<double>(block.column) + block.width / 2.0,
-                                              static_cast<double>(block.row) + block.height / 2.0);
-        entry->sectors = std::make_shared<const SunSectors>(light.point(), *place, middle_height_m_,
-                                                            first_band, bands, terrain_.directions);
-        make_room(key, *entry);
-    });
-    return entry->sectors;
-}
-
-/// Makes room for a new entry's suns. Whoever works with forgotten ones still holds them.
-void SharedTerrain::make_room(const Key& key, Entry& added) {
-    const std::lock_guard hold(mutex_);
-    if (const auto found = regions_.find(key);
-        found == regions_.end() || found->second.get() != &added)
-        return;
-    added.bytes = added.sectors->bytes();
-    for (kept_bytes_ += added.bytes;
-         kept_bytes_ > sectors_kept_bytes && oldest_first_.size() > 1;) {
-        const auto oldest = regions_.find(oldest_first_.front());
-        kept_bytes_ -= oldest->second->bytes;
-        regions_.erase(oldest);
-        oldest_first_.pop_front();
-    }
-}
 
 struct BlockShader::State {
     SharedTerrain& shared;
@@ -172,11 +35,12 @@ struct BlockShader::State {
 
     void read_ground(const Window& block);
     void read_slopes(const Window& block);
-    void normals(const Frame& frame, ShadedBlock& out) const;
-    void cast(const Frame& frame, double azimuth_rad, const Window& block, Plane<float>& tangent);
-    void cast_all_round(const Frame& frame, const SunSectors* sectors, bool sky_view,
+    void normals(const BlockFrame& frame, ShadedBlock& out) const;
+    void cast(const BlockFrame& frame, double azimuth_rad, const Window& block,
+              Plane<float>& tangent);
+    void cast_all_round(const BlockFrame& frame, const SunSectors* sectors, bool sky_view,
                         ShadedBlock& out);
-    void cast_own(const Frame& frame, const FewSuns& few, ShadedBlock& out);
+    void cast_own(const BlockFrame& frame, const FewSuns& few, ShadedBlock& out);
 };
 
 BlockShader::BlockShader(SharedTerrain& shared, const LightField* light, const Locator& locator,
@@ -204,7 +68,7 @@ void BlockShader::State::read_slopes(const Window& block) {
                       per_column.row(r), per_row.row(r));
 }
 
-void BlockShader::State::normals(const Frame& frame, ShadedBlock& out) const {
+void BlockShader::State::normals(const BlockFrame& frame, ShadedBlock& out) const {
     for (auto* plane : {&out.east, &out.north, &out.up})
         *plane = Plane<float>(out.block.width, out.block.height);
     for (int r = 0; r < out.block.height; ++r) {
@@ -216,12 +80,11 @@ void BlockShader::State::normals(const Frame& frame, ShadedBlock& out) const {
 }
 
 /// Tangents of the block's horizons along one azimuth.
-void BlockShader::State::cast(const Frame& frame, double azimuth_rad, const Window& block,
+void BlockShader::State::cast(const BlockFrame& frame, double azimuth_rad, const Window& block,
                               Plane<float>& tangent) {
     const auto& sight = shared.terrain().sight;
     const auto direction = direction_towards(frame.middle, azimuth_rad);
-    if (rise.width() != block.width || rise.height() != block.height)
-        rise = Plane<float>(block.width, block.height);
+    fit(rise, block);
     for (int r = 0; r < block.height; ++r)
         start_rise(per_column.row(r), per_row.row(r), direction, rise.row(r));
     if (!levels.empty())
@@ -243,13 +106,11 @@ void BlockShader::State::cast(const Frame& frame, double azimuth_rad, const Wind
         probe->note_horizon({azimuth_rad, static_cast<double>(probe->of(tangent, block))});
 }
 
-void BlockShader::State::cast_all_round(const Frame& frame, const SunSectors* sectors,
+void BlockShader::State::cast_all_round(const BlockFrame& frame, const SunSectors* sectors,
                                         bool sky_view, ShadedBlock& out) {
     const int directions = shared.terrain().directions;
     const auto& block = out.block;
-    for (auto* plane : {&before, &after, &first})
-        if (plane->width() != block.width || plane->height() != block.height)
-            *plane = Plane<float>(block.width, block.height);
+    for (auto* plane : {&before, &after, &first}) fit(*plane, block);
     Plane<float> tangent(block.width, block.height);
     std::vector<BeamSums> sums(out.beam.size());
     const auto normal_row = [&](int r) {
@@ -284,7 +145,7 @@ void BlockShader::State::cast_all_round(const Frame& frame, const SunSectors* se
         for (int r = 0; r < block.height; ++r) finish_sky_view(out.sky_view.row(r), directions);
 }
 
-void BlockShader::State::cast_own(const Frame& frame, const FewSuns& few, ShadedBlock& out) {
+void BlockShader::State::cast_own(const BlockFrame& frame, const FewSuns& few, ShadedBlock& out) {
     Plane<float> sine(out.block.width, out.block.height);
     for (const auto& sun : few.suns) {
         cast(frame, sun.placed.sun.azimuth_rad, out.block, sine);
@@ -342,32 +203,6 @@ void BlockShader::watch(Probe& probe) {
 
 std::uint64_t BlockShader::infinities() const {
     return state_->elevation.infinities() + (state_->slopes ? state_->slopes->infinities() : 0);
-}
-
-std::vector<Window> steady_parts(const Window& block, const Locator& locator) {
-    // Half a direction of 64 is 2.8 degrees; a turn of one degree over the block is well inside it.
-    constexpr double most_turn_rad = 0.02;
-    constexpr int smallest_px = 16;
-    const auto frame = frame_of(block, locator);
-    if (!frame || (block.width <= smallest_px && block.height <= smallest_px)) return {block};
-    double turn = 0;
-    for (const auto& corner : frame->corner) {
-        const double difference =
-            azimuth_of_rad(corner, 0, -1) - azimuth_of_rad(frame->middle, 0, -1);
-        turn = std::max(turn, std::abs(std::remainder(difference, 2 * std::numbers::pi)));
-    }
-    if (turn <= most_turn_rad) return {block};
-    std::vector<Window> parts;
-    const int half_width = (block.width + 1) / 2, half_height = (block.height + 1) / 2;
-    for (const int down : {0, half_height})
-        for (const int across : {0, half_width}) {
-            const Window part{block.column + across, block.row + down,
-                              across == 0 ? half_width : block.width - half_width,
-                              down == 0 ? half_height : block.height - half_height};
-            if (part.width <= 0 || part.height <= 0) continue;
-            for (const auto& piece : steady_parts(part, locator)) parts.push_back(piece);
-        }
-    return parts;
 }
 
 }  // namespace sunbudget

@@ -5,6 +5,7 @@
 #include <limits>
 #include <optional>
 
+#include "planes.hpp"
 #include "reflectance.hpp"
 #include "sunbudget/tables/quality.hpp"
 
@@ -13,12 +14,6 @@ namespace sunbudget {
 namespace {
 
 constexpr float nan_value = std::numeric_limits<float>::quiet_NaN();
-
-template <typename T>
-void resize(Plane<T>& plane, const Window& window) {
-    if (plane.width() != window.width || plane.height() != window.height)
-        plane = Plane<T>(window.width, window.height);
-}
 
 }  // namespace
 
@@ -96,8 +91,8 @@ void SurfaceReader::State::read_given(const GivenSurface& given, const Window& w
 /// Where the image gives no albedo the land cover does; the flags keep the reason.
 void SurfaceReader::State::fill_from(const CoverSurface& cover, const Window& window,
                                      Plane<float>& albedo, Plane<std::uint16_t>& flags) {
-    resize(fill_albedo, window);
-    resize(fill_flags, window);
+    fit(fill_albedo, window);
+    fit(fill_flags, window);
     fill_albedo.fill(nan_value);
     read_cover(cover, window, fill_albedo, fill_flags);
     for (int r = 0; r < window.height; ++r) {
@@ -116,8 +111,8 @@ SurfaceReader::~SurfaceReader() = default;
 SurfaceReader::SurfaceReader(SurfaceReader&&) noexcept = default;
 
 void SurfaceReader::read(const Window& window, Plane<float>& albedo, Plane<std::uint16_t>& flags) {
-    resize(albedo, window);
-    resize(flags, window);
+    fit(albedo, window);
+    fit(flags, window);
     albedo.fill(nan_value);
     flags.fill(quality::no_surface);
     const auto& surface = state_->run.surface;
@@ -135,7 +130,7 @@ void SurfaceReader::read(const Window& window, Plane<float>& albedo, Plane<std::
 void SurfaceReader::uncertainty(const Window& window, const Plane<float>& albedo,
                                 const Plane<std::uint16_t>& flags, Plane<float>& uncertainty) {
     auto& s = *state_;
-    resize(uncertainty, window);
+    fit(uncertainty, window);
     uncertainty.fill(nan_value);
     const auto* image = std::get_if<ReflectanceSurface>(&s.run.surface);
     const auto* given = std::get_if<GivenSurface>(&s.run.surface);

@@ -78,89 +78,43 @@ R maykut_church(R t, R e) noexcept {
     return R(0.7855) * sigma_t4(t) + (e - e);
 }
 
-template <class Formula>
-[[gnu::always_inline]] inline void each(std::size_t n, const float* t, const float* e, float* out,
-                                        Formula formula) noexcept {
-    for (std::size_t i = 0; i < n; ++i) out[i] = formula(t[i], e[i]);
-}
-
-// Kernels by name: a version for each CPU cannot be made of a template.
-using Kernel = void (*)(std::size_t, const float*, const float*, float*) noexcept;
-SUNBUDGET_CLONES void brunt_row(std::size_t n, const float* t, const float* e,
-                                float* out) noexcept {
-    each(n, t, e, out, [](float a, float b) { return brunt(a, b); });
-}
-SUNBUDGET_CLONES void swinbank_row(std::size_t n, const float* t, const float* e,
-                                   float* out) noexcept {
-    each(n, t, e, out, [](float a, float b) { return swinbank(a, b); });
-}
-SUNBUDGET_CLONES void idso_jackson_row(std::size_t n, const float* t, const float* e,
-                                       float* out) noexcept {
-    each(n, t, e, out, [](float a, float b) { return idso_jackson(a, b); });
-}
-SUNBUDGET_CLONES void brutsaert_row(std::size_t n, const float* t, const float* e,
-                                    float* out) noexcept {
-    each(n, t, e, out, [](float a, float b) { return brutsaert(a, b); });
-}
-SUNBUDGET_CLONES void idso_row(std::size_t n, const float* t, const float* e, float* out) noexcept {
-    each(n, t, e, out, [](float a, float b) { return idso(a, b); });
-}
-SUNBUDGET_CLONES void prata_row(std::size_t n, const float* t, const float* e,
-                                float* out) noexcept {
-    each(n, t, e, out, [](float a, float b) { return prata(a, b); });
-}
-SUNBUDGET_CLONES void dilley_obrien_row(std::size_t n, const float* t, const float* e,
-                                        float* out) noexcept {
-    each(n, t, e, out, [](float a, float b) { return dilley_obrien(a, b); });
-}
-SUNBUDGET_CLONES void angstrom_row(std::size_t n, const float* t, const float* e,
-                                   float* out) noexcept {
-    each(n, t, e, out, [](float a, float b) { return angstrom(a, b); });
-}
-SUNBUDGET_CLONES void satterlund_row(std::size_t n, const float* t, const float* e,
-                                     float* out) noexcept {
-    each(n, t, e, out, [](float a, float b) { return satterlund(a, b); });
-}
-SUNBUDGET_CLONES void konzelmann_row(std::size_t n, const float* t, const float* e,
-                                     float* out) noexcept {
-    each(n, t, e, out, [](float a, float b) { return konzelmann(a, b); });
-}
-SUNBUDGET_CLONES void maykut_church_row(std::size_t n, const float* t, const float* e,
-                                        float* out) noexcept {
-    each(n, t, e, out, [](float a, float b) { return maykut_church(a, b); });
-}
-
-struct Pair {
-    double (*one)(double, double) noexcept;
-    Kernel row;
-};
-
-Pair functions_of(LongwaveFormula formula) noexcept {
+/// use(function of t and e) with the formula's function. Inlined wherever it stands, so that a row's loop is made
+/// once for each formula and CPU: a version for each CPU cannot be made of a template.
+template <class Use>
+[[gnu::always_inline]] inline auto with_formula(LongwaveFormula formula, Use use) noexcept {
     switch (formula) {
         case LongwaveFormula::dilley_obrien1998:
-            return {dilley_obrien<double>, dilley_obrien_row};
+            return use([](auto t, auto e) { return dilley_obrien(t, e); });
         case LongwaveFormula::prata1996:
-            return {prata<double>, prata_row};
+            return use([](auto t, auto e) { return prata(t, e); });
         case LongwaveFormula::brutsaert1975:
-            return {brutsaert<double>, brutsaert_row};
+            return use([](auto t, auto e) { return brutsaert(t, e); });
         case LongwaveFormula::brunt1932:
-            return {brunt<double>, brunt_row};
+            return use([](auto t, auto e) { return brunt(t, e); });
         case LongwaveFormula::swinbank1963:
-            return {swinbank<double>, swinbank_row};
+            return use([](auto t, auto e) { return swinbank(t, e); });
         case LongwaveFormula::idso_jackson1969:
-            return {idso_jackson<double>, idso_jackson_row};
+            return use([](auto t, auto e) { return idso_jackson(t, e); });
         case LongwaveFormula::idso1981:
-            return {idso<double>, idso_row};
+            return use([](auto t, auto e) { return idso(t, e); });
         case LongwaveFormula::angstrom1918:
-            return {angstrom<double>, angstrom_row};
+            return use([](auto t, auto e) { return angstrom(t, e); });
         case LongwaveFormula::satterlund1979:
-            return {satterlund<double>, satterlund_row};
+            return use([](auto t, auto e) { return satterlund(t, e); });
         case LongwaveFormula::konzelmann1994:
-            return {konzelmann<double>, konzelmann_row};
+            return use([](auto t, auto e) { return konzelmann(t, e); });
         case LongwaveFormula::maykut_church1973:
             break;
     }
-    return {maykut_church<double>, maykut_church_row};
+    return use([](auto t, auto e) { return maykut_church(t, e); });
+}
+
+SUNBUDGET_CLONES void clear_row(LongwaveFormula formula, std::size_t n, const float* t,
+                                const float* e, float* out) noexcept {
+    with_formula(
+        formula, [=](auto one) __attribute__((always_inline)) {
+            for (std::size_t i = 0; i < n; ++i) out[i] = one(t[i], e[i]);
+        });
 }
 
 SUNBUDGET_CLONES void cloud_row(std::size_t n, const float* t, float factor, float added,
@@ -180,7 +134,7 @@ SUNBUDGET_CLONES void black_row(std::size_t n, const float* t, float* flux) noex
 
 double clear_longwave_w_m2(LongwaveFormula formula, double temperature_k,
                            double vapour_pressure_hpa) noexcept {
-    return functions_of(formula).one(temperature_k, vapour_pressure_hpa);
+    return with_formula(formula, [=](auto one) { return one(temperature_k, vapour_pressure_hpa); });
 }
 
 void clear_longwave(LongwaveFormula formula, std::span<const float> temperature_k,
@@ -188,8 +142,8 @@ void clear_longwave(LongwaveFormula formula, std::span<const float> temperature_
                     std::span<float> flux_w_m2) noexcept {
     assert(temperature_k.size() == flux_w_m2.size() &&
            vapour_pressure_hpa.size() == flux_w_m2.size());
-    functions_of(formula).row(flux_w_m2.size(), temperature_k.data(), vapour_pressure_hpa.data(),
-                              flux_w_m2.data());
+    clear_row(formula, flux_w_m2.size(), temperature_k.data(), vapour_pressure_hpa.data(),
+              flux_w_m2.data());
 }
 
 CloudTerms cloud_terms(LongwaveCloud law, double cloud) noexcept {
