@@ -151,6 +151,8 @@ InputSizes input_sizes(const Run& run) {
     if (run.heat.longwave) {
         if (run.heat.longwave->temperature_k) add(*run.heat.longwave->temperature_k);
         if (run.heat.longwave->humidity) add(*run.heat.longwave->humidity);
+        for (const auto& raster : run.heat.longwave->clouds) add(raster);
+        for (const auto& raster : run.heat.longwave->down_w_m2) add(raster);
     }
     return sizes;
 }

@@ -38,6 +38,7 @@ struct HeatFlow::State {
     int thread;
     std::optional<PointLongwave> point;
     std::optional<Reader> temperature, humidity;
+    std::vector<Reader> clouds, downs;  ///< one for all bands, or one a band
     HeatGround ground;
     Window window;
     Plane<float> air_k, humid;  ///< as read
@@ -53,11 +54,14 @@ struct HeatFlow::State {
         point.emplace(*run.times, *heat.longwave);
         temperature = reader_of(heat.longwave->temperature_k);
         humidity = reader_of(heat.longwave->humidity);
+        for (const auto& raster : heat.longwave->clouds) clouds.emplace_back(raster);
+        for (const auto& raster : heat.longwave->down_w_m2) downs.emplace_back(raster);
     }
 
     void air_from_field(std::size_t band);
     void air_by_pixel(std::size_t band);
     void surface_by_pixel(const AirMoment& numbers);
+    void sky_of_rasters(std::size_t band);
     void come_down(const Plane<float>& sky_view);
     void go_up(const Plane<float>& own_emissivity, const Plane<float>& own_dry,
                const Plane<float>& net_shortwave, HeatPlanes& to);
@@ -127,6 +131,24 @@ void HeatFlow::State::surface_by_pixel(const AirMoment& numbers) {
         });
         black_body(to, surface_black.row(r));
     }
+}
+
+/// Clouds, or all that the sky sends down, as rasters have them.
+void HeatFlow::State::sky_of_rasters(std::size_t band) {
+    const auto read = [&](std::vector<Reader>& readers, Plane<float>& plane) {
+        readers[std::min(band, readers.size() - 1)].read(window, plane);
+    };
+    if (!downs.empty()) {
+        constexpr float most_w_m2 = 700;  // as the plan's numbers
+        read(downs, sky);
+        for (int r = 0; r < window.height; ++r)
+            for (auto& flux : sky.row(r)) flux = flux >= 0 && flux <= most_w_m2 ? flux : nan_value;
+    }
+    if (clouds.empty()) return;
+    Plane<float> share;
+    read(clouds, share);
+    for (int r = 0; r < window.height; ++r)
+        cloudy_longwave(heat.longwave->cloud_law, band_air_k.row(r), share.row(r), sky.row(r));
 }
 
 /// A daily method's field is of the net already.
@@ -232,6 +254,7 @@ const HeatPlanes& HeatFlow::band(std::size_t band, const Plane<float>& sky_view,
         s.take_net(s.out);
         return s.out;
     }
+    s.sky_of_rasters(band);
     s.come_down(sky_view);
     s.go_up(s.ground.emissivity(), s.ground.dry(), net_shortwave, s.out);
     return s.out;
@@ -246,7 +269,11 @@ void HeatFlow::beside(const Plane<float>& emissivity, const Plane<float>& dry,
 }
 
 std::uint64_t HeatFlow::infinities() const {
-    return state_->ground.infinities() + infinities_of({&state_->temperature, &state_->humidity});
+    auto count =
+        state_->ground.infinities() + infinities_of({&state_->temperature, &state_->humidity});
+    for (const auto* readers : {&state_->clouds, &state_->downs})
+        for (const auto& reader : *readers) count += reader.infinities();
+    return count;
 }
 
 }  // namespace sunbudget

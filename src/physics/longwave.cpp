@@ -3,6 +3,7 @@
 #include <algorithm>
 #include <cassert>
 #include <cmath>
+#include <limits>
 
 #include "float_math.hpp"
 #include "sunbudget/base/simd.hpp"
@@ -178,6 +179,18 @@ void cloudy_longwave(std::span<const float> temperature_k, const CloudTerms& ter
     assert(temperature_k.size() == flux_w_m2.size());
     cloud_row(flux_w_m2.size(), temperature_k.data(), static_cast<float>(terms.factor),
               static_cast<float>(terms.added), flux_w_m2.data());
+}
+
+void cloudy_longwave(LongwaveCloud law, std::span<const float> temperature_k,
+                     std::span<const float> cloud, std::span<float> flux_w_m2) noexcept {
+    assert(temperature_k.size() == flux_w_m2.size() && cloud.size() == flux_w_m2.size());
+    constexpr double none = std::numeric_limits<double>::quiet_NaN();
+    for (std::size_t i = 0; i < flux_w_m2.size(); ++i) {
+        const double share = cloud[i] >= 0 && cloud[i] <= 1 ? static_cast<double>(cloud[i]) : none;
+        flux_w_m2[i] = static_cast<float>(
+            cloudy_longwave_w_m2(static_cast<double>(flux_w_m2[i]),
+                                 static_cast<double>(temperature_k[i]), cloud_terms(law, share)));
+    }
 }
 
 double black_body_w_m2(double temperature_k) noexcept {

@@ -157,6 +157,7 @@ void visit_plan(P& plan, Visitor& v) {
         v.value("method", plan.longwave.method);
         v.value("cloud", plan.longwave.cloud);
         v.value("cloud_method", plan.longwave.cloud_method);
+        v.value("down", plan.longwave.down);
     });
     v.value("surface_temperature", plan.surface_temperature);
     v.map("time", [&] {

@@ -14,6 +14,7 @@ Form longwave_form() {
     std::erase(
         laws,
         "crawford-duchon1999");  // its number comes from sunlight, not from a share of the sky
+    constexpr double most_w_m2 = 700;  // no sky on Earth sends 500 (common practice)
     return map(
         {{"method",
           {choice(methods)},
@@ -21,10 +22,18 @@ Form longwave_form() {
           "papers; default: measured where the table has longwave_down, else " +
               methods.front()},
          {"cloud",
-          {number(0, 1), list(number(0, 1), 12, 12)},
-          "share of the sky; default: the table's cloud, else told from its global (Crawford & "
-          "Duchon 1999); without a table that of sky.cloud, else none"},
-         {"cloud_method", {choice(laws)}, "what a share of cloud adds; default: " + laws.front()}});
+          {number(0, 1), list(number(0, 1), 12, 12), of(ValueKind::raster)},
+          "share of the sky, one number, one per month, or a raster (a file with a band for each "
+          "period, or one for all); default: the table's cloud, else told from its global "
+          "(Crawford & Duchon 1999); without a table that of sky.cloud, else none"},
+         {"cloud_method", {choice(laws)}, "what a share of cloud adds; default: " + laws.front()},
+         {"down",
+          {number(0, most_w_m2), list(number(0, most_w_m2), 12, 12), of(ValueKind::raster)},
+          "what the sky sends down to level open ground in W/m2, clouds and all, in the place of a "
+          "formula: one number, one per month, or a raster (a file with a band for each period, or "
+          "one for all)"}},
+        {at_most_one({"down", "method"}), at_most_one({"down", "cloud"}),
+         at_most_one({"down", "cloud_method"})});
 }
 
 std::vector<Form> surface_temperature_forms() {

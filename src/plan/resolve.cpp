@@ -261,10 +261,11 @@ std::vector<std::pair<RasterName, Place>> read_rasters(const Plan& plan) {
             rasters.emplace_back(RasterName{path->file, 1, {}}, plan.terrain.slope_from->place);
     for (const auto& [raster, place] : heat_rasters(plan))
         rasters.emplace_back(raster_of(raster), place);
-    if (plan.sky.cloud)
-        if (const auto* list = std::get_if<std::vector<PlanRaster>>(&**plan.sky.cloud))
-            for (const auto& raster : *list)
-                rasters.emplace_back(raster_of(raster), plan.sky.cloud->place);
+    for (const auto* given : {&plan.sky.cloud, &plan.longwave.cloud, &plan.longwave.down})
+        if (*given)
+            if (const auto* list = std::get_if<std::vector<PlanRaster>>(&***given))
+                for (const auto& raster : *list)
+                    rasters.emplace_back(raster_of(raster), (*given)->place);
     if (plan.sky.index)
         for (const auto& raster : **plan.sky.index)
             rasters.emplace_back(raster_of(raster), plan.sky.index->place);

@@ -111,36 +111,11 @@ double overcast_of(const Plan& plan, const TimePlan& times, std::size_t band) {
     return sum / days;
 }
 
-/// A raster for each band: as many files, as many bands of one file, or one for all.
+/// Rasters that dim the clear sky's light.
 void take_rasters(const Plan& plan, const std::vector<PlanRaster>& rasters, const char* key,
                   const ResolveOptions& options, Run& run) {
-    const std::size_t bands = run.times->bands();
-    if (rasters.size() > 1 && rasters.size() != bands)
-        throw Error(Cause::usage, fmt::format("{} rasters for {} periods", rasters.size(), bands),
-                    {}, "name one for each period, or one for all");
-    std::vector<RasterName> names;
-    for (const auto& raster : rasters) names.push_back(raster_of(raster));
-    if (rasters.size() == 1 && rasters.front().band.empty() && bands > 1) {
-        const auto info = inspect(names.front(), limits_of(options));
-        if (info.bands > 1 && static_cast<std::size_t>(info.bands) != bands)
-            throw Error(
-                Cause::input,
-                fmt::format("the raster has {} bands for {} periods", info.bands, bands),
-                names.front().path.string(),
-                "name a band for all of them, such as " + rasters.front().path.given + ":1");
-        if (info.bands > 1) {
-            names.assign(bands, names.front());
-            for (std::size_t b = 0; b < bands; ++b) names[b].band = static_cast<int>(b) + 1;
-        }
-    }
-    for (auto& name : names) {
-        SourceSpec spec;
-        spec.name = std::move(name);
-        spec.limits = limits_of(options);
-        run.light.rasters.push_back(Source::open(spec, run.grid));
-        add_input(run, key, run.light.rasters.back());
-    }
-    for (std::size_t band = 0; band < bands; ++band)
+    run.light.rasters = band_rasters(rasters, key, options, run);
+    for (std::size_t band = 0; band < run.times->bands(); ++band)
         run.light.overcast.push_back(overcast_of(plan, *run.times, band));
     trust(plan, cloud_uncertainty, run);
 }
@@ -243,6 +218,38 @@ void take_sunshine(const Plan& plan, Run& run) {
 }
 
 }  // namespace
+
+std::vector<Source> band_rasters(const std::vector<PlanRaster>& rasters, const char* key,
+                                 const ResolveOptions& options, Run& run) {
+    const std::size_t bands = run.times->bands();
+    if (rasters.size() > 1 && rasters.size() != bands)
+        throw Error(Cause::usage, fmt::format("{} rasters for {} periods", rasters.size(), bands),
+                    {}, "name one for each period, or one for all");
+    std::vector<RasterName> names;
+    for (const auto& raster : rasters) names.push_back(raster_of(raster));
+    if (rasters.size() == 1 && rasters.front().band.empty() && bands > 1) {
+        const auto info = inspect(names.front(), limits_of(options));
+        if (info.bands > 1 && static_cast<std::size_t>(info.bands) != bands)
+            throw Error(
+                Cause::input,
+                fmt::format("the raster has {} bands for {} periods", info.bands, bands),
+                names.front().path.string(),
+                "name a band for all of them, such as " + rasters.front().path.given + ":1");
+        if (info.bands > 1) {
+            names.assign(bands, names.front());
+            for (std::size_t b = 0; b < bands; ++b) names[b].band = static_cast<int>(b) + 1;
+        }
+    }
+    std::vector<Source> sources;
+    for (auto& name : names) {
+        SourceSpec spec;
+        spec.name = std::move(name);
+        spec.limits = limits_of(options);
+        sources.push_back(Source::open(spec, run.grid));
+        add_input(run, key, sources.back());
+    }
+    return sources;
+}
 
 double overcast_in(const Plan& plan, int month) {
     constexpr double published = 0.25;  // Kasten & Czeplak 1980

@@ -22,41 +22,70 @@ class LongwaveResolver : HeatPart {
     }
     void ground_numbers(Longwave& found) const;
     void clouds(Longwave& found);
+    void down(Longwave& found);
 };
+
+/// use(air, month from 0) for the numbers of each month and each row of a table.
+template <class Use>
+void each_moment(Longwave& found, Use use) {
+    for (std::size_t month = 0; month < 12; ++month) use(found.months[month], month);
+    for (auto& row : found.rows) {
+        const auto month = Zone().local((row.span.begin + row.span.end) / 2).date.month;
+        use(row.air, static_cast<std::size_t>(month - 1));
+    }
+}
+
+bool has_measured(const Longwave& found) {
+    return std::ranges::any_of(
+        found.rows, [](const AirRow& row) { return !std::isnan(row.air.longwave_down_w_m2); });
+}
 
 /// The ground's temperature, month by month.
 void LongwaveResolver::ground_numbers(Longwave& found) const {
-    const auto* months = std::get_if<Monthly>(&plan_.surface_temperature->value.value);
-    if (months == nullptr) return;
-    for (std::size_t month = 0; month < 12; ++month)
-        found.months[month].surface_k = (*months)[month];
-    for (auto& row : found.rows)
-        row.air.surface_k =
-            (*months)[static_cast<std::size_t>(Zone().local(row.span.begin).date.month - 1)];
+    if (const auto* months = std::get_if<Monthly>(&plan_.surface_temperature->value.value))
+        each_moment(found,
+                    [&](AirMoment& air, std::size_t month) { air.surface_k = (*months)[month]; });
 }
 
 void LongwaveResolver::clouds(Longwave& found) {
-    const auto law = plan_.longwave.cloud_method ? **plan_.longwave.cloud_method
-                                                 : method_names("longwave_cloud").front();
-    const Monthly* cloud = plan_.longwave.cloud ? &**plan_.longwave.cloud : nullptr;
-    if (cloud == nullptr && !run_.weather && plan_.sky.cloud) {
-        cloud = std::get_if<Monthly>(&**plan_.sky.cloud);
-        run_.assumptions.emplace_back(cloud != nullptr
-                                          ? "longwave.cloud: that of sky.cloud"
-                                          : "longwave.cloud: none, the sky counts as clear; "
-                                            "rasters of sky.cloud are of its light alone");
-    } else if (cloud == nullptr && !run_.weather) {
+    const auto* given = plan_.longwave.cloud ? &plan_.longwave.cloud : nullptr;
+    if (given == nullptr && !run_.weather && plan_.sky.cloud) {
+        given = &plan_.sky.cloud;
+        run_.assumptions.emplace_back("longwave.cloud: that of sky.cloud");
+    } else if (given == nullptr && !run_.weather) {
         run_.assumptions.emplace_back("longwave.cloud: none, the sky counts as clear");
     }
-    if (cloud == nullptr) return;
-    for (std::size_t month = 0; month < 12; ++month)
-        found.months[month].cloud =
-            cloud_terms(chosen<LongwaveCloud>("longwave_cloud", law), (*cloud)[month]);
-    for (auto& row : found.rows) {
-        const auto month = Zone().local((row.span.begin + row.span.end) / 2).date.month;
-        row.air.cloud = found.months[static_cast<std::size_t>(month - 1)].cloud;
-    }
+    if (given == nullptr) return;
+    if (has_measured(found))
+        throw Error(Cause::usage, "the weather table's longwave_down has its clouds in it", {},
+                    "leave longwave.cloud out, or choose a formula in longwave.method");
+    const auto law = plan_.longwave.cloud_method ? **plan_.longwave.cloud_method
+                                                 : method_names("longwave_cloud").front();
+    found.cloud_law = chosen<LongwaveCloud>("longwave_cloud", law);
     run_.methods.push_back(&method("longwave_cloud", law));
+    if (const auto* months = std::get_if<Monthly>(&***given))
+        return each_moment(found, [&](AirMoment& air, std::size_t month) {
+            air.cloud = cloud_terms(found.cloud_law, (*months)[month]);
+        });
+    if (given == &plan_.sky.cloud)
+        found.clouds = run_.light.rasters;
+    else
+        found.clouds = band_rasters(std::get<std::vector<PlanRaster>>(***given), "longwave.cloud",
+                                    options_, run_);
+}
+
+/// What the sky sends down, in the place of a formula.
+void LongwaveResolver::down(Longwave& found) {
+    const auto& given = plan_.longwave.down;
+    run_.assumptions.emplace_back(
+        "longwave.down: as given, with its clouds; numbers at other heights in proportion to the "
+        "clear sky's");
+    if (const auto* months = std::get_if<Monthly>(&**given))
+        return each_moment(found, [&](AirMoment& air, std::size_t month) {
+            air.longwave_down_w_m2 = (*months)[month];
+        });
+    found.down_w_m2 =
+        band_rasters(std::get<std::vector<PlanRaster>>(**given), "longwave.down", options_, run_);
 }
 
 void LongwaveResolver::resolve() {
@@ -74,11 +103,14 @@ void LongwaveResolver::resolve() {
                 found.surface_above_air_k = above->k;
         resolve_longwave_air(plan_, options_, run_, problems_, found);
         if (plan_.surface_temperature) ground_numbers(found);
-        clouds(found);
+        if (plan_.longwave.down)
+            down(found);
+        else
+            clouds(found);
         if (!run_.weather && is_measured())
             throw Error(Cause::usage, "there is no weather table with measured longwave", {},
                         "choose a formula");
-        run_.methods.push_back(&method("longwave", formula));
+        if (!plan_.longwave.down) run_.methods.push_back(&method("longwave", formula));
         if (run_.terrain)
             run_.assumptions.emplace_back(
                 "longwave of the ground in view: a black body's at the pixel's own surface "

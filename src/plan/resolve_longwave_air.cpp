@@ -74,8 +74,9 @@ void AirResolver::humidity(const PlanWeather& weather, Longwave& found) {
 
 AirWants AirResolver::wanted() const {
     AirWants wants;
-    wants.measured = !plan_.longwave.method || **plan_.longwave.method == "measured";
-    wants.cloud = !plan_.longwave.cloud;
+    wants.measured =
+        !plan_.longwave.down && (!plan_.longwave.method || **plan_.longwave.method == "measured");
+    wants.cloud = !plan_.longwave.cloud && !plan_.longwave.down;
     if (plan_.longwave.cloud_method)
         wants.law = chosen<LongwaveCloud>("longwave_cloud", **plan_.longwave.cloud_method);
     wants.surface = plan_.surface_temperature &&

@@ -32,6 +32,10 @@ class RunProblems {
 [[nodiscard]] std::vector<std::pair<RasterName, Place>> read_rasters(const Plan& plan);
 /// Writes an input down for the metadata, with its warnings.
 void add_input(Run& run, const std::string& role, const Source& source);
+/// A raster for each of the run's bands: as many files, as many bands of one file, or one for all.
+[[nodiscard]] std::vector<Source> band_rasters(const std::vector<PlanRaster>& rasters,
+                                               const char* key, const ResolveOptions& options,
+                                               Run& run);
 
 /// The middle of the grid, or 0, 0 where its projection has no answer there.
 [[nodiscard]] Geodetic middle_of(const Grid& grid);

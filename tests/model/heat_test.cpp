@@ -143,6 +143,60 @@ TEST_CASE("longwave down: rasters of the air give what the same numbers give",
     }
 }
 
+TEST_CASE(
+    "longwave down: clouds and the sky's own longwave from rasters give what the same numbers give",
+    "[heat][differential]") {
+    const TemporaryFolder folder;
+    make_ground(folder.path());
+    const auto frame = frame_about("EPSG:32633", 47.0, 15.0, 30, side, side);
+    Plane<float> share(side, side, 0.375F), down(side, side, 312.5F);
+    share.at(2, 3) = 1.5F;  // no share of a sky
+    down.at(2, 3) = -9.0F;
+    write_heights(folder.path() / "cloud.tif", frame, share);
+    write_heights(folder.path() / "down.tif", frame, down);
+    const std::string air =
+        "weather: {air_temperature: 18.5 degC, dew_point: 9.25 degC}\nsurface_temperature: 30 "
+        "degC\n";
+    const std::string rest = "outputs: {layers: [longwave_down, net_longwave]}\n";
+    const std::string time =
+        GENERATE("time: {at: 2025-06-21T12:00Z}\n",
+                 "time: {from: 2025-06-20, to: 2025-06-21, step: 1 h, totals: day}\n");
+    const auto same = [&](const std::string& raster, const std::string& number) {
+        CAPTURE(raster, time);
+        const auto a = computed(folder.path(), town + air + raster + time + rest);
+        const auto b = computed(folder.path(), town + air + number + time + rest);
+        for (const std::string layer : {"longwave_down", "net_longwave"}) {
+            CHECK(largest(a[layer], [&](int c, int r, float value) {
+                      if (c == 2 && r == 3) return std::isnan(value) ? 0.0 : 1.0;
+                      return std::abs(static_cast<double>(value) - at(b[layer], c, r));
+                  }) < 0.01);  // twice the field's 1/256 W m-2, and float
+            CHECK_FALSE(std::isnan(b[layer].at(2, 3)));
+        }
+    };
+    same("longwave: {cloud: cloud.tif, cloud_method: maykut-church1973}\n",
+         "longwave: {cloud: 0.375, cloud_method: maykut-church1973}\n");
+    same("longwave: {down: down.tif}\n", "longwave: {down: 312.5}\n");
+}
+
+TEST_CASE("longwave down: a sky whose light has clouds by the pixel has them for its longwave too",
+          "[heat][property]") {
+    const TemporaryFolder folder;
+    make_ground(folder.path());
+    const auto frame = frame_about("EPSG:32633", 47.0, 15.0, 30, side, side);
+    Plane<float> share(side, side, 0.0F);
+    for (int r = 0; r < side; ++r) share.at(5, r) = 1;
+    write_heights(folder.path() / "cloud.tif", frame, share);
+    const auto found = computed(
+        folder.path(), town + "weather: {air_temperature: 18.5 degC, dew_point: 9.25 degC}\n" +
+                           "sky: {cloud: cloud.tif}\ntime: {at: 2025-06-21T12:00Z}\n" +
+                           "outputs: {layers: [longwave_down, insolation]}\n");
+    const auto &down = found["longwave_down"], &sun = found["insolation"];
+    for (const int r : {0, side / 2}) {
+        CHECK(down.at(5, r) > down.at(4, r) + 30);  // a closed cover adds tens of W m-2
+        CHECK(sun.at(5, r) < 0.5F * sun.at(4, r));
+    }
+}
+
 TEST_CASE("balanced temperature: dry built and bare ground alone, and the balance of its own terms",
           "[heat][property]") {
     const TemporaryFolder folder;

@@ -156,6 +156,22 @@ TEST_CASE("clear_longwave: dry air still radiates, and more vapour never less",
     }
 }
 
+TEST_CASE(
+    "cloudy_longwave: a share for each pixel agrees with single values, and what is no share gives "
+    "none",
+    "[physics][differential]") {
+    const auto law = GENERATE(C::unsworth_monteith1975, C::sugita_brutsaert1993, C::jacobs1978);
+    const std::vector<float> t{285, 285, 285, 285, 285, 285},
+        share{0, 0.25F, 1, -0.01F, 1.01F, std::numeric_limits<float>::quiet_NaN()};
+    std::vector<float> flux(t.size(), 280);
+    cloudy_longwave(law, t, share, flux);
+    for (std::size_t i = 0; i < 3; ++i)  // one rounding to float below 400 W m-2
+        CHECK(flux[i] == Approx(cloudy_longwave_w_m2(280, 285, cloud_terms(law, share[i])))
+                             .margin(2e-5)
+                             .epsilon(0));
+    for (std::size_t i = 3; i < t.size(); ++i) CHECK(std::isnan(flux[i]));
+}
+
 TEST_CASE("cloudy_longwave: a row agrees with single values", "[physics][differential]") {
     Row t, flux;
     for (float kelvin = 230; kelvin < 320; kelvin += 1.7F) {

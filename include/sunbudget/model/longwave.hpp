@@ -52,6 +52,12 @@ struct Longwave {
     // In the place of all that: the net of whole days.
     std::optional<DailyNet> daily;
 
+    /// Share of the sky, and what it sends down: one raster for all bands or one a band; the second stands for
+    /// formula and clouds.
+    std::vector<Source> clouds{};
+    LongwaveCloud cloud_law = LongwaveCloud::unsworth_monteith1975;
+    std::vector<Source> down_w_m2{};
+
     [[nodiscard]] bool by_pixel() const { return temperature_k || humidity; }
 };
 

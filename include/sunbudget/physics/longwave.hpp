@@ -79,6 +79,13 @@ struct CloudTerms {
 void cloudy_longwave(std::span<const float> temperature_k, const CloudTerms& terms,
                      std::span<float> flux_w_m2) noexcept;
 
+/// The same with a share of the sky for each pixel.
+///
+/// shape   three rows of the same length; flux is changed in place
+/// nodata  NaN in any of them, or a share outside 0..1, gives NaN out
+void cloudy_longwave(LongwaveCloud law, std::span<const float> temperature_k,
+                     std::span<const float> cloud, std::span<float> flux_w_m2) noexcept;
+
 /// sigma T^4.
 [[nodiscard]] double black_body_w_m2(double temperature_k) noexcept;
 /// shape   two rows of the same length, which may be one

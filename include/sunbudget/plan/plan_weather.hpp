@@ -108,8 +108,9 @@ struct PlanWeather {
 
 struct PlanLongwave {
     Maybe<std::string> method;
-    Maybe<Monthly> cloud;
+    Maybe<std::variant<Monthly, std::vector<PlanRaster>>> cloud;
     Maybe<std::string> cloud_method;
+    Maybe<std::variant<Monthly, std::vector<PlanRaster>>> down;  ///< W m-2
     friend bool operator==(const PlanLongwave&, const PlanLongwave&) = default;
 };
 
