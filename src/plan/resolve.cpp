@@ -75,6 +75,7 @@ class Resolver {
         resolve_pressure(plan_, run_, problems_);
         resolve_heat(plan_, options_, run_, problems_);
         resolve_clouds(plan_, options_, run_, problems_);
+        share_clouds(plan_, run_);
         tell_unused_columns(run_);
         problems_.throw_if_any();
         resolve_layers(plan_, run_, problems_);

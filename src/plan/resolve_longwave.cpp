@@ -67,9 +67,7 @@ void LongwaveResolver::clouds(Longwave& found) {
         return each_moment(found, [&](AirMoment& air, std::size_t month) {
             air.cloud = cloud_terms(found.cloud_law, (*months)[month]);
         });
-    if (given == &plan_.sky.cloud)
-        found.clouds = run_.light.rasters;
-    else
+    if (given == &plan_.longwave.cloud)
         found.clouds = band_rasters(std::get<std::vector<PlanRaster>>(***given), "longwave.cloud",
                                     options_, run_);
 }
@@ -122,6 +120,12 @@ void LongwaveResolver::resolve() {
 }
 
 }  // namespace
+
+void share_clouds(const Plan& plan, Run& run) {
+    const bool own = run.weather || plan.longwave.cloud || plan.longwave.down;
+    if (run.heat.longwave && !run.heat.longwave->daily && !own && run.light.rasters_are_cloud)
+        run.heat.longwave->clouds = run.light.rasters;
+}
 
 void find_thin_bands(Run& run) {
     const auto& longwave = *run.heat.longwave;

@@ -82,6 +82,8 @@ void resolve_clouds(const Plan& plan, const ResolveOptions& options, Run& run,
                     RunProblems& problems);
 /// After surface, sky, time and weather.
 void resolve_heat(const Plan& plan, const ResolveOptions& options, Run& run, RunProblems& problems);
+/// After both: a sky whose light has its clouds by the pixel has them for its longwave too.
+void share_clouds(const Plan& plan, Run& run);
 void resolve_layers(const Plan& plan, Run& run, RunProblems& problems);
 /// A layer of the run as it is: file, bands, units, metadata.
 [[nodiscard]] OutputLayer output_layer(const Layer& layer, const Run& run);
